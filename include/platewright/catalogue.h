@@ -21,8 +21,10 @@ extern "C" {
  *       a quantity in the wrong unit or out of range, a rating missing */
 PLW_API plw_status plw_tube_read(const char *path, plw_tube **tube, plw_error *error) PLW_MUST_USE;
 
-/* Write a tube file (to a temporary name beside it, then renamed).
- * Ret:  PLW_OK or PLW_E_FILE; on failure nothing is left behind and an older file of that name is untouched */
+/* Write a tube file (to a temporary name beside it, then renamed).  Read again it gives the very same numbers; the same
+ * tube always gives the same bytes.
+ * Ret:  PLW_OK; PLW_E_FILE; PLW_E_NO_MEMORY; PLW_E_DATA when plw_tube_read() would refuse the result, with its text.
+ *       On failure nothing is left behind and an older file of that name is untouched */
 PLW_API plw_status plw_tube_write(const char *path, const plw_tube *tube, plw_error *error) PLW_MUST_USE;
 
 /* A catalogue is a list of folders, looked through in order; an earlier folder's tube hides a later one's. */

@@ -46,6 +46,7 @@ typedef struct {
     plw_rating_system system;
     double plate_volts, screen_volts;
     double plate_watts;             /* in triode connection of a pentode: plate and screen together */
+    bool plate_watts_unpublished;   /* the maker says nothing of it: plate_watts is NaN on purpose */
     double screen_watts;            /* without signal, and with signal unless the next is known */
     double screen_watts_full_drive; /* with full signal */
     double total_watts;             /* plate and screen together */
@@ -127,13 +128,14 @@ typedef struct {
 /* Ratings and law of a vacuum rectifier; in the tube file kind="rectifier". */
 typedef struct {
     double peak_inverse_volts, peak_plate_amps, output_amps;
-    double plate_rms_volts;    /* limit with capacitor input, each plate */
-    double least_supply_ohms;  /* total effective plate-supply resistance, each plate, at that voltage */
+    double plate_rms_volts;   /* limit with capacitor input, each plate */
+    double least_supply_ohms; /* total effective plate-supply resistance, each plate, at that voltage */
     double most_reservoir_farads;
-    double perveance;          /* K of I = K V^1.5, A/V^1.5, each plate */
+    double perveance;             /* K of I = K V^1.5, A/V^1.5, each plate; NaN when no drop is known */
     double drop_volts, drop_amps; /* the published drop K is computed from */
     bool directly_heated;
-    plw_provenance provenance;
+    plw_provenance provenance;      /* of the limits */
+    plw_provenance drop_provenance; /* of the drop; source NULL when there is none */
 } plw_rectifier_data;
 
 /* One published capacitor-input condition of a rectifier. */
@@ -148,12 +150,14 @@ typedef struct plw_tube {
     char **equivalents; /* other names for the very same tube */
     size_t equivalents_count;
     plw_tube_kind kind;
-    char *family;       /* tubes of one family share starting values in the fit; NULL: none */
-    char *base;         /* "octal", "noval", "UX4" ... */
+    char *family; /* tubes of one family share starting values in the fit; NULL: none */
+    char *base;   /* "octal", "noval", "UX4" ... */
     plw_pin *pins;
     size_t pins_count;
+    plw_provenance pins_provenance; /* source NULL when the pins are not given */
     double heater_volts, heater_amps;
     bool directly_heated;
+    plw_provenance heater_provenance;
     plw_ratings *ratings;
     size_t ratings_count;
     plw_variant *variants;
@@ -181,6 +185,9 @@ PLW_API const plw_ratings *plw_tube_ratings(const plw_tube *tube, int variant, p
 PLW_API const char *plw_connection_name(plw_connection connection);
 PLW_API const char *plw_tube_kind_name(plw_tube_kind kind);
 PLW_API const char *plw_rating_system_name(plw_rating_system system);
+PLW_API const char *plw_point_kind_name(plw_point_kind kind);
+PLW_API const char *plw_how_name(plw_how how);
+PLW_API const char *plw_confidence_name(plw_confidence confidence);
 
 #ifdef __cplusplus
 }
