@@ -401,7 +401,8 @@ static void resistor_codes_are_written(void **state) {
     }
     /* Every code is read back as the resistance it was made from. */
     for (int i = -30; i < 90; i++) {
-        const double ohms = round(1000.0 * pow(10.0, (i % 10) / 10.0)) * 1e-3 * pow(10.0, i / 10);
+        const int decade = i / 10;
+        const double ohms = round(1000.0 * pow(10.0, (i % 10) / 10.0)) * 1e-3 * pow(10.0, decade);
         double back = 0.0;
         plw_error error = {PLW_OK, ""};
         assert_int_equal(
