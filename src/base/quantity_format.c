@@ -8,7 +8,8 @@
 #include <stdlib.h>
 #include <string.h>
 
-enum { DIGITS_MOST = 9, NO_HOME = 99 };
+/* NO_HOME is a power of ten that no double reaches. */
+enum { DIGITS_MOST = 9, NO_HOME = 1000 };
 
 /* How a unit is written.  Prefixes run in steps of a thousand from least to most.  At `home` a leading 0. is more usual
  * than the next prefix down: 0.6 W, 0.47 Ω, 0.22 µF, but 450 mA.  All this is common practice, no source. */

@@ -320,7 +320,7 @@ static void quantities_are_written(void **state) {
 static void writing_and_reading_are_inverse(void **state) {
     (void)state;
     for (int unit = 0; unit < PLW_UNIT_COUNT; unit++) {
-        for (int power = -60; power <= 60; power++) {
+        for (int power = -920; power <= 920; power++) { /* the whole range of a double */
             const double value = 2.385716 * pow(10.0, power / 3.0) * (power % 2 == 0 ? 1.0 : -1.0);
             char buffer[64];
             double back = 0.0;
