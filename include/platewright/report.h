@@ -1,0 +1,54 @@
+/* Results rendered: text for the bench, JSON, CSV, gnuplot scripts.  Each function is a pure rendering: the same
+ * result gives the same bytes, on every machine.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
+#ifndef PLATEWRIGHT_REPORT_H
+#define PLATEWRIGHT_REPORT_H
+
+#include "platewright/bias.h"
+#include "platewright/specimen.h"
+
+#ifdef __cplusplus
+extern "C" {
+#endif
+
+/* All that `design` or `check` found out.  Pointers are borrowed; NULL where there is nothing. */
+typedef struct {
+    const plw_stage *stage;        /* as solved, bias included */
+    const plw_bias_choice *choice; /* design; NULL in check */
+    const plw_bias_option *option; /* what the stage does: the chosen option, or the stage as built */
+    const plw_specimen *specimen;  /* check with meter readings */
+    plw_series series;
+} plw_answer;
+
+/* The answer for the bench.  UTF-8, lines up to 80 columns.
+ * Out:  *text, to be freed with plw_text_free(); not written unless PLW_OK
+ * Ret:  PLW_OK or PLW_E_NO_MEMORY */
+PLW_API plw_status plw_report_text(const plw_answer *answer, char **text, plw_error *error) PLW_MUST_USE;
+
+/* The same as JSON, schema "platewright/1": units in the names, null for what is not known. */
+PLW_API plw_status plw_report_json(const plw_answer *answer, char **text, plw_error *error) PLW_MUST_USE;
+
+/* The same as CSV: one header line with units in the column names, one line for each option. */
+PLW_API plw_status plw_report_csv(const plw_answer *answer, char **text, plw_error *error) PLW_MUST_USE;
+
+PLW_API void plw_text_free(char *text);
+
+/* Gnuplot scripts: self-contained, no path or machine in them. */
+typedef enum { PLW_PLOT_LOAD_LINE, PLW_PLOT_TRANSFER, PLW_PLOT_COUNT } plw_plot_kind;
+typedef enum { PLW_PLOT_SVG, PLW_PLOT_PNG, PLW_PLOT_PDF } plw_plot_format;
+
+/* In:   answer; output: the file name that the script is to draw into (its last part only is kept)
+ * Out:  *text, to be freed with plw_text_free() */
+PLW_API plw_status plw_plot_script(const plw_answer *answer, plw_plot_kind kind, plw_plot_format format,
+                                   const char *output, char **text, plw_error *error) PLW_MUST_USE;
+
+/* The plate family of one tube with its published points and rows, in pentode or triode connection. */
+PLW_API plw_status plw_plot_family(const plw_tube *tube, plw_connection connection, plw_plot_format format,
+                                   const char *output, char **text, plw_error *error) PLW_MUST_USE;
+
+PLW_API const char *plw_plot_name(plw_plot_kind kind); /* "load-line", "transfer" */
+
+#ifdef __cplusplus
+}
+#endif
+#endif

@@ -1,0 +1,45 @@
+/* One tube on the bench: what meter readings say of it, beside the model's bogey tube.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
+#ifndef PLATEWRIGHT_SPECIMEN_H
+#define PLATEWRIGHT_SPECIMEN_H
+
+#include "platewright/bias.h"
+
+#ifdef __cplusplus
+extern "C" {
+#endif
+
+/* Readings with the black lead on the chassis, in V; NaN: not taken.  The cathode must be there. */
+typedef struct {
+    double supply_volts, plate_volts, screen_volts, cathode_volts;
+} plw_meter_readings;
+
+typedef struct {
+    /* From the readings alone; where a reading is missing, the model's figure stands in and the flag says so. */
+    double supply_volts, plate_to_ground_volts, screen_to_ground_volts, cathode_volts;
+    bool supply_read, plate_read, screen_read;
+    double cathode_amps, plate_amps, screen_amps; /* per tube; the screen's share by the model's division */
+    double plate_volts, screen_volts, grid_volts; /* to cathode */
+    double plate_watts, screen_watts;
+    double model_cathode_amps; /* the bogey tube at the same voltages */
+    double off_percent;        /* this tube's cathode current against the bogey's */
+    double primary_ohms;       /* from supply and plate readings; NaN when not both were taken */
+    plw_stage stage;           /* the stage with a model scaled to this tube; its tube is &tube */
+    plw_tube tube;             /* shallow copy with the scaled law: do not free */
+    bool resistor_found;
+    plw_bias_choice choice;      /* the resistor that would suit this very tube */
+    char resistor_obstacle[256]; /* why none was found */
+} plw_specimen;
+
+/* In:   a stage with a cathode resistor (with fixed bias nothing tells the current), its point of rest, the readings
+ * Out:  *specimen; its stage points into itself: do not copy it by value
+ * Ret:  PLW_OK; PLW_E_USAGE: no cathode reading, fixed bias, readings that contradict each other (plate above supply,
+ *       cathode above plate) */
+PLW_API plw_status plw_specimen_measure(const plw_stage *stage, const plw_quiescent *quiescent,
+                                        const plw_meter_readings *readings, plw_aim aim, plw_series series,
+                                        plw_specimen *specimen, plw_error *error) PLW_MUST_USE;
+
+#ifdef __cplusplus
+}
+#endif
+#endif
