@@ -322,8 +322,8 @@ static void parse(plw_xml *xml, const char *text, size_t size) {
 }
 
 static bool is_utf8_name(const xmlChar *encoding) {
-    return encoding == NULL || xmlStrcasecmp(encoding, BAD_CAST "UTF-8") == 0 ||
-           xmlStrcasecmp(encoding, BAD_CAST "US-ASCII") == 0;
+    return encoding == NULL || xmlStrcasecmp(encoding, (const xmlChar *)"UTF-8") == 0 ||
+           xmlStrcasecmp(encoding, (const xmlChar *)"US-ASCII") == 0;
 }
 
 static void validate(plw_xml *xml, const plw_xml_schema *schema) {
@@ -415,44 +415,52 @@ static plw_status read_bytes(const char *path, size_t size_most, char **text, si
 
 /* ---- what is offered --------------------------------------------------------------------------------------------- */
 
-static plw_status new_xml(const char *name, plw_xml **xml, plw_error *error) {
-    plw_xml *made = calloc(1, sizeof *made);
-    char *copy = made == NULL ? NULL : strdup(name);
-    if (copy == NULL) {
-        free(made);
-        return plw_fail(error, PLW_E_NO_MEMORY, "%s: out of memory", name);
+static plw_xml *new_xml(const char *name) {
+    plw_xml *xml = calloc(1, sizeof *xml);
+    if (xml != NULL) {
+        xml->name = strdup(name);
     }
-    made->name = copy;
-    *xml = made;
-    return PLW_OK;
+    if (xml != NULL && xml->name == NULL) {
+        free(xml);
+        return NULL;
+    }
+    return xml;
 }
 
-plw_status plw_xml_read_memory(const char *name, const char *text, size_t size, const plw_xml_schema *schema,
-                               plw_xml **xml, plw_error *error) {
-    plw_xml *made = NULL;
-    plw_status status = new_xml(name, &made, error);
-    if (status != PLW_OK) {
-        return status;
-    }
+static void read_text(plw_xml *xml, const char *text, size_t size) {
     const char *unfit = size > INT32_MAX ? "the file is too large" : unfit_text(text, size);
     if (unfit != NULL) {
-        add_fault(made, 1, 1, unfit);
-    } else {
-        parse(made, text, size);
+        add_fault(xml, 1, 1, unfit);
+        return;
     }
-    if (made->document != NULL && !is_utf8_name(made->document->encoding)) {
-        add_fault(made, 1, 1, "the file declares another encoding than UTF-8; save it as UTF-8");
+    parse(xml, text, size);
+    if (xml->document != NULL && !is_utf8_name(xml->document->encoding)) {
+        add_fault(xml, 1, 1, "the file declares another encoding than UTF-8; save it as UTF-8");
     }
-    if (made->faults.text[0] == '\0' && !made->no_memory) {
-        validate(made, schema);
-    }
-    status = plw_xml_verdict(made, error);
+}
+
+/* Hand the document out when it has no fault, else free it. */
+static plw_status hand_out(plw_xml *made, plw_xml **xml, plw_error *error) {
+    const plw_status status = plw_xml_verdict(made, error);
     if (status != PLW_OK) {
         plw_xml_free(made);
         return status;
     }
     *xml = made;
     return PLW_OK;
+}
+
+plw_status plw_xml_read_memory(const char *name, const char *text, size_t size, const plw_xml_schema *schema,
+                               plw_xml **xml, plw_error *error) {
+    plw_xml *made = new_xml(name);
+    if (made == NULL) {
+        return plw_fail(error, PLW_E_NO_MEMORY, "%s: out of memory", name);
+    }
+    read_text(made, text, size);
+    if (made->faults.text[0] == '\0' && !made->no_memory) {
+        validate(made, schema);
+    }
+    return hand_out(made, xml, error);
 }
 
 plw_status plw_xml_read_file(const char *path, size_t size_most, const plw_xml_schema *schema, plw_xml **xml,
@@ -479,25 +487,16 @@ plw_status plw_xml_read_root(const char *path, plw_xml **xml, plw_error *error) 
     if (status != PLW_OK) {
         return status;
     }
-    plw_xml *made = NULL;
-    status = new_xml(path, &made, error);
-    if (status == PLW_OK) {
+    plw_xml *made = new_xml(path);
+    if (made == NULL) {
+        status = plw_fail(error, PLW_E_NO_MEMORY, "%s: out of memory", path);
+    } else {
         made->root_only = true;
-        const char *unfit = unfit_text(text, size);
-        if (unfit != NULL) {
-            add_fault(made, 1, 1, unfit);
-        } else {
-            parse(made, text, size);
-        }
-        status = plw_xml_verdict(made, error);
+        read_text(made, text, size);
+        status = hand_out(made, xml, error);
     }
     free(text);
-    if (status != PLW_OK) {
-        plw_xml_free(made);
-        return status;
-    }
-    *xml = made;
-    return PLW_OK;
+    return status;
 }
 
 void plw_xml_free(plw_xml *xml) {

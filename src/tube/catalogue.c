@@ -31,6 +31,8 @@ typedef struct {
     bool hidden; /* an earlier folder has it */
 } tube_name;
 
+typedef const plw_tube *tube_pointer;
+
 struct plw_catalogue {
     plw_xml_schema *schema;
     size_t folders_count;
@@ -38,7 +40,7 @@ struct plw_catalogue {
     size_t files_count, files_size;
     tube_name *names;
     size_t names_count, names_size;
-    const plw_tube **all; /* sorted; made when first asked for */
+    tube_pointer *all; /* sorted; made when first asked for */
     size_t all_count;
 };
 
@@ -371,7 +373,7 @@ static finding find_without_suffix(const plw_catalogue *catalogue, const char *k
 
 static void show_designation(const char *designation, char shown[SHOWN_LENGTH + 1]) {
     size_t used = 0;
-    for (; designation[used] != '\0' && used < SHOWN_LENGTH; used++) {
+    for (; used < SHOWN_LENGTH && designation[used] != '\0'; used++) {
         const unsigned char c = (unsigned char)designation[used];
         shown[used] = c < 0x20 || c >= 0x7F ? '?' : designation[used];
     }
@@ -496,7 +498,7 @@ static bool is_hidden(const plw_tube *const *tubes, size_t count, const plw_tube
 
 plw_status plw_catalogue_all(plw_catalogue *catalogue, const plw_tube *const **tubes, size_t *count, plw_error *error) {
     if (catalogue->all == NULL) {
-        const plw_tube **all = calloc(catalogue->files_count + 1, sizeof *all);
+        tube_pointer *all = calloc(catalogue->files_count + 1, sizeof(tube_pointer));
         size_t used = 0;
         if (all == NULL) {
             return out_of_memory(error);
@@ -512,7 +514,7 @@ plw_status plw_catalogue_all(plw_catalogue *catalogue, const plw_tube *const **t
                 all[used++] = tube;
             }
         }
-        qsort((void *)all, used, sizeof *all, compare_tubes);
+        qsort((void *)all, used, sizeof(tube_pointer), compare_tubes);
         catalogue->all = all;
         catalogue->all_count = used;
     }

@@ -113,21 +113,21 @@ const plw_tube_field plw_coefficient_error_field = {"relative-error", 0, PLW_FIE
 
 /* A prefix and unit, and the power of ten it stands for. */
 typedef struct {
-    plw_unit unit;
     const char *suffix;
+    plw_unit unit;
     int exponent;
 } style_facts;
 
 static const style_facts STYLES[] = {
-    [PLW_FIELD_VOLTS] = {PLW_UNIT_VOLT, "V", 0},
-    [PLW_FIELD_MILLIAMPERES] = {PLW_UNIT_AMPERE, "mA", -3},
-    [PLW_FIELD_AMPERES] = {PLW_UNIT_AMPERE, "A", 0},
-    [PLW_FIELD_OHMS] = {PLW_UNIT_OHM, "ohm", 0},
-    [PLW_FIELD_WATTS] = {PLW_UNIT_WATT, "W", 0},
-    [PLW_FIELD_MICROFARADS] = {PLW_UNIT_FARAD, "uF", -6},
-    [PLW_FIELD_MICROMHOS] = {PLW_UNIT_SIEMENS, "umho", -6},
-    [PLW_FIELD_PERCENT] = {PLW_UNIT_PERCENT, "%", 0},
-    [PLW_FIELD_NUMBER] = {PLW_UNIT_NONE, "", 0},
+    [PLW_FIELD_VOLTS] = {"V", PLW_UNIT_VOLT, 0},
+    [PLW_FIELD_MILLIAMPERES] = {"mA", PLW_UNIT_AMPERE, -3},
+    [PLW_FIELD_AMPERES] = {"A", PLW_UNIT_AMPERE, 0},
+    [PLW_FIELD_OHMS] = {"ohm", PLW_UNIT_OHM, 0},
+    [PLW_FIELD_WATTS] = {"W", PLW_UNIT_WATT, 0},
+    [PLW_FIELD_MICROFARADS] = {"uF", PLW_UNIT_FARAD, -6},
+    [PLW_FIELD_MICROMHOS] = {"umho", PLW_UNIT_SIEMENS, -6},
+    [PLW_FIELD_PERCENT] = {"%", PLW_UNIT_PERCENT, 0},
+    [PLW_FIELD_NUMBER] = {"", PLW_UNIT_NONE, 0},
 };
 
 void plw_fields_clear(const plw_tube_field *fields, void *structure) {
