@@ -58,6 +58,10 @@ PLW_API double plw_law_plate_amps(const plw_law *law, double plate_volts, double
  * Ret:  V; NaN when no grid voltage between -1000 and +100 V does it */
 PLW_API double plw_law_grid_volts_for(const plw_law *law, double plate_volts, double screen_volts, double cathode_amps);
 
+/* Multiply every current of the law by a factor: a tube stronger or weaker than the bogey.
+ * In:   factor > 0 */
+PLW_API void plw_law_scale(plw_law *law, double factor);
+
 #ifdef __cplusplus
 }
 #endif

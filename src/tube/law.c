@@ -229,3 +229,7 @@ double plw_law_grid_volts_for(const plw_law *law, double plate_volts, double scr
     }
     return (double)NAN;
 }
+
+void plw_law_scale(plw_law *law, double factor) {
+    law->coefficient[KG1] /= factor;
+}

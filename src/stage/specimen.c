@@ -1,0 +1,161 @@
+/* One tube on the bench: what meter readings say of it.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
+#include "platewright/specimen.h"
+
+#include <math.h>
+#include <stdio.h>
+#include <string.h>
+
+#include "stage/circuit.h"
+
+static plw_status validate_readings(const plw_stage *stage, const plw_meter_readings *r, plw_error *error) {
+    if (!isfinite(stage->cathode_resistor_ohms)) {
+        return plw_fail(error, PLW_E_USAGE,
+                        "measured: with fixed bias the cathode's voltage does not tell the current; put 10 ohm in the "
+                        "cathode lead, or measure across the primary's known resistance");
+    }
+    if (!isfinite(r->cathode_volts)) {
+        return plw_fail(error, PLW_E_USAGE,
+                        "measured: the cathode's voltage to chassis is needed, as in cathode=12.9V");
+    }
+    const struct {
+        const char *name;
+        double volts;
+    } readings[] = {{"cathode", r->cathode_volts},
+                    {"screen", r->screen_volts},
+                    {"plate", r->plate_volts},
+                    {"supply", r->supply_volts}};
+    for (size_t index = 0; index < sizeof readings / sizeof readings[0]; index++) {
+        if (!isnan(readings[index].volts) && !(readings[index].volts > 0.0 && readings[index].volts <= 5000.0)) {
+            return plw_fail(error, PLW_E_USAGE, "measured: %s reads %.4g V; more than 0 and up to 5000 V is possible",
+                            readings[index].name, readings[index].volts);
+        }
+        if (index > 0 && readings[index].volts <= r->cathode_volts) {
+            return plw_fail(error, PLW_E_USAGE, "measured: %s (%.4g V) is not above the cathode (%.4g V)",
+                            readings[index].name, readings[index].volts, r->cathode_volts);
+        }
+    }
+    /* A meter's two readings may differ by its own error. */
+    if (r->plate_volts > 1.02 * r->supply_volts) {
+        return plw_fail(error, PLW_E_USAGE,
+                        "measured: the plate (%.4g V) reads above the supply that feeds it (%.4g V)", r->plate_volts,
+                        r->supply_volts);
+    }
+    return PLW_OK;
+}
+
+/* Move the whole supply up or down so that it gives the voltage read at this current. */
+static void move_supply(plw_supply *supply, double volts) {
+    supply->volts += volts;
+    for (size_t index = 0; index < supply->points; index++) {
+        supply->point[index].volts += volts;
+    }
+}
+
+/* The tube's own currents by its share of the cathode current, at the voltages read or, where none was read, those that
+ * the circuit leaves at these currents.  The share hardly depends on them: a few rounds settle it. */
+static void settle_currents(const plw_stage *stage, const plw_circuit *circuit, const plw_meter_readings *r,
+                            plw_specimen *s) {
+    double share = 0.1;
+    if (!circuit->has_screen) {
+        share = 0.0;
+    }
+    for (int round = 0; round < 20; round++) {
+        s->screen_amps = share * s->cathode_amps;
+        s->plate_amps = s->cathode_amps - s->screen_amps;
+        const double amps[PLW_FLOWS] = {s->plate_amps, s->screen_amps};
+        double ohms;
+        plw_supply_at(&stage->supply, plw_circuit_supply_amps(circuit, amps), &s->supply_volts, &ohms);
+        if (s->supply_read) {
+            s->supply_volts = r->supply_volts;
+        }
+        const double tapped = circuit->screen_on_primary ? circuit->tap * s->screen_amps : 0.0;
+        s->plate_to_ground_volts =
+            s->plate_read ? r->plate_volts : s->supply_volts - circuit->primary_ohms * (s->plate_amps + tapped);
+        double screen_source = isfinite(stage->screen_supply_volts) ? stage->screen_supply_volts : s->supply_volts;
+        if (circuit->screen_on_primary) {
+            screen_source += circuit->tap * (s->plate_to_ground_volts - s->supply_volts);
+        }
+        s->screen_to_ground_volts =
+            s->screen_read ? r->screen_volts : screen_source - stage->screen_resistor_ohms * s->screen_amps;
+        s->plate_volts = s->plate_to_ground_volts - s->cathode_volts;
+        s->screen_volts = s->screen_to_ground_volts - s->cathode_volts;
+        plw_currents c;
+        plw_law_evaluate(&stage->tube->model.law, s->plate_volts, s->screen_volts, s->grid_volts, &c);
+        s->model_cathode_amps = c.plate_amps + c.screen_amps;
+        share = s->model_cathode_amps > 0.0 ? c.screen_amps / s->model_cathode_amps : 0.0;
+    }
+}
+
+/* The stage as it is on the bench: supply, copper and tube as read. */
+static void measured_stage(const plw_stage *stage, const plw_circuit *circuit, plw_specimen *s) {
+    s->tube = *stage->tube;
+    plw_law_scale(&s->tube.model.law, s->cathode_amps / s->model_cathode_amps);
+    s->stage = *stage;
+    s->stage.tube = &s->tube;
+    const double amps[PLW_FLOWS] = {s->plate_amps, s->screen_amps};
+    if (s->supply_read) {
+        double volts;
+        double ohms;
+        plw_supply_at(&stage->supply, plw_circuit_supply_amps(circuit, amps), &volts, &ohms);
+        move_supply(&s->stage.supply, s->supply_volts - volts);
+    }
+    s->primary_ohms = (double)NAN;
+    if (s->supply_read && s->plate_read) {
+        const double through = s->plate_amps + (circuit->screen_on_primary ? circuit->tap * s->screen_amps : 0.0);
+        s->primary_ohms = fmax((s->supply_volts - s->plate_to_ground_volts) / (circuit->tubes * through), 0.0);
+        s->stage.primary_ohms = s->primary_ohms;
+    }
+}
+
+plw_status plw_specimen_measure(const plw_stage *stage, const plw_quiescent *quiescent,
+                                const plw_meter_readings *readings, plw_aim aim, plw_series series,
+                                plw_specimen *specimen, plw_error *error) {
+    (void)quiescent;
+    plw_status status = plw_stage_validate(stage, true, error);
+    if (status == PLW_OK) {
+        status = validate_readings(stage, readings, error);
+    }
+    if (status != PLW_OK) {
+        return status;
+    }
+    plw_circuit circuit;
+    plw_circuit_prepare(stage, &circuit);
+    memset(specimen, 0, sizeof *specimen);
+    plw_specimen *s = specimen;
+    s->supply_read = isfinite(readings->supply_volts);
+    s->plate_read = isfinite(readings->plate_volts);
+    s->screen_read = isfinite(readings->screen_volts) && circuit.has_screen;
+    s->cathode_volts = readings->cathode_volts;
+    s->grid_volts = -s->cathode_volts;
+    s->cathode_amps = s->cathode_volts / circuit.cathode_ohms;
+    settle_currents(stage, &circuit, readings, s);
+    if (!(s->plate_volts > 0.0)) {
+        return plw_fail(error, PLW_E_USAGE,
+                        "measured: cathode at %.4g V leaves no voltage across the tube; check the "
+                        "resistor's value and the supply",
+                        s->cathode_volts);
+    }
+    if (!circuit.has_screen) {
+        s->screen_to_ground_volts = s->screen_volts = (double)NAN;
+    }
+    if (!(s->model_cathode_amps > 1e-9)) {
+        return plw_fail(
+            error, PLW_E_USAGE,
+            "measured: at these voltages a tube of this type is cut off, yet the cathode reads %.4g V; check "
+            "the type, the readings and for grid leakage",
+            s->cathode_volts);
+    }
+    s->plate_watts = s->plate_volts * s->plate_amps;
+    s->screen_watts = s->screen_volts * s->screen_amps;
+    s->off_percent = 100.0 * (s->cathode_amps / s->model_cathode_amps - 1.0);
+    measured_stage(stage, &circuit, s);
+    plw_stage wanted = s->stage;
+    wanted.cathode_resistor_ohms = (double)NAN;
+    plw_error why = {0};
+    s->resistor_found = plw_bias_choose(&wanted, aim, series, &s->choice, &why) == PLW_OK;
+    if (!s->resistor_found) {
+        snprintf(s->resistor_obstacle, sizeof s->resistor_obstacle, "%.250s", why.text);
+    }
+    return PLW_OK;
+}
