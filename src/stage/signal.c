@@ -15,8 +15,8 @@ static void widen(double value, double *least, double *most) {
 
 /* Extremes and the drawn path; heat of plate and screen as means over the cycle. */
 static void walk_cycle(const plw_circuit *circuit, const plw_cycle *cycle, plw_signal *s) {
-    s->plate_volts_least = s->plate_amps_least = INFINITY;
-    s->plate_volts_most = s->plate_amps_most = s->plate_to_ground_volts_most = -INFINITY;
+    s->plate_volts_least = s->plate_amps_least = HUGE_VAL;
+    s->plate_volts_most = s->plate_amps_most = s->plate_to_ground_volts_most = -HUGE_VAL;
     s->screen_amps_most = 0.0;
     double plate_watts = 0.0;
     double screen_watts = 0.0;
