@@ -31,6 +31,7 @@ typedef struct {
 } place;
 
 struct plw_xml_schema {
+    plw_xml *text; /* the schema refers to it */
     xmlSchemaPtr schema;
 };
 
@@ -97,10 +98,6 @@ plw_status plw_xml_verdict(const plw_xml *xml, plw_error *error) {
 
 /* Line and column of a byte of the text.  Asked for rising offsets, so that the text is counted through once. */
 static place place_of(plw_xml *xml, size_t offset) {
-    if (offset < xml->place_offset) {
-        xml->place_offset = 0;
-        xml->place_there = (place){1, 1};
-    }
     for (size_t i = xml->place_offset; i < offset && i < xml->size; i++) {
         const unsigned char c = (unsigned char)xml->text[i];
         if (c == '\n') {
@@ -110,7 +107,7 @@ static place place_of(plw_xml *xml, size_t offset) {
             xml->place_there.column++;
         }
     }
-    xml->place_offset = offset;
+    xml->place_offset = offset > xml->place_offset ? offset : xml->place_offset;
     return xml->place_there;
 }
 
@@ -256,44 +253,6 @@ static xmlParserCtxtPtr new_parser(plw_xml *xml) {
     return parser;
 }
 
-/* An attribute value split by character references becomes one text, so that it can be handed out as it stands. */
-static void join_attribute_texts(plw_xml *xml, xmlNodePtr element) {
-    for (xmlAttrPtr attribute = element->properties; attribute != NULL; attribute = attribute->next) {
-        if (attribute->children == NULL ||
-            (attribute->children->next == NULL && attribute->children->type == XML_TEXT_NODE)) {
-            continue;
-        }
-        xmlChar *value = xmlNodeListGetString(xml->document, attribute->children, 1);
-        xmlNodePtr text = value == NULL ? NULL : xmlNewDocText(xml->document, value);
-        xmlFree(value);
-        if (text == NULL) {
-            xml->no_memory = true;
-            return;
-        }
-        xmlFreeNodeList(attribute->children);
-        text->parent = (xmlNodePtr)attribute;
-        attribute->children = text;
-        attribute->last = text;
-    }
-}
-
-static void join_all_attribute_texts(plw_xml *xml) {
-    xmlNodePtr node = xmlDocGetRootElement(xml->document);
-    while (node != NULL) {
-        if (node->type == XML_ELEMENT_NODE) {
-            join_attribute_texts(xml, node);
-        }
-        if (node->children != NULL && node->type == XML_ELEMENT_NODE) {
-            node = node->children;
-            continue;
-        }
-        while (node != NULL && node->next == NULL) {
-            node = node->parent != NULL && node->parent->type == XML_ELEMENT_NODE ? node->parent : NULL;
-        }
-        node = node == NULL ? NULL : node->next;
-    }
-}
-
 static void parse(plw_xml *xml, const char *text, size_t size) {
     xmlParserCtxtPtr parser = new_parser(xml);
     if (parser == NULL) {
@@ -315,9 +274,6 @@ static void parse(plw_xml *xml, const char *text, size_t size) {
     const bool empty = xml->document == NULL || xmlDocGetRootElement(xml->document) == NULL;
     if (empty && xml->faults.text[0] == '\0' && !xml->no_memory) {
         add_fault(xml, 1, 1, "no XML element is found; is this the right file?");
-    }
-    if (!empty) {
-        join_all_attribute_texts(xml);
     }
 }
 
@@ -509,27 +465,42 @@ void plw_xml_free(plw_xml *xml) {
 }
 
 static void on_schema_text_error(void *context, library_error fault) {
-    plw_error *error = context;
     char text[FAULT_TEXT_SIZE];
     copy_message(text, sizeof text, fault);
-    plw_error_add(error, "schema:%d: %s", fault->line, text);
+    add_fault(context, fault->line, 1, text);
+}
+
+/* Make the schema of its text.  Faults stand in the text's list of faults. */
+static void build_schema(plw_xml_schema *schema) {
+    xmlSchemaParserCtxtPtr parser = xmlSchemaNewDocParserCtxt(schema->text->document);
+    if (parser == NULL) {
+        schema->text->no_memory = true;
+        return;
+    }
+    xmlSchemaSetParserStructuredErrors(parser, on_schema_text_error, schema->text);
+    schema->schema = xmlSchemaParse(parser);
+    xmlSchemaFreeParserCtxt(parser);
+    if (schema->schema == NULL && schema->text->faults.text[0] == '\0') {
+        add_fault(schema->text, 1, 1, "the schema cannot be used");
+    }
 }
 
 plw_status plw_xml_schema_parse(const char *text, plw_xml_schema **schema, plw_error *error) {
-    (void)pthread_once(&library_started, start_library);
     plw_xml_schema *made = calloc(1, sizeof *made);
-    xmlSchemaParserCtxtPtr parser = made == NULL ? NULL : xmlSchemaNewMemParserCtxt(text, (int)strlen(text));
-    if (parser == NULL) {
+    plw_xml *read = made == NULL ? NULL : new_xml("schema");
+    if (read == NULL) {
         free(made);
         return plw_fail(error, PLW_E_NO_MEMORY, "schema: out of memory");
     }
-    plw_error faults = {.status = PLW_OK};
-    xmlSchemaSetParserStructuredErrors(parser, on_schema_text_error, &faults);
-    made->schema = xmlSchemaParse(parser);
-    xmlSchemaFreeParserCtxt(parser);
-    if (made->schema == NULL) {
-        free(made);
-        return plw_fail(error, PLW_E_DATA, "%s", faults.text[0] == '\0' ? "schema: cannot be used" : faults.text);
+    made->text = read;
+    read_text(read, text, strlen(text));
+    if (read->faults.text[0] == '\0' && !read->no_memory) {
+        build_schema(made);
+    }
+    const plw_status status = plw_xml_verdict(read, error);
+    if (status != PLW_OK) {
+        plw_xml_schema_free(made);
+        return status;
     }
     *schema = made;
     return PLW_OK;
@@ -538,6 +509,7 @@ plw_status plw_xml_schema_parse(const char *text, plw_xml_schema **schema, plw_e
 void plw_xml_schema_free(plw_xml_schema *schema) {
     if (schema != NULL) {
         xmlSchemaFree(schema->schema);
+        plw_xml_free(schema->text);
         free(schema);
     }
 }
@@ -580,7 +552,9 @@ const char *plw_xml_name(const plw_xml_element *element) {
 const char *plw_xml_attribute(const plw_xml_element *element, const char *name) {
     for (const xmlAttr *attribute = element->properties; attribute != NULL; attribute = attribute->next) {
         if (strcmp((const char *)attribute->name, name) == 0) {
-            return attribute->children == NULL ? "" : (const char *)attribute->children->content;
+            /* One text: without a DOCTYPE there are no entities but the five that the parser replaces. */
+            const xmlNode *value = attribute->children;
+            return value == NULL || value->content == NULL ? "" : (const char *)value->content;
         }
     }
     return NULL;

@@ -226,6 +226,7 @@ static const bad_file BAD_FILES[] = {
     {"rectifier_without_limits.xml", {":2:1: tube: the element 'rectifier-limits'", ":4:3: rectifier-row: "}},
     {"screen_in_triode.xml",
      {":5:3: row: the attribute 'screen' has no place", ":6:3: row: the attribute 'screen' is"}},
+    {"triode_first.xml", {":4:3: ratings: the first ratings must be those of the pentode connection"}},
     {"triode_with_screen.xml", {":4:3: ratings: connection: a tube without a screen"}},
     {"utf16.xml", {"UTF-16"}},
     {"utf16_no_mark.xml", {"UTF-16"}},
@@ -465,7 +466,7 @@ static void a_law_comes_back_exactly(void **state) {
     folder_remove(&folder);
 }
 
-/* Change the first `from` of the file of a law into `to` and read it. */
+/* Change the first `from` of the file of a law into `to` (NULL: leave its line out) and read it. */
 static void expect_bad_law(const char *from, const char *to, const char *fragment) {
     test_folder folder;
     folder_make(&folder);
@@ -477,10 +478,12 @@ static void expect_bad_law(const char *from, const char *to, const char *fragmen
     char *text = file_text(path, NULL);
     char *at = strstr(text, from);
     assert_non_null(at);
-    const size_t room = strlen(text) + strlen(to) + 1;
+    const char *rest = to == NULL ? strchr(at, '\n') : at + strlen(from);
+    const char *between = to == NULL ? "" : to;
+    const size_t room = strlen(text) + strlen(between) + 1;
     char *changed = malloc(room);
     assert_non_null(changed);
-    snprintf(changed, room, "%.*s%s%s", (int)(at - text), text, to, at + strlen(from));
+    snprintf(changed, room, "%.*s%s%s", (int)(at - text), text, between, rest);
     folder_write(&folder, "law.xml", changed);
     free(text);
     free(changed);
@@ -502,7 +505,8 @@ static void a_law_that_does_not_fit_is_refused(void **state) {
     expect_bad_law("value=\"1.1\"", "value=\"1.1V\"", "value: 1.1V");
     expect_bad_law("<fit-error", "<coefficient name=\"more\" value=\"1.5\"/><fit-error",
                    "'more' stands where no further one");
-    expect_bad_law("<coefficient name=\"mu\" value=\"1.1\"/>", "", "'exponent' stands where mu is expected");
+    expect_bad_law("<coefficient name=\"mu\"", NULL, "'exponent' stands where mu is expected");
+    expect_bad_law("<coefficient name=\"capture\"", NULL, "model: the coefficient 'capture' is missing");
     expect_bad_law("rows=\"3\"", "rows=\"-3\"", "rows");
 }
 
