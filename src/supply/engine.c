@@ -11,7 +11,7 @@
 #define STEPS_IN_HALF 32
 #define PI 3.14159265358979323846
 
-enum { DEEPEST = PLW_FLOW_LEVELS - 1, RAMP_STEPS = 2, SEEN_LEVEL = 1, CURVED_DEPTH = 6 };
+enum { DEEPEST = PLW_FLOW_LEVELS - 1, CURVED_RAMP_STEPS = 2, SEEN_RAMP_STEPS = 8, SEEN_LEVEL = 1, CURVED_DEPTH = 6 };
 
 /* ---- matrices ---------------------------------------------------------------------------------------------------- */
 
@@ -129,9 +129,9 @@ typedef struct {
     double angle;
     plw_cycle *cycle;
     bool with_derivative;
-    int base, ramp, ramp_count; /* steps start short after a switching and lengthen */
-    int descent;                /* within a descent towards a switching: the level to try, else 0 */
-    plw_collocated collocated;  /* the last attempt, PLW_MODE_CURVED */
+    int base, ramp, ramp_count, ramp_steps; /* steps start short after a switching and lengthen */
+    int descent;                            /* within a descent towards a switching: the level to try, else 0 */
+    plw_collocated collocated;              /* the last attempt, PLW_MODE_CURVED */
     plw_piece_seen seen;
     void *context;
 } run;
@@ -245,7 +245,7 @@ static void take(run *r, int level, double fraction, const double *tried) {
         slopes(r->engine, r->mode, r->angle, r->cycle->end, r->load_amps, piece.slope[1]);
         r->seen(r->context, r->engine, &piece);
     }
-    if (r->ramp > 0 && ++r->ramp_count == RAMP_STEPS) {
+    if (r->ramp > 0 && ++r->ramp_count == r->ramp_steps) {
         r->ramp--;
         r->ramp_count = 0;
     }
@@ -265,8 +265,11 @@ static void set_steps(run *r) {
             r->base++;
         }
         r->ramp = 3;
+        r->ramp_steps = CURVED_RAMP_STEPS;
     } else if (r->mode == PLW_MODE_ONE && r->seen != NULL) {
-        while (r->base + r->ramp < DEEPEST && ldexp(longest, -(r->base + r->ramp)) > 0.25 * r->engine->relaxation) {
+        /* A small path resistance lets the current jump up; its rise is seen in steps of an eighth of its time. */
+        r->ramp_steps = SEEN_RAMP_STEPS;
+        while (r->base + r->ramp < DEEPEST && ldexp(longest, -(r->base + r->ramp)) > r->engine->relaxation / 8) {
             r->ramp++;
         }
     }

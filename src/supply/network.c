@@ -103,3 +103,16 @@ double plw_network_demand(const plw_network *network, const plw_rectifier *suppl
     }
     return beyond[0] + shunt;
 }
+
+void plw_network_means(const plw_network *network, const plw_rectifier *supply, double load_amps, double output_volts,
+                       double node_volts[PLW_NODES_MOST]) {
+    const size_t first_section = network->choke_input ? 0 : 1;
+    double volts = output_volts, beyond = load_amps + network->output_siemens * output_volts;
+    for (size_t i = network->nodes; i-- > 0;) {
+        node_volts[i] = volts;
+        beyond += supply->drawn_amps[i];
+        if (i >= first_section) {
+            volts += supply->section[i - first_section].ohms * beyond;
+        }
+    }
+}

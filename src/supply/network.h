@@ -40,4 +40,9 @@ void plw_network_make(plw_network *network, const plw_rectifier *supply, double 
 double plw_network_demand(const plw_network *network, const plw_rectifier *supply, double load_amps, double volts,
                           double state[PLW_STATES_MOST]);
 
+/* Mean volts of every node from those of the output: exact, since capacitors carry no mean current and chokes no mean
+ * voltage. */
+void plw_network_means(const plw_network *network, const plw_rectifier *supply, double load_amps, double output_volts,
+                       double node_volts[PLW_NODES_MOST]);
+
 #endif

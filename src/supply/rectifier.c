@@ -179,6 +179,11 @@ static plw_status solve(const plw_engine *engine, const plw_rectifier *supply, p
                         1e3 * load.amps);
     }
     plw_measure(engine, load.amps, steady.start, instants, count, state);
+    double node_volts[PLW_NODES_MOST];
+    plw_network_means(&engine->network, supply, load.amps, steady.output_volts, node_volts);
+    for (size_t k = 0; k < state->nodes; k++) {
+        state->node[k].volts = node_volts[k];
+    }
     state->source_ohms = steady.output_ohms;
     state->iterations = steady.iterations;
     return PLW_OK;

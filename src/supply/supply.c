@@ -5,6 +5,8 @@
 #include <math.h>
 #include <string.h>
 
+#include "base/numeric.h"
+
 /* Two readings at currents nearer than this (relative) are readings at one current: a meter cannot tell them apart. */
 #define SAME_CURRENT 1e-6
 #define SAME_VOLTS 1e-9
@@ -174,12 +176,10 @@ static void curve_at(const plw_supply *supply, double amps, double *volts, doubl
     }
     const size_t i = interval_of(supply, amps);
     const plw_reading *left = &supply->point[i], *right = left + 1;
-    const double width = right->amps - left->amps, t = (amps - left->amps) / width;
-    const double chord = (right->volts - left->volts) / width;
-    const double slope_left = -supply->tangent_ohms[i], slope_right = -supply->tangent_ohms[i + 1];
-    const double square = 3 * chord - 2 * slope_left - slope_right, cube = slope_left + slope_right - 2 * chord;
-    *volts = left->volts + width * t * (slope_left + t * (square + t * cube));
-    *ohms = fmax(0, -(slope_left + t * (2 * square + 3 * t * cube)));
+    double slope;
+    plw_cubic_between(left->amps, left->volts, -supply->tangent_ohms[i], right->amps, right->volts,
+                      -supply->tangent_ohms[i + 1], amps, volts, &slope);
+    *ohms = fmax(0, -slope);
 }
 
 void plw_supply_at(const plw_supply *supply, double amps, double *volts, double *ohms) {
