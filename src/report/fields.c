@@ -1,0 +1,64 @@
+/* The figures of a stage at rest and driven by their names in JSON and CSV, units in the names.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
+#include "report/fields.h"
+
+#include <string.h>
+
+#define AT_REST(name)                                                                                                  \
+    { #name, offsetof(plw_quiescent, name) }
+#define DRIVEN(name)                                                                                                   \
+    { #name, offsetof(plw_signal, name) }
+
+const plw_field plw_quiescent_fields[] = {
+    AT_REST(supply_volts),
+    AT_REST(plate_to_ground_volts),
+    AT_REST(plate_volts),
+    AT_REST(screen_volts),
+    AT_REST(cathode_volts),
+    AT_REST(grid_volts),
+    AT_REST(plate_amps),
+    AT_REST(screen_amps),
+    AT_REST(cathode_amps),
+    AT_REST(plate_watts),
+    AT_REST(screen_watts),
+    AT_REST(gm_siemens),
+    AT_REST(plate_resistance_ohms),
+    AT_REST(mu),
+};
+const size_t plw_quiescent_fields_count = sizeof plw_quiescent_fields / sizeof plw_quiescent_fields[0];
+
+const plw_field plw_signal_fields[] = {
+    DRIVEN(drive_peak_volts), DRIVEN(power_watts), DRIVEN(speaker_watts), DRIVEN(thd_percent),
+    DRIVEN(plate_amps),       DRIVEN(screen_amps), DRIVEN(plate_watts),   DRIVEN(screen_watts),
+};
+const size_t plw_signal_fields_count = sizeof plw_signal_fields / sizeof plw_signal_fields[0];
+
+double plw_field_value(const plw_field *field, const void *record) {
+    double value;
+    memcpy(&value, (const char *)record + field->offset, sizeof value);
+    return value;
+}
+
+const char *plw_drive_limit_name(plw_drive_limit limit) {
+    switch (limit) {
+    case PLW_DRIVE_GRID_CURRENT:
+        return "grid current";
+    case PLW_DRIVE_CUT_OFF:
+        return "cut-off";
+    case PLW_DRIVE_GIVEN:
+        break;
+    }
+    return "drive";
+}
+
+const char *plw_stage_tube_type(const plw_stage *stage) {
+    const plw_tube *tube = stage->tube;
+    if (stage->variant >= 0 && (size_t)stage->variant < tube->variants_count) {
+        return tube->variants[stage->variant].type;
+    }
+    return tube->type;
+}
+
+bool plw_stage_currents_together(const plw_stage *stage) {
+    return stage->tube->model.law.kind == PLW_LAW_PENTODE && stage->connection == PLW_CONNECTION_TRIODE;
+}
