@@ -68,6 +68,7 @@ typedef struct {
     double screen_amps, screen_amps_full_drive;
     double plate_resistance_ohms, gm_siemens, mu;
     double load_ohms, power_watts;
+    bool undistorted; /* the power is printed for less than full drive ("undistorted output"): an upper bound only */
     double thd_percent, h2_percent, h3_percent;
     plw_provenance provenance;
 } plw_row;
