@@ -2,7 +2,15 @@
 #
 #   make deps demo   install what is needed, build, design the example stage, draw its plots
 #   make check       build and run every test
-#   make help        the other targets
+#   make install     PREFIX=/usr/local, DESTDIR= are obeyed
+#   make refit       recompute every tube's coefficients from its printed rows
+#   make accuracy    the law against every printed row, in the fit and left out of it
+#   make bench       speed, as ratios within one run
+#   make strict      format, static analysis, clang, sanitizers, valgrind, replay of the fuzzing corpus
+#   make fuzz        coverage-guided fuzzing of the parsers (FUZZ_SECONDS=60)
+#   make coverage    lines and branches reached by the tests
+#   make clean       remove build/
+#   make help        this list
 #
 # SPDX-License-Identifier: GPL-3.0-or-later
 
@@ -118,6 +126,105 @@ check-units: $(TESTS)
 
 check-cli: $(PROGRAM)
 	@B='$(B)' RUNNER='$(RUNNER)' LC_ALL=C.UTF-8 sh tests/cli/run
+
+# ---- what is needed ------------------------------------------------------------------------------------------------
+DEBIAN_PACKAGES := gcc libc6-dev make pkg-config libxml2-dev libxml2-utils libgsl-dev libjansson-dev libcmocka-dev \
+                   libsundials-dev gnuplot-nox
+STRICT_PACKAGES := clang clang-format clang-tidy cppcheck valgrind libclang-rt-dev mandoc
+
+.PHONY: deps deps-strict
+deps:
+	@sh tests/tools/install $(DEBIAN_PACKAGES)
+deps-strict:
+	@sh tests/tools/install $(STRICT_PACKAGES)
+
+# ---- the example stage and its drawings ----------------------------------------------------------------------------
+DEMO_STAGE := plots/quay-radio.xml
+.PHONY: demo
+demo: all
+	$(PROGRAM) design $(DEMO_STAGE)
+	$(PROGRAM) plot $(DEMO_STAGE) --kind load-line --output plots/load-line.svg
+	$(PROGRAM) plot $(DEMO_STAGE) --kind transfer --output plots/transfer.svg
+	@echo 'drawn: plots/load-line.svg plots/transfer.svg'
+
+# ---- coefficients from the printed rows ----------------------------------------------------------------------------
+TUBES := $(sort $(wildcard tubedata/*.xml))
+.PHONY: refit accuracy bench
+refit: $(PROGRAM)
+	@for tube in $(TUBES); do \
+	  if grep -q 'kind="rectifier"' $$tube; then continue; fi; \
+	  $(PROGRAM) fit $$tube --output $$tube || exit 1; done
+
+accuracy: $(B)/tests/bench/accuracy
+	@$(B)/tests/bench/accuracy tubedata
+
+bench: $(PROGRAM) $(BENCH)
+	@for bench in $(filter-out %/accuracy,$(BENCH)); do $$bench || exit 1; done
+	@B='$(B)' sh tests/bench/startup
+
+# ---- stricter checks -----------------------------------------------------------------------------------------------
+SOURCES := $(sort $(wildcard src/*/*.c src/*/*.h include/platewright/*.h tests/*.h tests/*/*.c tests/*/*.h))
+.PHONY: strict asan valgrind clang-check tidy cppcheck format format-check fuzz fuzz-replay coverage
+strict: format-check cppcheck tidy clang-check asan valgrind fuzz-replay
+
+clang-check:
+	$(MAKE) CC=clang B=build/clang check
+asan:
+	$(MAKE) B=build/asan SANITIZE=address,undefined check
+valgrind: all $(TESTS)
+	@for test in $(TESTS); do case $$test in */test_random_*) continue;; esac; \
+	  echo "== valgrind $${test#$(B)/tests/}"; \
+	  QUICK=1 valgrind -q --leak-check=full --show-leak-kinds=definite,possible --errors-for-leak-kinds=definite,possible \
+	    --error-exitcode=9 $$test > $(B)/valgrind.log 2>&1 || { cat $(B)/valgrind.log; exit 1; }; done
+
+tidy:
+	clang-tidy --quiet $(LIBRARY_SOURCES) $(CLI_SOURCES) -- -std=c17 -D_POSIX_C_SOURCE=200809L -Iinclude -Isrc $(PACKAGE_CFLAGS)
+
+cppcheck:
+	cppcheck --quiet --std=c11 --enable=warning,performance,portability --inline-suppr --error-exitcode=1 \
+	  --suppress=missingIncludeSystem -Iinclude -Isrc src
+
+format:
+	clang-format -i $(SOURCES)
+format-check:
+	clang-format --dry-run --Werror $(SOURCES)
+
+$(B)/fuzz/%: tests/fuzz/%.c $(LIBRARY_SOURCES) | $(SCHEMAS:tubedata/%.xsd=$(B)/generated/schema_%.c)
+	@mkdir -p $(@D)
+	clang -std=c17 -D_POSIX_C_SOURCE=200809L -g -O1 -fsanitize=fuzzer,address,undefined -fno-sanitize-recover=all \
+	  -Iinclude -Isrc $(PACKAGE_CFLAGS) $< $(LIBRARY_SOURCES) $(SCHEMAS:tubedata/%.xsd=$(B)/generated/schema_%.c) \
+	  $(PACKAGE_LIBS) -lm -o $@
+FUZZ_SECONDS ?= 60
+fuzz: $(patsubst tests/fuzz/%.c,$(B)/fuzz/%,$(wildcard tests/fuzz/fuzz_*.c))
+	@for fuzzer in $^; do mkdir -p $(B)/corpus/$${fuzzer##*/}; \
+	  $$fuzzer -max_total_time=$(FUZZ_SECONDS) -rss_limit_mb=2048 $(B)/corpus/$${fuzzer##*/} tubedata tests/bad_data || exit 1; done
+
+# Every file of the corpus once through each parser, with the ordinary compiler.
+$(B)/tests/fuzz/%: $(B)/tests/fuzz/%.o $(B)/tests/fuzz/replay.o $(STATIC)
+	$(LINK) $^ $(PACKAGE_LIBS) -lm -o $@
+fuzz-replay: $(FUZZERS)
+	@for fuzzer in $(FUZZERS); do $$fuzzer tubedata/* tests/bad_data/* plots/* || exit 1; done
+
+coverage:
+	$(MAKE) B=build/coverage CFLAGS='-O0 -g --coverage' LDFLAGS=--coverage check
+	@cd build/coverage && find . -path './src/*.gcda' | xargs gcov -n 2>/dev/null | grep -A1 "^File 'src/"
+
+# ---- installation --------------------------------------------------------------------------------------------------
+.PHONY: install
+install: all
+	install -d $(DESTDIR)$(PREFIX)/bin $(DESTDIR)$(PREFIX)/lib/pkgconfig $(DESTDIR)$(PREFIX)/include/platewright \
+	  $(DESTDIR)$(PREFIX)/share/platewright/tubedata $(DESTDIR)$(PREFIX)/share/man/man1 \
+	  $(DESTDIR)$(PREFIX)/share/bash-completion/completions
+	install -m 755 $(PROGRAM) $(DESTDIR)$(PREFIX)/bin/
+	install -m 644 $(STATIC) $(SHARED) $(DESTDIR)$(PREFIX)/lib/
+	ln -sf $(notdir $(SHARED)) $(DESTDIR)$(PREFIX)/lib/libplatewright.so
+	install -m 644 $(B)/platewright.pc $(DESTDIR)$(PREFIX)/lib/pkgconfig/
+	install -m 644 include/platewright/*.h $(DESTDIR)$(PREFIX)/include/platewright/
+	install -m 644 tubedata/*.xml tubedata/*.xsd $(DESTDIR)$(PREFIX)/share/platewright/tubedata/
+
+.PHONY: help
+help:
+	@sed -n 's/^#   //p' Makefile
 
 .PHONY: clean
 clean:
