@@ -13,8 +13,8 @@
 
 /* The line leaves off where the output is this share of its off-load voltage. */
 #define LINE_SHARE_LEAST 0.25
-/* A step of Newton's method this short leaves about its square: enough for the points of a line. */
-#define LINE_TOLERANCE 1e-4
+/* A step of Newton's method this short against the fall from the peak leaves about its square: enough for a line. */
+#define LINE_TOLERANCE 1e-3
 
 /* ---- the description --------------------------------------------------------------------------------------------- */
 
@@ -251,28 +251,34 @@ static plw_status next_guess(const plw_engine *engine, const plw_rectifier *supp
     return PLW_OK;
 }
 
-/* In:   off_load_volts
- * Out:  *reached: how many points hold */
-static plw_status run_line(const plw_engine *engine, const plw_rectifier *supply, double most_amps,
-                           double off_load_volts, plw_supply *line, size_t *reached, plw_error *error) {
+/* How short a step must be: against the fall of the reservoir from the peak, for the current goes as its power 3/2. */
+static double line_tolerance(const plw_network *network, const plw_steady *last) {
+    const double fall = 1 - last->start[0] / (network->law.peak_volts - network->law.drop_volts);
+    return network->choke_input ? LINE_TOLERANCE * 0.01 : LINE_TOLERANCE * fmin(1, fmax(1e-5, fall));
+}
+
+/* Out:  *reached: how many points hold */
+static plw_status run_line(const plw_engine *engine, const plw_rectifier *supply, double most_amps, plw_supply *line,
+                           size_t *reached, plw_error *error) {
     plw_steady last[3], now = {0};
     memset(last, 0, sizeof last);
     for (size_t k = 0; k < PLW_LINE_POINTS; k++) {
         const double amps = line_amps(most_amps, k);
         *reached = k;
         if (nothing_drawn(&engine->network, amps)) {
-            now.output_volts = off_load_volts;
+            now.output_volts = plw_rectifier_peak_volts(supply);
             now.output_ohms = (double)INFINITY;
         } else {
             plw_status status = next_guess(engine, supply, last, k, amps, &now, error);
             if (status == PLW_OK) {
-                status = plw_steady_solve(engine, amps, LINE_TOLERANCE, &now, error);
+                status = plw_steady_solve(
+                    engine, amps, k < 4 ? PLW_STEADY_TOLERANCE : line_tolerance(&engine->network, last), &now, error);
             }
             if (status != PLW_OK) {
                 return status;
             }
         }
-        if (!(now.output_volts >= LINE_SHARE_LEAST * off_load_volts)) {
+        if (!(now.output_volts > 0 && (k == 0 || now.output_volts >= LINE_SHARE_LEAST * line->point[0].volts))) {
             return plw_fail(error, PLW_E_NO_POINT, "supply: at %.4g mA its output has fallen to a quarter", 1e3 * amps);
         }
         line->point[k] = (plw_reading){now.output_volts, amps};
@@ -317,13 +323,12 @@ plw_status plw_rectifier_line(const plw_rectifier *supply, double most_amps, plw
     memset(&made, 0, sizeof made);
     made.kind = PLW_SUPPLY_RECTIFIER;
     made.source_ohms = (double)NAN;
-    const double off_load_volts = plw_rectifier_peak_volts(supply);
     plw_error failed = {0};
     double reach = most_amps;
     status = PLW_E_NO_POINT;
     while (status != PLW_OK && reach >= most_amps / 100) {
         size_t reached = 0;
-        status = run_line(engine, supply, reach, off_load_volts, &made, &reached, &failed);
+        status = run_line(engine, supply, reach, &made, &reached, &failed);
         /* Shorten to what held; from a single point nothing is learnt but that it is much too long. */
         reach = reached > 1 ? line_amps(reach, reached - 1) : reach / 30;
     }

@@ -7,16 +7,25 @@
 
 #define PI 3.14159265358979323846
 
-enum { NEWTON_MOST = 60, HALVINGS_MOST = 6, GUESS_POINTS = 16, GUESS_STEPS = 24 };
+enum {
+    NEWTON_MOST = 40,
+    HALVINGS_MOST = 6,
+    ATTEMPTS_MOST = 5,
+    SETTLING_CYCLES = 100,
+    GUESS_POINTS = 16,
+    GUESS_STEPS = 24
+};
 
 /* ---- first guess ------------------------------------------------------------------------------------------------- */
 
-/* Mean current into a first node that stands still at `volts`. */
+/* Mean current into a first node that stands still at `volts`.  The angle from the crest goes as the square of the
+ * abscissa, since at light load all happens near the crest. */
 static double mean_into_reservoir(const plw_rectifier_law *law, double volts) {
     double sum = 0, slope;
     for (int i = 0; i < GUESS_POINTS; i++) {
-        const double emf = law->peak_volts * sin((i + 0.5) * PI / 2 / GUESS_POINTS);
-        sum += plw_path_amps(law, emf - volts, &slope);
+        const double abscissa = (i + 0.5) / GUESS_POINTS;
+        const double emf = law->peak_volts * cos(PI / 2 * abscissa * abscissa);
+        sum += 2 * abscissa * plw_path_amps(law, emf - volts, &slope);
     }
     return sum / GUESS_POINTS * (law->half_wave ? 0.5 : 1);
 }
@@ -157,13 +166,20 @@ static bool newton_step(const plw_engine *engine, const plw_cycle *cycle, plw_st
     return true;
 }
 
+/* Share of a step that keeps the reservoir below the peak: above it nothing conducts, hardly anything moves, and a step
+ * from there leads nowhere. */
+static double share_below_peak(const plw_network *network, double volts, double move) {
+    const double room = network->law.peak_volts - network->law.drop_volts - volts;
+    return !network->choke_input && room > 0 && move > 0.9 * room ? 0.9 * room / move : 1;
+}
+
 /* Try the whole step, then halves of it, until the misfit falls.  The last trial stands in any case. */
 static double damped_move(const plw_engine *engine, double load_amps, const double *scale, const double *move,
                           double before, double *start, plw_cycle *cycle) {
     const size_t n = engine->network.states;
     double from[PLW_STATES_MOST];
     memcpy(from, start, n * sizeof(double));
-    double share = 1, after = before;
+    double share = share_below_peak(&engine->network, start[0], move[0]), after = before;
     for (int halving = 0; halving <= HALVINGS_MOST; halving++) {
         for (size_t i = 0; i < n; i++) {
             start[i] = from[i] + share * move[i];
@@ -181,17 +197,18 @@ static double damped_move(const plw_engine *engine, double load_amps, const doub
     return after;
 }
 
-plw_status plw_steady_solve(const plw_engine *engine, double load_amps, double tolerance, plw_steady *steady,
-                            plw_error *error) {
+/* Ret: the misfit, or 0 when a step was short enough */
+static double newton(const plw_engine *engine, double load_amps, double tolerance, const double *scale,
+                     plw_steady *steady) {
     const size_t n = engine->network.states;
-    double scale[PLW_STATES_MOST], move[PLW_STATES_MOST] = {0};
-    scales(&engine->network, scale);
+    double move[PLW_STATES_MOST] = {0};
     plw_cycle cycle;
     plw_engine_cycle(engine, load_amps, steady->start, &cycle, NULL, NULL);
     double miss = misfit(n, steady->start, &cycle, scale);
-    for (steady->iterations = 1; steady->iterations <= NEWTON_MOST; steady->iterations++) {
+    for (int step = 0; step < NEWTON_MOST; step++) {
+        steady->iterations++;
         if (!newton_step(engine, &cycle, steady, move)) {
-            break;
+            return miss;
         }
         double longest = 0;
         for (size_t i = 0; i < n; i++) {
@@ -201,9 +218,34 @@ plw_status plw_steady_solve(const plw_engine *engine, double load_amps, double t
             for (size_t i = 0; i < n; i++) {
                 steady->start[i] += move[i];
             }
-            return PLW_OK;
+            return 0;
         }
         miss = damped_move(engine, load_amps, scale, move, miss, steady->start, &cycle);
+    }
+    return miss;
+}
+
+plw_status plw_steady_solve(const plw_engine *engine, double load_amps, double tolerance, plw_steady *steady,
+                            plw_error *error) {
+    const size_t n = engine->network.states;
+    double scale[PLW_STATES_MOST], miss = 0;
+    scales(&engine->network, scale);
+    plw_steady trial;
+    plw_cycle cycle;
+    steady->iterations = 0;
+    for (int attempt = 0; attempt < ATTEMPTS_MOST; attempt++) {
+        trial = *steady;
+        miss = newton(engine, load_amps, tolerance, scale, &trial);
+        if (miss <= 0) {
+            *steady = trial;
+            return PLW_OK;
+        }
+        /* Let the circuit run for a while from the guess and try again from there. */
+        steady->iterations = trial.iterations;
+        for (int k = 0; k < SETTLING_CYCLES; k++) {
+            plw_engine_cycle(engine, load_amps, steady->start, &cycle, NULL, NULL);
+            memcpy(steady->start, cycle.end, n * sizeof(double));
+        }
     }
     return plw_fail(error, PLW_E_NO_CONVERGENCE, "supply: no periodic state found at %.4g mA; the misfit is %.2g V",
                     1e3 * load_amps, miss * engine->network.law.peak_volts);
