@@ -212,7 +212,7 @@ static inline plw_supply random_supply(random_source *r, unsigned tubes) {
         /* The source resistance falls as the current rises, as behind a reservoir; the last reading lies beyond what
          * any of these stages can draw. */
         plw_reading reading[4] = {{volts, 0.0}};
-        static const double amps[3] = {0.015, 0.05, 1.2}, ohms[3] = {900.0, 500.0, 60.0};
+        static const double amps[3] = {0.015, 0.05, 4.0}, ohms[3] = {900.0, 500.0, 25.0};
         for (int index = 0; index < 3; index++) {
             reading[index + 1].amps = amps[index] * tubes * random_between(r, 0.8, 1.2);
             const double step_amps = reading[index + 1].amps - reading[index].amps;
@@ -247,13 +247,17 @@ static inline void random_screen(random_source *r, plw_stage *stage, double volt
 static inline void random_bias(random_source *r, plw_stage *stage, plw_law *law, double volts) {
     const bool own = isfinite(stage->screen_supply_volts);
     const double control_volts = own ? stage->screen_supply_volts : volts;
-    const double bias = -random_between(r, 0.1, 0.8) * control_volts / *coefficient_of(law, "mu");
+    double bias = -random_between(r, 0.1, 0.8) * control_volts / *coefficient_of(law, "mu");
+    plw_currents c;
+    plw_law_evaluate(law, volts, control_volts, bias, &c);
+    while (volts * (c.plate_amps + c.screen_amps) > 150.0) { /* no tube of these sizes is run hotter */
+        bias *= 1.1;
+        plw_law_evaluate(law, volts, control_volts, bias, &c);
+    }
     if (random_chance(r, 0.25)) {
         stage->fixed_bias_volts = bias;
         return;
     }
-    plw_currents c;
-    plw_law_evaluate(law, volts, control_volts, bias, &c);
     stage->resistor_each = stage->parallel > 1 && random_chance(r, 0.3);
     const double amps = (c.plate_amps + c.screen_amps) * (stage->resistor_each ? 1.0 : stage->parallel);
     stage->cathode_resistor_ohms = fmin(fmax(-bias / fmax(amps, 1e-5), 1.0), 1e5);
