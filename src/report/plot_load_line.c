@@ -167,7 +167,8 @@ static void swing_entries(FILE *file, const picture *p, const plw_answer *answer
         fputs("$peak using 1:2 with lines linecolor rgb '#c2360c' dashtype (3,3) linewidth 1 notitle", file);
         next(file);
         const double most = signal->path_plate_volts[PLW_PATH_POINTS - 1];
-        snprintf(text, sizeof text, "swing at full drive, up to %s",
+        snprintf(text, sizeof text, "swing at %s drive, up to %s",
+                 signal->limit == PLW_DRIVE_GIVEN ? "the given" : "full",
                  plw_script_value(most, PLW_UNIT_VOLT, 3, value, sizeof value));
         plw_plot_line(file, "swing", PLW_INK_SWING, text);
     }
