@@ -232,6 +232,7 @@ static void read_row(tube_reader *reader, const plw_xml_element *element, const 
     read_fields(reader, element, plw_row_fields, row);
     const char *reference = plw_xml_attribute(element, "reference");
     row->filament_midpoint = reference != NULL && strcmp(reference, "filament-midpoint") == 0;
+    row->undistorted = plw_xml_attribute(element, "output") != NULL;
     read_provenance(reader, element, &row->provenance);
     check_connection(reader, element, tube, row->connection, true);
     if (plw_xml_attribute(element, "grid") == NULL && plw_xml_attribute(element, "cathode-resistor") == NULL) {

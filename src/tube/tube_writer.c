@@ -196,6 +196,7 @@ static void put_rows(tube_writer *writer, const plw_tube *tube) {
         begin(writer, "row");
         put_attribute(writer, "connection", plw_connection_name(tube->rows[i].connection));
         put_attribute(writer, "reference", tube->rows[i].filament_midpoint ? "filament-midpoint" : NULL);
+        put_attribute(writer, "output", tube->rows[i].undistorted ? "undistorted" : NULL);
         put_fields(writer, plw_row_fields, &tube->rows[i]);
         put_provenance(writer, &tube->rows[i].provenance);
         end_empty(writer);
