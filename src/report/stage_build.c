@@ -44,6 +44,19 @@ static const plw_stage_entry *entry_of(const builder *work, const char *name) {
     return plw_stage_entry_first(work->description, name);
 }
 
+/* A fault that the stage itself found: "load: 3 ohm contradicts ...". */
+static void fault_named(builder *work, const char *text) {
+    char name[PLACE_SIZE];
+    snprintf(name, sizeof name, "%.*s", (int)strcspn(text, ":"), text);
+    const plw_stage_entry *entry = entry_of(work, name);
+    if (entry != NULL && strncmp(text + strlen(name), ": ", 2) == 0) {
+        fault_entry(work, entry, text + strlen(name) + 2);
+    } else {
+        note_status(work, work->description->file != NULL);
+        plw_error_add(&work->faults, "%s%s", plw_entry_type_find(name) == NULL ? "" : "--", text);
+    }
+}
+
 /* Two entries that cannot both be: the fault stands at the first. */
 static void exclude(builder *work, const char *name, const char *other, const char *remedy) {
     const plw_stage_entry *entry = entry_of(work, name);
@@ -380,7 +393,7 @@ static void take_load(builder *work, plw_stage *stage) {
     }
     plw_error error = {.status = PLW_OK};
     if (strlen(work->faults.text) == faults_before && plw_stage_settle_load(stage, &error) != PLW_OK) {
-        fault_entry(work, load == NULL ? ratio : load, error.text);
+        fault_named(work, error.text);
     }
 }
 
@@ -410,9 +423,9 @@ plw_status plw_stage_build(const plw_stage_description *description, plw_catalog
     if (work.faults.status == PLW_OK && made.tube != NULL) {
         check_ratings(&work, &made);
     }
-    if (work.faults.status == PLW_OK && made.tube != NULL && plw_stage_validate(&made, false, &work.faults) != PLW_OK &&
-        work.faults.status == PLW_OK) {
-        work.faults.status = PLW_E_USAGE;
+    plw_error fault = {.status = PLW_OK};
+    if (work.faults.status == PLW_OK && made.tube != NULL && plw_stage_validate(&made, false, &fault) != PLW_OK) {
+        fault_named(&work, fault.text);
     }
     if (work.faults.status != PLW_OK) {
         return plw_fail(error, work.faults.status, "%s", work.faults.text);

@@ -8,7 +8,7 @@
 
 #include "base/schemas.h"
 #include "base/xml_file.h"
-#include "platewright/report.h"
+#include "report/text_buffer.h"
 
 enum { TEXT_LENGTH_MOST = 60 };
 
@@ -322,25 +322,18 @@ static void put_entries(FILE *out, const plw_stage_description *description) {
 }
 
 plw_status plw_stage_file_text(const plw_stage_description *description, char **text, plw_error *error) {
-    char *made = NULL;
-    size_t size = 0;
-    FILE *out = open_memstream(&made, &size);
-    if (out == NULL) {
-        return out_of_memory(error);
+    plw_text_buffer buffer;
+    const plw_status status = plw_text_begin(&buffer, error);
+    if (status != PLW_OK) {
+        return status;
     }
-    fputs("<?xml version=\"1.0\" encoding=\"UTF-8\"?>\n<stage version=\"1\">\n", out);
+    fputs("<?xml version=\"1.0\" encoding=\"UTF-8\"?>\n<stage version=\"1\">\n", buffer.file);
     if (description->note != NULL) {
-        fputs("  <note text=\"", out);
-        put_attribute(out, description->note);
-        fputs("\"/>\n", out);
+        fputs("  <note text=\"", buffer.file);
+        put_attribute(buffer.file, description->note);
+        fputs("\"/>\n", buffer.file);
     }
-    put_entries(out, description);
-    fputs("</stage>\n", out);
-    const bool failed = ferror(out) != 0;
-    if (fclose(out) != 0 || failed) {
-        free(made);
-        return out_of_memory(error);
-    }
-    *text = made;
-    return PLW_OK;
+    put_entries(buffer.file, description);
+    fputs("</stage>\n", buffer.file);
+    return plw_text_end(&buffer, PLW_OK, text, error);
 }

@@ -1,0 +1,29 @@
+/* The catalogue in words: a list of tubes, and all that is known of one.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
+#ifndef PLATEWRIGHT_TUBE_REPORT_H
+#define PLATEWRIGHT_TUBE_REPORT_H
+
+#include <stddef.h>
+
+#include "platewright/status.h"
+#include "platewright/tube.h"
+
+#ifdef __cplusplus
+extern "C" {
+#endif
+
+/* One line for each tube: kind, base, plate and screen dissipation, heater, how far the model may be trusted, other
+ * names.
+ * Out:  *text, to be freed with plw_text_free() (platewright/report.h); not written unless PLW_OK
+ * Ret:  PLW_OK or PLW_E_NO_MEMORY */
+PLW_API plw_status plw_tubes_text(const plw_tube *const *tubes, size_t count, char **text,
+                                  plw_error *error) PLW_MUST_USE;
+
+/* One tube: pins, heater, ratings with their system, published rows, coefficients with their errors, and the sources.
+ * Out, Ret: as plw_tubes_text() */
+PLW_API plw_status plw_tube_text(const plw_tube *tube, char **text, plw_error *error) PLW_MUST_USE;
+
+#ifdef __cplusplus
+}
+#endif
+#endif

@@ -1,0 +1,148 @@
+/* check: solve a stage as built, compare meter readings, judge every rating.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "cli/commands.h"
+#include "cli/work.h"
+#include "platewright/limits.h"
+
+enum { PART_SIZE = 64 };
+
+static double *reading_of(plw_meter_readings *readings, const char *name) {
+    if (strcmp(name, "cathode") == 0) {
+        return &readings->cathode_volts;
+    }
+    if (strcmp(name, "supply") == 0) {
+        return &readings->supply_volts;
+    }
+    if (strcmp(name, "plate") == 0) {
+        return &readings->plate_volts;
+    }
+    return strcmp(name, "screen") == 0 ? &readings->screen_volts : NULL;
+}
+
+/* cathode=12.9V */
+static plw_status read_part(char *part, plw_meter_readings *readings, plw_error *error) {
+    static const char *const names[] = {"cathode", "supply", "plate", "screen"};
+    char *equals = strchr(part, '=');
+    if (equals == NULL) {
+        return plw_fail(error, PLW_E_USAGE,
+                        "--measured: '%s' does not say where it was measured; write for instance cathode=12.9V", part);
+    }
+    *equals = '\0';
+    double *reading = reading_of(readings, part);
+    if (reading == NULL) {
+        size_t nearest = 0;
+        return plw_nearest_names(part, names, 4, &nearest, 1) == 1
+                   ? plw_fail(error, PLW_E_USAGE, "--measured: '%s' is not known; is it %s?", part, names[nearest])
+                   : plw_fail(error, PLW_E_USAGE,
+                              "--measured: '%s' is not known; write cathode, supply, plate or screen", part);
+    }
+    if (!isnan(*reading)) {
+        return plw_fail(error, PLW_E_USAGE, "--measured: %s is given twice; keep one", part);
+    }
+    if (plw_quantity_parse(equals + 1, PLW_UNIT_VOLT, reading, error) != PLW_OK) {
+        return plw_fail_at(error, PLW_E_USAGE, "--measured: %s", part);
+    }
+    return PLW_OK;
+}
+
+/* One --measured: parts with commas between. */
+static plw_status read_measured(const char *text, plw_meter_readings *readings, plw_error *error) {
+    plw_status status = PLW_OK;
+    while (status == PLW_OK) {
+        char part[PART_SIZE];
+        const size_t length = strcspn(text, ",");
+        if (length == 0 || length >= sizeof part) {
+            return plw_fail(error, PLW_E_USAGE,
+                            "--measured: a reading is %s; write for instance cathode=12.9V,supply=282V",
+                            length == 0 ? "missing" : "too long");
+        }
+        memcpy(part, text, length);
+        part[length] = '\0';
+        status = read_part(part, readings, error);
+        if (text[length] == '\0') {
+            break;
+        }
+        text += length + 1;
+    }
+    return status;
+}
+
+static plw_status read_all_measured(const cli_arguments *arguments, plw_meter_readings *readings, plw_error *error) {
+    plw_status status = PLW_OK;
+    const double unknown = (double)NAN;
+    *readings = (plw_meter_readings){unknown, unknown, unknown, unknown};
+    for (size_t i = 0; i < arguments->count && status == PLW_OK; i++) {
+        if (strcmp(arguments->given[i].option->name, "measured") == 0) {
+            status = read_measured(arguments->given[i].text, readings, error);
+        }
+    }
+    return status;
+}
+
+/* Does this very tube, as measured at rest, keep its ratings? */
+static bool specimen_keeps_ratings(const plw_specimen *specimen) {
+    const plw_quiescent quiescent = {.plate_volts = specimen->plate_volts,
+                                     .screen_volts = specimen->screen_volts,
+                                     .cathode_volts = specimen->cathode_volts,
+                                     .cathode_amps = specimen->cathode_amps,
+                                     .plate_watts = specimen->plate_watts,
+                                     .screen_watts = specimen->screen_watts};
+    plw_rating_check checks[PLW_RATING_CHECKS_MOST];
+    size_t count = 0;
+    return plw_limits_check(&specimen->stage, &quiescent, NULL, checks, &count);
+}
+
+static plw_status check(cli_work *work, const plw_meter_readings *readings, plw_specimen *specimen, bool *kept,
+                        plw_error *error) {
+    plw_bias_option option;
+    plw_status status = cli_work_build(work, error);
+    if (status == PLW_OK) {
+        status = plw_stage_validate(&work->stage, true, error);
+    }
+    if (status == PLW_OK) {
+        status = plw_bias_option_solve(&work->stage, work->stage.cathode_resistor_ohms, &option, error);
+    }
+    if (status == PLW_OK && specimen != NULL) {
+        status =
+            plw_specimen_measure(&work->stage, &option.quiescent, readings, work->aim, work->series, specimen, error);
+    }
+    if (status != PLW_OK) {
+        return status;
+    }
+    const plw_answer answer = {.stage = &work->stage, .option = &option, .specimen = specimen, .series = work->series};
+    *kept = option.within_ratings && (specimen == NULL || specimen_keeps_ratings(specimen));
+    status = cli_work_save(work, error);
+    return status == PLW_OK ? cli_work_answer(work, &answer, error) : status;
+}
+
+int cli_run_check(const cli_arguments *arguments) {
+    cli_work work;
+    plw_error error = {.status = PLW_OK};
+    plw_meter_readings readings;
+    plw_specimen *specimen = NULL;
+    bool kept = false;
+    plw_status status = cli_work_open(arguments, &work, &error);
+    if (status == PLW_OK) {
+        status = read_all_measured(arguments, &readings, &error);
+    }
+    if (status == PLW_OK && cli_argument_given(arguments, "measured")) {
+        specimen = calloc(1, sizeof *specimen);
+        status = specimen == NULL ? plw_fail(&error, PLW_E_NO_MEMORY, "out of memory") : PLW_OK;
+    }
+    if (status == PLW_OK) {
+        status = check(&work, &readings, specimen, &kept, &error);
+    }
+    free(specimen);
+    if (status != PLW_OK) {
+        (void)cli_work_place(&work, &error);
+    }
+    cli_work_close(&work);
+    if (status != PLW_OK) {
+        return cli_complain(arguments->command, &error);
+    }
+    return kept ? CLI_DONE : CLI_NOT_REACHED;
+}

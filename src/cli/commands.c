@@ -1,0 +1,82 @@
+/* The table of commands.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
+#include "cli/commands.h"
+
+#include <string.h>
+
+#include "cli/options.h"
+#include "platewright/quantity.h"
+
+static const cli_command commands[] = {
+    {.name = "design",
+     .bit = CLI_DESIGN,
+     .positional = "[STAGE.xml]",
+     .summary = "choose the cathode resistor for a tube, a supply and a load",
+     .description = "Works out which cathode resistor brings the tube to its aim on the supply that is really there, "
+                    "and says what it costs: its watts, the voltages a meter will read at each pin, the margins to "
+                    "the ratings, power and distortion, and the same for the next values above and below.",
+     .examples = {{"A table radio on the bench at Morrow Quay: 285 V with the set playing, 5 kohm transformer",
+                   "platewright design --tube 6V6GT --supply 285V --load 5k"},
+                  {"The supply by two readings, the load by ratio and speaker, the resistor from the E12 series",
+                   "platewright design --tube EL84 --reading 290V --reading 255V@5k --ratio 25 --speaker 8 --series "
+                   "E12"},
+                  {"From a stage file, to 40 mA instead of the usual 90 % dissipation; the result kept for the bench",
+                   "platewright design morrow-quay.xml --aim current=40mA --save as-built.xml"}},
+     .run = cli_run_design},
+    {.name = "check",
+     .bit = CLI_CHECK,
+     .positional = "[STAGE.xml]",
+     .summary = "solve a stage as built, compare meter readings, judge every rating",
+     .description = "Solves a stage whose bias is known. With meter readings it also works out what this very tube "
+                    "draws, how far it is from the usual one, and which cathode resistor would suit it.",
+     .examples = {{"What 270 ohm does in the radio",
+                   "platewright check --tube 6V6GT --supply 285V --load 5k --cathode-resistor 270"},
+                  {"The meter says 12.9 V at the cathode and 282 V at the supply",
+                   "platewright check as-built.xml --measured cathode=12.9V,supply=282V"}},
+     .run = cli_run_check},
+    {.name = "plot",
+     .bit = CLI_PLOT,
+     .positional = "[STAGE.xml]",
+     .summary = "draw the load line, or the transfer curve with the resistor's line",
+     .description = "Writes a gnuplot script, complete in itself, and has gnuplot draw it. Without a bias it chooses "
+                    "the cathode resistor as design does.",
+     .examples = {{"The load line of the radio, as a drawing and a script",
+                   "platewright plot morrow-quay.xml --output load-line.svg"},
+                  {"How the resistor sets the bias, to be printed",
+                   "platewright plot morrow-quay.xml --kind transfer --output bias.pdf"},
+                  {"The script alone, to be changed by hand",
+                   "platewright plot --tube 2A3 --supply 300V --load 2.5k --output radiogram.gp"}},
+     .run = cli_run_plot},
+    {.name = "tubes",
+     .bit = CLI_TUBES,
+     .positional = "[TYPE]",
+     .summary = "list the tubes of the catalogue, or all that is known of one",
+     .description = "Lists every tube with its base, its ratings and how far its model may be trusted; or shows one "
+                    "type with its ratings, pins, published rows and their sources.",
+     .examples = {{"All of them", "platewright tubes"}, {"One of them", "platewright tubes EL84"}},
+     .run = cli_run_tubes},
+};
+
+enum { COMMANDS = sizeof commands / sizeof commands[0] };
+
+const cli_command *cli_command_at(size_t index) {
+    return index < COMMANDS ? &commands[index] : NULL;
+}
+
+const cli_command *cli_command_find(const char *name) {
+    for (size_t i = 0; i < COMMANDS; i++) {
+        if (strcmp(commands[i].name, name) == 0) {
+            return &commands[i];
+        }
+    }
+    return NULL;
+}
+
+const char *cli_command_nearest(const char *name) {
+    const char *names[COMMANDS];
+    for (size_t i = 0; i < COMMANDS; i++) {
+        names[i] = commands[i].name;
+    }
+    size_t found = 0;
+    return plw_nearest_names(name, names, COMMANDS, &found, 1) == 1 ? names[found] : NULL;
+}

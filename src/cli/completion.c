@@ -1,0 +1,68 @@
+/* The completion script for bash, made from the tables of options and commands.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
+#include <string.h>
+
+#include "cli/help.h"
+
+static void put_words(FILE *out, unsigned commands) {
+    for (size_t i = 0; cli_option_at(i) != NULL; i++) {
+        if ((cli_option_at(i)->commands & commands) != 0) {
+            fprintf(out, " --%s", cli_option_at(i)->name);
+        }
+    }
+}
+
+/* What may follow an option; the first option of a name speaks for all. */
+static void put_values(FILE *out, const cli_option *option) {
+    if (option->value == CLI_VALUE_NONE || option->value == CLI_VALUE_SWITCH ||
+        cli_option_find(option->name, CLI_EVERY) != option) {
+        return;
+    }
+    fprintf(out, "    --%s)", option->name);
+    if (option->choices != NULL) {
+        fputs(" COMPREPLY=($(compgen -W '", out);
+        for (size_t i = 0; option->choices[i] != NULL; i++) {
+            fprintf(out, "%s%s", i == 0 ? "" : " ", option->choices[i]);
+        }
+        fputs("' -- \"$word\")); return ;;\n", out);
+    } else if (option->value == CLI_VALUE_FILE) {
+        fputs(" COMPREPLY=($(compgen -f -- \"$word\")); return ;;\n", out);
+    } else if (option->value == CLI_VALUE_FOLDER) {
+        fputs(" COMPREPLY=($(compgen -d -- \"$word\")); return ;;\n", out);
+    } else {
+        fputs(" return ;;\n", out);
+    }
+}
+
+void cli_completion(FILE *out) {
+    fputs("# Completion of platewright for bash; made by 'platewright --completion'.\n"
+          "# SPDX-License-Identifier: GPL-3.0-or-later\n"
+          "_platewright() {\n"
+          "  local word=${COMP_WORDS[COMP_CWORD]} before=${COMP_WORDS[COMP_CWORD-1]} options=\n"
+          "  COMPREPLY=()\n"
+          "  if [ \"$COMP_CWORD\" -eq 1 ]; then\n"
+          "    COMPREPLY=($(compgen -W '",
+          out);
+    for (size_t i = 0; cli_command_at(i) != NULL; i++) {
+        fprintf(out, "%s%s", i == 0 ? "" : " ", cli_command_at(i)->name);
+    }
+    put_words(out, CLI_OVERALL);
+    fputs("' -- \"$word\")); return\n  fi\n  case $before in\n", out);
+    for (size_t i = 0; cli_option_at(i) != NULL; i++) {
+        put_values(out, cli_option_at(i));
+    }
+    fputs("  esac\n  case ${COMP_WORDS[1]} in\n", out);
+    for (size_t i = 0; cli_command_at(i) != NULL; i++) {
+        fprintf(out, "    %s) options='", cli_command_at(i)->name);
+        put_words(out, cli_command_at(i)->bit);
+        fputs("' ;;\n", out);
+    }
+    fputs("  esac\n"
+          "  case $word in\n"
+          "    -*) COMPREPLY=($(compgen -W \"$options\" -- \"$word\")) ;;\n"
+          "    *) COMPREPLY=($(compgen -f -- \"$word\")) ;;\n"
+          "  esac\n"
+          "}\n"
+          "complete -F _platewright platewright\n",
+          out);
+}

@@ -1,0 +1,209 @@
+/* The one table of options: parser, help, manual page and completion are all made from it.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
+#include "cli/options.h"
+
+#include <string.h>
+
+#include "platewright/quantity.h"
+
+static const char *const connections[] = {"pentode", "triode", "ultralinear", NULL};
+static const char *const series[] = {"E6", "E12", "E24", "E48", "E96", "E192", NULL};
+static const char *const formats[] = {"text", "json", "csv", NULL};
+static const char *const kinds[] = {"load-line", "transfer", NULL};
+
+#define WHY_NOT_IN_DESIGN "design chooses the resistor itself; platewright check solves a stage whose bias is given"
+
+#define STAGE_OPTION(option_name, option_group, option_commands, option_placeholder, option_help)                      \
+    .name = (option_name), .value = CLI_VALUE_TEXT, .placeholder = (option_placeholder), .group = (option_group),      \
+    .commands = (option_commands), .stage = true, .help = (option_help)
+
+#define STAGE_SWITCH(option_name, option_group, option_help)                                                           \
+    .name = (option_name), .value = CLI_VALUE_SWITCH, .group = (option_group), .commands = CLI_STAGE, .stage = true,   \
+    .help = (option_help)
+
+/* Only what works stands here.  A supply built from winding, rectifier and filter gets its options in CLI_GROUP_SUPPLY
+ * behind other-current. */
+static const cli_option options[] = {
+    {STAGE_OPTION("tube", CLI_GROUP_TUBE, CLI_STAGE, "TYPE",
+                  "output tube, e.g. 6V6GT; any spelling, and equivalents (6BQ5 is EL84)")},
+    {STAGE_OPTION("parallel", CLI_GROUP_TUBE, CLI_STAGE, "N", "equal tubes side by side, e.g. 2")},
+    {STAGE_OPTION("connection", CLI_GROUP_TUBE, CLI_STAGE, "HOW",
+                  "how the screen is wired: pentode (as usual), triode or ultralinear"),
+     .choices = connections},
+    {STAGE_OPTION("tap", CLI_GROUP_TUBE, CLI_STAGE, "PERCENT",
+                  "ultralinear: where the tap sits on the primary, e.g. "
+                  "43%")},
+
+    {STAGE_OPTION("supply", CLI_GROUP_SUPPLY, CLI_STAGE, "VOLTS",
+                  "supply voltage with the stage drawing its current, e.g. 285V; with --source-ohms the voltage off "
+                  "load")},
+    {STAGE_OPTION("source-ohms", CLI_GROUP_SUPPLY, CLI_STAGE, "OHMS", "resistance of the supply, e.g. 1.8k")},
+    {STAGE_OPTION("reading", CLI_GROUP_SUPPLY, CLI_STAGE, "READING",
+                  "what the supply read on the bench, once for each reading: 305V off load, 258V@10k into a resistor, "
+                  "271V@18mA at a current"),
+     .repeatable = true},
+    {STAGE_OPTION("other-current", CLI_GROUP_SUPPLY, CLI_STAGE, "AMPS",
+                  "what the rest of the set draws from this supply, e.g. 3mA")},
+
+    {STAGE_OPTION("load", CLI_GROUP_TRANSFORMER, CLI_STAGE, "OHMS",
+                  "load that the plate sees through the transformer, e.g. 5k; or give --ratio and --speaker")},
+    {STAGE_OPTION("ratio", CLI_GROUP_TRANSFORMER, CLI_STAGE, "RATIO", "turns, primary to secondary, e.g. 25")},
+    {STAGE_OPTION("speaker", CLI_GROUP_TRANSFORMER, CLI_STAGE, "OHMS", "impedance of the speaker, e.g. 8")},
+    {STAGE_OPTION("primary-ohms", CLI_GROUP_TRANSFORMER, CLI_STAGE, "OHMS", "copper of the primary, e.g. 280")},
+    {STAGE_OPTION("secondary-ohms", CLI_GROUP_TRANSFORMER, CLI_STAGE, "OHMS", "copper of the secondary, e.g. 0.5")},
+
+    {STAGE_OPTION("cathode-resistor", CLI_GROUP_BIAS, CLI_CHECK | CLI_PLOT, "OHMS",
+                  "cathode resistor as fitted, e.g. 270"),
+     .elsewhere = WHY_NOT_IN_DESIGN},
+    {STAGE_OPTION("fixed-bias", CLI_GROUP_BIAS, CLI_CHECK | CLI_PLOT, "VOLTS",
+                  "grid bias from a supply of its own, e.g. -12.5V"),
+     .elsewhere = WHY_NOT_IN_DESIGN},
+    {STAGE_SWITCH("resistor-each", CLI_GROUP_BIAS, "with --parallel: one cathode resistor a tube, not one for all")},
+    {STAGE_SWITCH("unbypassed", CLI_GROUP_BIAS, "no capacitor across the cathode resistor")},
+
+    {STAGE_OPTION("screen-supply", CLI_GROUP_SCREEN, CLI_STAGE, "VOLTS",
+                  "screen fed from a supply of its own, e.g. 250V; else from the plate supply")},
+    {STAGE_OPTION("screen-resistor", CLI_GROUP_SCREEN, CLI_STAGE, "OHMS",
+                  "resistor in the screen lead, one a tube, e.g. 1k")},
+    {STAGE_SWITCH("screen-bypassed", CLI_GROUP_SCREEN, "a capacitor holds the screen side of that resistor")},
+
+    {STAGE_OPTION("drive", CLI_GROUP_SIGNAL, CLI_STAGE, "VOLTS",
+                  "peak signal at the grid, e.g. 12.5V; else up to grid current or cut-off, whichever comes first")},
+
+    {.name = "aim",
+     .value = CLI_VALUE_TEXT,
+     .placeholder = "AIM",
+     .group = CLI_GROUP_AIM,
+     .commands = CLI_STAGE,
+     .help = "dissipation=90% of the rated plate dissipation (as usual), current=40mA of plate current, or power for "
+             "the most power"},
+    {.name = "series",
+     .value = CLI_VALUE_CHOICE,
+     .placeholder = "SERIES",
+     .group = CLI_GROUP_AIM,
+     .commands = CLI_STAGE,
+     .choices = series,
+     .help = "preferred values to choose from: E6, E12, E24 (as usual), E48, E96 or E192"},
+
+    {.name = "measured",
+     .value = CLI_VALUE_TEXT,
+     .placeholder = "READINGS",
+     .group = CLI_GROUP_METER,
+     .commands = CLI_CHECK,
+     .repeatable = true,
+     .help = "meter readings with the black lead on the chassis: cathode=12.9V, and what else is known of supply=, "
+             "plate= and screen=, with commas between or one at a time"},
+
+    {.name = "kind",
+     .value = CLI_VALUE_CHOICE,
+     .placeholder = "KIND",
+     .group = CLI_GROUP_RESULT,
+     .commands = CLI_PLOT,
+     .choices = kinds,
+     .help = "what to draw: load-line (as usual) or transfer"},
+    {.name = "format",
+     .value = CLI_VALUE_CHOICE,
+     .placeholder = "FORMAT",
+     .group = CLI_GROUP_RESULT,
+     .commands = CLI_DESIGN | CLI_CHECK,
+     .choices = formats,
+     .help = "text (as usual), json or csv"},
+    {.name = "output",
+     .letter = 'o',
+     .value = CLI_VALUE_FILE,
+     .placeholder = "FILE",
+     .group = CLI_GROUP_RESULT,
+     .commands = CLI_DESIGN | CLI_CHECK,
+     .help = "write the result to a file instead of the screen"},
+    {.name = "output",
+     .letter = 'o',
+     .value = CLI_VALUE_FILE,
+     .placeholder = "FILE",
+     .group = CLI_GROUP_RESULT,
+     .commands = CLI_PLOT,
+     .help = "drawing to make: NAME.svg, NAME.png or NAME.pdf, with its gnuplot script NAME.gp beside it; NAME.gp for "
+             "the script alone; else the script goes to the screen"},
+    {.name = "save",
+     .value = CLI_VALUE_FILE,
+     .placeholder = "FILE",
+     .group = CLI_GROUP_RESULT,
+     .commands = CLI_STAGE,
+     .help = "write the stage, with the resistor chosen, to a stage file"},
+
+    {.name = "tubes",
+     .value = CLI_VALUE_FOLDER,
+     .placeholder = "FOLDER",
+     .group = CLI_GROUP_GENERAL,
+     .commands = CLI_STAGE | CLI_TUBES,
+     .help = "look for tube files here first"},
+    {.name = "help",
+     .letter = 'h',
+     .value = CLI_VALUE_NONE,
+     .group = CLI_GROUP_GENERAL,
+     .commands = CLI_EVERY | CLI_OVERALL,
+     .help = "show this help"},
+    {.name = "version",
+     .value = CLI_VALUE_NONE,
+     .group = CLI_GROUP_GENERAL,
+     .commands = CLI_OVERALL,
+     .help = "show the version"},
+    {.name = "man",
+     .value = CLI_VALUE_NONE,
+     .group = CLI_GROUP_GENERAL,
+     .commands = CLI_OVERALL,
+     .help = "write the manual page, for man(1)"},
+    {.name = "completion",
+     .value = CLI_VALUE_NONE,
+     .group = CLI_GROUP_GENERAL,
+     .commands = CLI_OVERALL,
+     .help = "write the completion script, for bash"},
+};
+
+enum { OPTIONS = sizeof options / sizeof options[0] };
+
+const cli_option *cli_option_at(size_t index) {
+    return index < OPTIONS ? &options[index] : NULL;
+}
+
+const cli_option *cli_option_find(const char *name, unsigned commands) {
+    const cli_option *elsewhere = NULL;
+    for (size_t i = 0; i < OPTIONS; i++) {
+        const bool same =
+            name[0] != '\0' && name[1] == '\0' ? options[i].letter == name[0] : strcmp(options[i].name, name) == 0;
+        if (same && (options[i].commands & commands) != 0) {
+            return &options[i];
+        }
+        if (same) {
+            elsewhere = &options[i];
+        }
+    }
+    return elsewhere;
+}
+
+const char *cli_group_title(cli_group group) {
+    static const char *const titles[CLI_GROUP_COUNT] = {
+        [CLI_GROUP_TUBE] = "The tube",
+        [CLI_GROUP_SUPPLY] = "The plate supply",
+        [CLI_GROUP_TRANSFORMER] = "The output transformer and the speaker",
+        [CLI_GROUP_BIAS] = "The bias",
+        [CLI_GROUP_SCREEN] = "The screen",
+        [CLI_GROUP_SIGNAL] = "The signal",
+        [CLI_GROUP_AIM] = "The choice of the cathode resistor",
+        [CLI_GROUP_METER] = "On the bench",
+        [CLI_GROUP_RESULT] = "The result",
+        [CLI_GROUP_GENERAL] = "In general",
+    };
+    return titles[group];
+}
+
+const char *cli_option_nearest(const char *name, unsigned commands) {
+    const char *names[OPTIONS];
+    size_t count = 0;
+    for (size_t i = 0; i < OPTIONS; i++) {
+        if ((options[i].commands & commands) != 0) {
+            names[count++] = options[i].name;
+        }
+    }
+    size_t found = 0;
+    return plw_nearest_names(name, names, count, &found, 1) == 1 ? names[found] : NULL;
+}

@@ -1,0 +1,49 @@
+/* What the commands on a stage have in common: description, catalogue, circuit, result, complaint.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
+#ifndef CLI_WORK_H
+#define CLI_WORK_H
+
+#include "cli/arguments.h"
+#include "platewright/bias.h"
+#include "platewright/report.h"
+#include "platewright/stage_file.h"
+
+/* A stage on its way from options to a circuit. */
+typedef struct {
+    const cli_arguments *arguments;
+    plw_catalogue *catalogue;
+    plw_stage_description *description;
+    plw_stage stage;
+    plw_aim aim;
+    plw_series series;
+} cli_work;
+
+/* Read the stage file, if there is one, and lay the options over it; read aim and series.
+ * Out:  *work, to be closed with cli_work_close(), also after an error */
+plw_status cli_work_open(const cli_arguments *arguments, cli_work *work, plw_error *error) PLW_MUST_USE;
+
+/* Make the circuit: work->stage. */
+plw_status cli_work_build(cli_work *work, plw_error *error) PLW_MUST_USE;
+void cli_work_close(cli_work *work);
+
+/* Choose the cathode resistor and set it in work->stage and in the description.  Out: *choice */
+plw_status cli_work_choose(cli_work *work, plw_bias_choice *choice, plw_error *error) PLW_MUST_USE;
+
+/* Write the stage file that --save asks for; nothing when it does not. */
+plw_status cli_work_save(const cli_work *work, plw_error *error) PLW_MUST_USE;
+
+/* Render in the format that --format asks for, and put it where --output says. */
+plw_status cli_work_answer(const cli_work *work, const plw_answer *answer, plw_error *error) PLW_MUST_USE;
+
+/* Name the option or the line in the file where the library names a quantity only.  Ret: the status in error */
+plw_status cli_work_place(const cli_work *work, plw_error *error);
+
+/* Put a text on the standard output, or in a file when path is not NULL. */
+plw_status cli_put(const char *text, const char *path, plw_error *error) PLW_MUST_USE;
+
+/* Say what went wrong, line by line, and where help is.
+ * In:   command may be NULL
+ * Ret:  the exit status that stands for it */
+int cli_complain(const struct cli_command *command, const plw_error *error);
+
+#endif

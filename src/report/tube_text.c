@@ -1,0 +1,352 @@
+/* The catalogue in words: a list of tubes, and all that is known of one.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
+#include "platewright/tube_report.h"
+
+#include <math.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "platewright/quantity.h"
+#include "report/text_buffer.h"
+
+enum { CELL = 40, LINE = 512, WIDTH = 80 };
+
+/* A number or quantity as text; each use in a call needs a cell of its own. */
+typedef struct {
+    char text[CELL];
+} cell;
+
+static cell quantity(double value, plw_unit unit, int digits) {
+    cell c;
+    plw_quantity_format(value, unit, digits, c.text, sizeof c.text);
+    return c;
+}
+
+/* A plain number, "-" when it is not known. */
+static cell number(double value, int decimals) {
+    cell c = {"-"};
+    if (isfinite(value)) {
+        snprintf(c.text, sizeof c.text, "%.*f", decimals, value);
+        char *comma = strchr(c.text, ','); /* of some locales */
+        if (comma != NULL) {
+            *comma = '.';
+        }
+    }
+    return c;
+}
+
+/* A number without needless zeros. */
+static cell short_number(double value) {
+    cell c = number(value, 2);
+    size_t length = strlen(c.text);
+    if (strchr(c.text, '.') != NULL) {
+        while (c.text[length - 1] == '0') {
+            c.text[--length] = '\0';
+        }
+        if (c.text[length - 1] == '.') {
+            c.text[length - 1] = '\0';
+        }
+    }
+    return c;
+}
+
+static void append(char *line, const char *text) {
+    const size_t used = strlen(line);
+    snprintf(line + used, LINE - used, "%s", text);
+}
+
+/* Right-aligned; UTF-8 letters count once. */
+static void right(FILE *out, const char *text, int width) {
+    int letters = 0;
+    for (const char *at = text; *at != '\0'; at++) {
+        letters += ((unsigned char)*at & 0xC0U) != 0x80U;
+    }
+    fprintf(out, "%*s%s", width > letters ? width - letters : 0, "", text);
+}
+
+/* Words up to the width of the screen, each line indented. */
+static void paragraph(FILE *out, const char *first_indent, const char *indent, const char *text) {
+    size_t column = (size_t)fprintf(out, "%s", first_indent);
+    bool first = true;
+    while (*text != '\0') {
+        const size_t length = strcspn(text, " ");
+        if (!first && column + 1 + length > WIDTH) {
+            fprintf(out, "\n%s", indent);
+            column = strlen(indent);
+            first = true;
+        }
+        fprintf(out, "%s%.*s", first ? "" : " ", (int)length, text);
+        column += length + (first ? 0 : 1);
+        first = false;
+        text += length;
+        text += strspn(text, " ");
+    }
+    fputc('\n', out);
+}
+
+/* ---- the list ---------------------------------------------------------------------------------------------------- */
+
+/* Equivalents, then variants. */
+static void other_names(const plw_tube *tube, char line[LINE]) {
+    line[0] = '\0';
+    for (size_t i = 0; i < tube->equivalents_count + tube->variants_count; i++) {
+        append(line, i == 0 ? "" : ", ");
+        append(line,
+               i < tube->equivalents_count ? tube->equivalents[i] : tube->variants[i - tube->equivalents_count].type);
+    }
+}
+
+static void put_tube_line(FILE *out, const plw_tube *tube) {
+    const plw_ratings *ratings = tube->ratings_count > 0 ? &tube->ratings[0] : NULL;
+    const double unknown = (double)NAN;
+    char names[LINE];
+    other_names(tube, names);
+    fprintf(out, "%-9s %-9s %-7s", tube->type, plw_tube_kind_name(tube->kind), tube->base);
+    right(out, short_number(ratings == NULL ? unknown : ratings->plate_watts).text, 8);
+    right(out, short_number(ratings == NULL ? unknown : ratings->screen_watts).text, 9);
+    right(out, short_number(tube->heater_volts).text, 9);
+    right(out, short_number(tube->heater_amps).text, 9);
+    right(out, number(tube->has_model ? tube->model.fit_error.plate_current_percent : unknown, 1).text, 7);
+    right(out, number(tube->has_model ? tube->model.left_out_error.plate_current_percent : unknown, 1).text, 8);
+    fprintf(out, "%s%s\n", names[0] == '\0' ? "" : "  ", names);
+}
+
+plw_status plw_tubes_text(const plw_tube *const *tubes, size_t count, char **text, plw_error *error) {
+    plw_text_buffer buffer;
+    const plw_status status = plw_text_begin(&buffer, error);
+    if (status != PLW_OK) {
+        return status;
+    }
+    fputs("                             plate   screen   heater   heater  model    left\n"
+          "type      kind      base         W        W        V        A  err %   out %  other names\n",
+          buffer.file);
+    for (size_t i = 0; i < count; i++) {
+        put_tube_line(buffer.file, tubes[i]);
+    }
+    fputs("\nmodel err: median error of the model's plate current against the published rows;\n"
+          "left out: the same for rows that the fit was not shown. '-': not known.\n",
+          buffer.file);
+    return plw_text_end(&buffer, PLW_OK, text, error);
+}
+
+/* ---- sources ----------------------------------------------------------------------------------------------------- */
+
+/* The sources met so far, numbered in order. */
+typedef struct {
+    const plw_provenance **seen;
+    size_t count, room;
+} source_list;
+
+static bool same_source(const plw_provenance *one, const plw_provenance *other) {
+    return strcmp(one->source, other->source) == 0 && one->how == other->how && one->confidence == other->confidence;
+}
+
+/* "[3]"; the list has room for all there can be. */
+static cell cite(source_list *sources, const plw_provenance *provenance) {
+    cell c = {""};
+    size_t index = 0;
+    if (provenance->source == NULL) {
+        return c;
+    }
+    while (index < sources->count && !same_source(sources->seen[index], provenance)) {
+        index++;
+    }
+    if (index == sources->count && sources->count < sources->room) {
+        sources->seen[sources->count++] = provenance;
+    }
+    snprintf(c.text, sizeof c.text, "[%zu]", index + 1);
+    return c;
+}
+
+static void put_sources(FILE *out, const source_list *sources) {
+    fputs("\nSources\n", out);
+    for (size_t i = 0; i < sources->count; i++) {
+        const plw_provenance *provenance = sources->seen[i];
+        char mark[CELL];
+        char line[LINE];
+        snprintf(mark, sizeof mark, "  [%zu] ", i + 1);
+        snprintf(line, sizeof line, "%s (%s, confidence %s)", provenance->source,
+                 provenance->how == PLW_HOW_READ ? "read there" : "from memory",
+                 plw_confidence_name(provenance->confidence));
+        paragraph(out, mark, "      ", line);
+    }
+}
+
+/* ---- one tube ---------------------------------------------------------------------------------------------------- */
+
+static void put_heading(FILE *out, const plw_tube *tube, source_list *sources) {
+    char names[LINE];
+    char line[LINE] = "";
+    other_names(tube, names);
+    fprintf(out, "%s: %s, %s base%s%s\n", tube->type, plw_tube_kind_name(tube->kind), tube->base,
+            names[0] == '\0' ? "" : "; also ", names);
+    fprintf(out, "  heater %s V, %s A%s %s\n", short_number(tube->heater_volts).text,
+            short_number(tube->heater_amps).text, tube->directly_heated ? ", directly heated" : "",
+            cite(sources, &tube->heater_provenance).text);
+    if (tube->pins_count == 0) {
+        return;
+    }
+    for (size_t i = 0; i < tube->pins_count; i++) {
+        char pin[CELL];
+        snprintf(pin, sizeof pin, "%s%d %.30s", i == 0 ? "pins " : ", ", tube->pins[i].number, tube->pins[i].electrode);
+        append(line, pin);
+    }
+    append(line, " ");
+    append(line, cite(sources, &tube->pins_provenance).text);
+    paragraph(out, "  ", "    ", line);
+}
+
+static void add_limit(char line[LINE], const char *name, double value, plw_unit unit) {
+    if (isfinite(value)) {
+        append(line, line[0] == '\0' ? "" : ", ");
+        append(line, name);
+        append(line, " ");
+        append(line, unit == PLW_UNIT_OHM ? quantity(value, unit, 3).text : short_number(value).text);
+        append(line, unit == PLW_UNIT_VOLT ? " V" : "");
+        append(line, unit == PLW_UNIT_WATT ? " W" : "");
+    }
+}
+
+static void put_ratings(FILE *out, const plw_ratings *ratings, source_list *sources) {
+    char line[LINE] = "";
+    fprintf(out, "  %s (%s) %s\n", ratings->service, plw_rating_system_name(ratings->system),
+            cite(sources, &ratings->provenance).text);
+    add_limit(line, "plate", ratings->plate_volts, PLW_UNIT_VOLT);
+    add_limit(line, "plate", ratings->plate_watts, PLW_UNIT_WATT);
+    append(line, ratings->plate_watts_unpublished ? ", plate dissipation not published" : "");
+    add_limit(line, "screen", ratings->screen_volts, PLW_UNIT_VOLT);
+    add_limit(line, "screen", ratings->screen_watts, PLW_UNIT_WATT);
+    add_limit(line, "screen at full drive", ratings->screen_watts_full_drive, PLW_UNIT_WATT);
+    add_limit(line, "plate and screen", ratings->total_watts, PLW_UNIT_WATT);
+    if (isfinite(ratings->cathode_amps)) {
+        append(line, line[0] == '\0' ? "cathode " : ", cathode ");
+        append(line, short_number(1000.0 * ratings->cathode_amps).text);
+        append(line, " mA");
+    }
+    add_limit(line, "grid resistor with cathode bias", ratings->grid_ohms_cathode_bias, PLW_UNIT_OHM);
+    add_limit(line, "with fixed bias", ratings->grid_ohms_fixed_bias, PLW_UNIT_OHM);
+    add_limit(line, "heater to cathode", ratings->heater_cathode_volts, PLW_UNIT_VOLT);
+    paragraph(out, "    ", "    ", line);
+    if (ratings->provenance.note != NULL) {
+        paragraph(out, "    note: ", "    ", ratings->provenance.note);
+    }
+}
+
+static void put_all_ratings(FILE *out, const plw_tube *tube, source_list *sources) {
+    if (tube->ratings_count > 0) {
+        fputs("\nRatings\n", out);
+    }
+    for (size_t i = 0; i < tube->ratings_count; i++) {
+        put_ratings(out, &tube->ratings[i], sources);
+    }
+    for (size_t i = 0; i < tube->variants_count; i++) {
+        fprintf(out, "\nRatings of the variant %s\n", tube->variants[i].type);
+        for (size_t k = 0; k < tube->variants[i].ratings_count; k++) {
+            put_ratings(out, &tube->variants[i].ratings[k], sources);
+        }
+    }
+}
+
+static void put_rectifier(FILE *out, const plw_tube *tube, source_list *sources) {
+    const plw_rectifier_data *data = &tube->rectifier;
+    char line[LINE] = "";
+    fprintf(out, "\nLimits %s\n", cite(sources, &data->provenance).text);
+    add_limit(line, "peak inverse", data->peak_inverse_volts, PLW_UNIT_VOLT);
+    add_limit(line, "each plate RMS", data->plate_rms_volts, PLW_UNIT_VOLT);
+    append(line, ", peak ");
+    append(line, quantity(data->peak_plate_amps, PLW_UNIT_AMPERE, 3).text);
+    append(line, " each plate, output ");
+    append(line, quantity(data->output_amps, PLW_UNIT_AMPERE, 3).text);
+    if (isfinite(data->most_reservoir_farads)) {
+        append(line, ", reservoir up to ");
+        append(line, quantity(data->most_reservoir_farads, PLW_UNIT_FARAD, 2).text);
+    }
+    add_limit(line, "in each plate's path at least", data->least_supply_ohms, PLW_UNIT_OHM);
+    paragraph(out, "    ", "    ", line);
+    if (isfinite(data->drop_volts)) {
+        fprintf(out, "    drop %s V at %s %s\n", short_number(data->drop_volts).text,
+                quantity(data->drop_amps, PLW_UNIT_AMPERE, 3).text, cite(sources, &data->drop_provenance).text);
+    }
+}
+
+static void put_rows(FILE *out, const plw_tube *tube, source_list *sources) {
+    if (tube->rows_count == 0) {
+        return;
+    }
+    fputs("\nPublished rows\n"
+          "               plate  screen   grid  cathode   plate  screen           power   thd\n"
+          "  connection       V       V      V      ohm      mA      mA    load       W     %  source\n",
+          out);
+    for (size_t i = 0; i < tube->rows_count; i++) {
+        const plw_row *row = &tube->rows[i];
+        fprintf(out, "  %-11s", plw_connection_name(row->connection));
+        right(out, short_number(row->plate_volts).text, 7);
+        right(out, short_number(row->screen_volts).text, 8);
+        right(out, short_number(row->grid_volts).text, 7);
+        right(out, short_number(row->cathode_resistor_ohms).text, 9);
+        right(out, short_number(1000.0 * row->plate_amps).text, 8);
+        right(out, short_number(1000.0 * row->screen_amps).text, 8);
+        right(out, quantity(row->load_ohms, PLW_UNIT_OHM, 3).text, 8);
+        right(out, short_number(row->power_watts).text, 8);
+        right(out, short_number(row->thd_percent).text, 6);
+        fprintf(out, "  %s\n", cite(sources, &row->provenance).text);
+    }
+}
+
+static void put_errors(FILE *out, const char *name, const plw_model_errors *errors) {
+    fprintf(out, "  %-9s plate current %s %%, screen current %s %%, power %s %%, distortion %s points\n", name,
+            number(errors->plate_current_percent, 1).text, number(errors->screen_current_percent, 1).text,
+            number(errors->power_percent, 1).text, number(errors->distortion_points, 1).text);
+}
+
+static void put_model(FILE *out, const plw_tube *tube) {
+    if (tube->kind == PLW_KIND_RECTIFIER) {
+        return;
+    }
+    if (!tube->has_model) {
+        fputs("\nModel: none fitted yet\n", out);
+        return;
+    }
+    const plw_model *model = &tube->model;
+    char line[LINE] = "";
+    fprintf(out, "\nModel: %s, fitted to %zu rows and %zu points; median errors\n", plw_law_name(model->law.kind),
+            model->rows_fitted, model->points_fitted);
+    put_errors(out, "fitted", &model->fit_error);
+    put_errors(out, "left out", &model->left_out_error);
+    for (size_t i = 0; i < plw_law_coefficient_count(model->law.kind); i++) {
+        char part[4 * CELL];
+        const double error = 100.0 * model->relative_error[i];
+        snprintf(part, sizeof part, "%s%s %s%s%s%s", i == 0 ? "" : ", ", plw_law_coefficient_name(model->law.kind, i),
+                 quantity(model->law.coefficient[i], PLW_UNIT_NONE, 4).text, isfinite(error) ? " +/- " : "",
+                 isfinite(error) ? number(error, 0).text : "", isfinite(error) ? " %" : "");
+        append(line, part);
+    }
+    paragraph(out, "  ", "    ", line);
+}
+
+plw_status plw_tube_text(const plw_tube *tube, char **text, plw_error *error) {
+    size_t room = 4 + tube->ratings_count + tube->rows_count + tube->points_count;
+    for (size_t i = 0; i < tube->variants_count; i++) {
+        room += tube->variants[i].ratings_count;
+    }
+    source_list sources = {.seen = calloc(room, sizeof *sources.seen), .room = room};
+    plw_text_buffer buffer;
+    if (sources.seen == NULL) {
+        return plw_fail(error, PLW_E_NO_MEMORY, "out of memory for a report");
+    }
+    plw_status status = plw_text_begin(&buffer, error);
+    if (status == PLW_OK) {
+        put_heading(buffer.file, tube, &sources);
+        if (tube->kind == PLW_KIND_RECTIFIER) {
+            put_rectifier(buffer.file, tube, &sources);
+        }
+        put_all_ratings(buffer.file, tube, &sources);
+        put_rows(buffer.file, tube, &sources);
+        put_model(buffer.file, tube);
+        put_sources(buffer.file, &sources);
+        status = plw_text_end(&buffer, PLW_OK, text, error);
+    }
+    free((void *)sources.seen);
+    return status;
+}
