@@ -1,0 +1,270 @@
+/* What a builder must be warned of: this stage's own dangers, and those of every chassis.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
+#include "report/cautions.h"
+
+#include <math.h>
+#include <stdarg.h>
+#include <stdio.h>
+#include <string.h>
+
+#include "report/fields.h"
+
+/* From here a rating is called near.  Mains 5 % high raise the dissipation by about 10 %: both volts and current rise.
+ * Common practice, no source. */
+#define NEAR_PERCENT 95.0
+
+/* Misses of the law that a builder should know of, in percent and points: about twice what a well-documented tube has.
+ */
+#define LARGE_CURRENT_MISS 5.0
+#define LARGE_SCREEN_MISS 20.0
+#define LARGE_POWER_MISS 10.0
+#define LARGE_DISTORTION_MISS 2.0
+
+/* What capacitors must stand: the mains may be a tenth high.  Common practice, no source. */
+#define HIGH_MAINS 1.1
+
+/* A screen that runs at this share of its rating under drive is worth a word. */
+#define SCREEN_NEAR 0.8
+
+typedef struct {
+    char (*lines)[PLW_CAUTION_SIZE];
+    size_t most, count;
+} list;
+
+static void say(list *l, const char *format, ...) PLW_PRINTF(2, 3);
+
+/* A line that is cut is cut before a character that does not fit whole. */
+static void say(list *l, const char *format, ...) {
+    if (l->count >= l->most) {
+        return;
+    }
+    char *line = l->lines[l->count++];
+    va_list arguments;
+    va_start(arguments, format);
+    vsnprintf(line, PLW_CAUTION_SIZE, format, arguments);
+    va_end(arguments);
+    size_t length = strlen(line);
+    size_t start = length;
+    while (start > 0 && ((unsigned char)line[start - 1] & 0xC0U) == 0x80U) {
+        start--;
+    }
+    if (start == 0) {
+        return;
+    }
+    const unsigned char lead = (unsigned char)line[start - 1];
+    const size_t wanted = lead >= 0xF0U ? 4 : lead >= 0xE0U ? 3 : lead >= 0xC0U ? 2 : 1;
+    if (wanted > 1 && length - (start - 1) < wanted) {
+        line[start - 1] = '\0';
+    }
+}
+
+enum { TEXT_SIZE = 48 };
+
+static const char *written(double value, plw_unit unit, char text[TEXT_SIZE]) {
+    return plw_quantity_format(value, unit, 3, text, TEXT_SIZE);
+}
+
+static void of_ratings(list *l, const plw_bias_option *option) {
+    for (size_t i = 0; i < option->ratings_count; i++) {
+        const plw_rating_check *check = &option->ratings[i];
+        char value[TEXT_SIZE];
+        char limit[TEXT_SIZE];
+        written(check->value, check->unit, value);
+        written(check->limit, check->unit, limit);
+        const char *when = check->when == PLW_AT_IDLE ? "idle" : "full drive";
+        if (!check->ok) {
+            say(l, "Rating exceeded at %s: %s is %s, the limit %s (%.0f %%). Do not build it so.", when, check->name,
+                value, limit, check->share_percent);
+        } else if (check->share_percent >= NEAR_PERCENT) {
+            say(l, "At %s the %s is %s of a rated %s: nothing is left for high mains or a strong tube.", when,
+                check->name, value, limit);
+        }
+    }
+}
+
+static void of_drive(list *l, const plw_answer *answer) {
+    const plw_signal *signal = &answer->option->signal;
+    char drive[TEXT_SIZE];
+    if (!isfinite(signal->drive_peak_volts)) {
+        return;
+    }
+    written(signal->drive_peak_volts, PLW_UNIT_VOLT, drive);
+    if (signal->limit == PLW_DRIVE_GRID_CURRENT) {
+        say(l, "Full drive is %s peak: beyond it the grid draws current, and a driver that cannot give it clips.",
+            drive);
+    } else if (signal->limit == PLW_DRIVE_CUT_OFF) {
+        say(l, "Full drive is %s peak: beyond it the tube is cut off during part of the cycle.", drive);
+    } else {
+        if (signal->grid_current) {
+            say(l,
+                "At the %s peak given the grid goes positive and draws current: the driver and the coupling capacitor, "
+                "which are not part of this reckoning, will change what comes out.",
+                drive);
+        }
+        if (signal->cut_off) {
+            say(l, "At the %s peak given the tube is cut off during part of the cycle: this is no longer class A.",
+                drive);
+        }
+    }
+}
+
+static void of_screen(list *l, const plw_answer *answer) {
+    const plw_stage *stage = answer->stage;
+    const plw_bias_option *option = answer->option;
+    const plw_ratings *ratings = plw_tube_ratings(stage->tube, stage->variant, stage->connection);
+    if (stage->tube->model.law.kind != PLW_LAW_PENTODE || plw_stage_is_triode(stage)) {
+        return;
+    }
+    const double driven = option->signal.screen_watts;
+    char idle_text[TEXT_SIZE];
+    char driven_text[TEXT_SIZE];
+    if (ratings != NULL) {
+        const double limit =
+            isfinite(ratings->screen_watts_full_drive) ? ratings->screen_watts_full_drive : ratings->screen_watts;
+        if (driven > SCREEN_NEAR * limit && driven > option->quiescent.screen_watts) {
+            say(l,
+                "Screen dissipation rises from %s idle to %s at full drive: a resistor in the screen lead spares it.",
+                written(option->quiescent.screen_watts, PLW_UNIT_WATT, idle_text),
+                written(driven, PLW_UNIT_WATT, driven_text));
+        }
+    }
+    say(l, "Never drive the stage without its speaker or a dummy load: plate volts then swing far above the supply and "
+           "the screen overheats.");
+}
+
+static void of_bias(list *l, const plw_answer *answer) {
+    const plw_stage *stage = answer->stage;
+    char value[TEXT_SIZE];
+    if (isfinite(stage->fixed_bias_volts)) {
+        say(l, "With fixed bias nothing but the bias supply holds the current: let it come up first, watch the cathode "
+               "current, and fuse the cathode.");
+    } else if (stage->parallel > 1 && !stage->resistor_each) {
+        say(l,
+            "%u tubes share one cathode resistor: one of them may take more than its part and the common voltage "
+            "will not show it. A resistor for each tells them apart.",
+            stage->parallel);
+    }
+    if (isfinite(stage->cathode_resistor_ohms) && !stage->unbypassed) {
+        say(l, "Rate the cathode bypass capacitor for twice the bias, %s at least.",
+            written(2.0 * answer->option->quiescent.cathode_volts, PLW_UNIT_VOLT, value));
+    }
+}
+
+static bool outside(double value, double least, double most) {
+    return value < least || value > most; /* false when the bounds are not known */
+}
+
+static void of_region(list *l, const plw_answer *answer) {
+    const plw_stage *stage = answer->stage;
+    const plw_quiescent *rest = &answer->option->quiescent;
+    const plw_region *region = &stage->tube->model.region;
+    const double amps = plw_stage_currents_together(stage) ? rest->cathode_amps : rest->plate_amps;
+    const struct {
+        const char *name;
+        double value, least, most;
+        plw_unit unit;
+    } parts[] = {
+        {"plate volts", rest->plate_volts, region->plate_volts_least, region->plate_volts_most, PLW_UNIT_VOLT},
+        {"screen volts", rest->screen_volts, region->screen_volts_least, region->screen_volts_most, PLW_UNIT_VOLT},
+        {"plate current", amps, region->plate_amps_least, region->plate_amps_most, PLW_UNIT_AMPERE},
+    };
+    for (size_t i = 0; i < sizeof parts / sizeof parts[0]; i++) {
+        if (outside(parts[i].value, parts[i].least, parts[i].most)) {
+            char value[TEXT_SIZE];
+            char least[TEXT_SIZE];
+            char most[TEXT_SIZE];
+            say(l, "Extrapolated: %s at rest, %s, lies outside what the printed data of the tube cover, %s to %s.",
+                parts[i].name, written(parts[i].value, parts[i].unit, value),
+                written(parts[i].least, parts[i].unit, least), written(parts[i].most, parts[i].unit, most));
+        }
+    }
+}
+
+/* The error of rows that were left out tells more than that of rows that were fitted. */
+static double told(double left_out, double fitted) {
+    return isfinite(left_out) ? left_out : fitted;
+}
+
+static void of_model(list *l, const plw_answer *answer) {
+    const plw_stage *stage = answer->stage;
+    const plw_model_errors *out = &stage->tube->model.left_out_error;
+    const plw_model_errors *in = &stage->tube->model.fit_error;
+    const char *type = plw_stage_tube_type(stage);
+    const double current = told(out->plate_current_percent, in->plate_current_percent);
+    const double screen = told(out->screen_current_percent, in->screen_current_percent);
+    const double power = told(out->power_percent, in->power_percent);
+    const double distortion = told(out->distortion_points, in->distortion_points);
+    if (!isfinite(current)) {
+        say(l, "No printed row tells how far the law of the %.60s may be off: trust the meter.", type);
+    }
+    if (current > LARGE_CURRENT_MISS) {
+        say(l, "The law of the %.60s misses printed plate currents by %.1f %% (median): trim on the bench.", type,
+            current);
+    }
+    if (screen > LARGE_SCREEN_MISS && !plw_stage_is_triode(stage)) {
+        say(l, "The law of the %.60s misses printed screen currents by %.0f %% (median): measure the screen.", type,
+            screen);
+    }
+    if (power > LARGE_POWER_MISS || distortion > LARGE_DISTORTION_MISS) {
+        say(l,
+            "Power and distortion of the %.60s are known only roughly: printed figures are missed by %.0f %% and "
+            "%.1f points (median).",
+            type, power, distortion);
+    }
+    const plw_ratings *ratings = plw_tube_ratings(stage->tube, stage->variant, stage->connection);
+    if (ratings != NULL && ratings->provenance.how == PLW_HOW_MEMORY) {
+        say(l,
+            "The ratings of the %.60s were written down from memory of the maker's sheet: compare them with the sheet.",
+            type);
+    }
+    if (ratings != NULL && ratings->plate_watts_unpublished) {
+        say(l, "The maker prints no plate dissipation for the %.60s: it is not checked.", type);
+    }
+}
+
+static void of_voltages(list *l, const plw_answer *answer) {
+    const plw_supply *supply = &answer->stage->supply;
+    const plw_signal *signal = &answer->option->signal;
+    char off_load[TEXT_SIZE];
+    char high[TEXT_SIZE];
+    if (supply->kind != PLW_SUPPLY_STIFF && isfinite(supply->volts)) {
+        say(l,
+            "Rate capacitors and windings for the unloaded supply at high mains: %s off load, %s with the mains 10 %% "
+            "up. With cold tubes it stands there at every switching on.",
+            written(supply->volts, PLW_UNIT_VOLT, off_load), written(HIGH_MAINS * supply->volts, PLW_UNIT_VOLT, high));
+    } else {
+        say(l,
+            "Rate capacitors and windings for the unloaded supply at high mains, which is not known here: it is well "
+            "above the loaded voltage, and with cold tubes it stands there at every switching on.");
+    }
+    if (isfinite(signal->plate_to_ground_volts_most)) {
+        say(l, "The plate swings to %s above the chassis at full drive: sockets and leads must stand it.",
+            written(signal->plate_to_ground_volts_most, PLW_UNIT_VOLT, high));
+    }
+}
+
+static void standing(list *l) {
+    say(l, "These voltages kill. Unplug, let the capacitors discharge through a resistor, and verify with a meter that "
+           "each is below 60 V before touching anything.");
+    say(l,
+        "Do no work on a live chassis. Clip the meter on with the power off; where a live reading cannot be avoided, "
+        "one hand only, insulated leads, and never alone.");
+    say(l, "Fuse the mains and earth the chassis.");
+    say(l, "Local codes and the judgement of a licensed practitioner go before anything said here.");
+}
+
+size_t plw_report_cautions(const plw_answer *answer, char (*lines)[PLW_CAUTION_SIZE], size_t most) {
+    list l = {lines, most, 0};
+    if (answer->choice != NULL && !answer->choice->aim_reached && answer->choice->obstacle[0] != '\0') {
+        say(&l, "The aim is not reached: %s", answer->choice->obstacle);
+    }
+    of_ratings(&l, answer->option);
+    of_drive(&l, answer);
+    of_screen(&l, answer);
+    of_bias(&l, answer);
+    of_region(&l, answer);
+    of_model(&l, answer);
+    of_voltages(&l, answer);
+    standing(&l);
+    return l.count;
+}

@@ -1,0 +1,17 @@
+/* What a builder must be warned of: this stage's own dangers, and those of every chassis.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
+#ifndef REPORT_CAUTIONS_H
+#define REPORT_CAUTIONS_H
+
+#include <stddef.h>
+
+#include "platewright/report.h"
+
+enum { PLW_CAUTION_SIZE = 512, PLW_CAUTIONS_MOST = 40 };
+
+/* One sentence or two a line, UTF-8, without a line break; the stage's own first, then the standing ones.
+ * In:   most: room in lines; PLW_CAUTIONS_MOST is always enough
+ * Ret:  how many were written */
+size_t plw_report_cautions(const plw_answer *answer, char (*lines)[PLW_CAUTION_SIZE], size_t most);
+
+#endif
