@@ -194,6 +194,24 @@ static void list_residuals(const plw_observations *observations, const plw_law *
     }
 }
 
+/* To `digits` significant digits: what a file needs, and stable against the last bits of a processor. */
+static double rounded(double value, int digits) {
+    if (!isfinite(value) || value == 0.0) {
+        return value;
+    }
+    const double unit = pow(10.0, floor(log10(fabs(value))) - digits + 1);
+    return round(value / unit) * unit;
+}
+
+enum { COEFFICIENT_DIGITS = 6, ERROR_DIGITS = 3 };
+
+static void round_errors(plw_model_errors *e) {
+    e->plate_current_percent = rounded(e->plate_current_percent, ERROR_DIGITS);
+    e->screen_current_percent = rounded(e->screen_current_percent, ERROR_DIGITS);
+    e->power_percent = rounded(e->power_percent, ERROR_DIGITS);
+    e->distortion_points = rounded(e->distortion_points, ERROR_DIGITS);
+}
+
 plw_status plw_fit_tube(const plw_tube *tube, bool leave_out, plw_fit *fit, plw_error *error) {
     if (tube->kind == PLW_KIND_RECTIFIER) {
         return plw_fail(error, PLW_E_USAGE, "%s: a rectifier has no grid; its law is computed from its printed drop",
@@ -214,7 +232,13 @@ plw_status plw_fit_tube(const plw_tube *tube, bool leave_out, plw_fit *fit, plw_
     if (status != PLW_OK) {
         return status;
     }
+    for (size_t index = 0; index < plw_law_coefficient_count(fit->model.law.kind); index++) {
+        fit->model.law.coefficient[index] = rounded(fit->model.law.coefficient[index], COEFFICIENT_DIGITS);
+        fit->model.relative_error[index] = rounded(fit->model.relative_error[index], ERROR_DIGITS);
+    }
     list_residuals(&observations, &fit->model.law, fit);
     plw_fit_errors(tube, leave_out, &fit->model);
+    round_errors(&fit->model.fit_error);
+    round_errors(&fit->model.left_out_error);
     return PLW_OK;
 }

@@ -1,0 +1,353 @@
+/* The answer in words, for the bench: the resistor first, then what a meter reads, then margins, then power.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
+#include <math.h>
+#include <stdio.h>
+#include <string.h>
+
+#include "platewright/quantity.h"
+#include "platewright/report.h"
+#include "report/cautions.h"
+#include "report/text_buffer.h"
+
+enum { CELL = 32, CAUTIONS_MOST = 40, CAUTION_SIZE = 512, WIDTH = 78 };
+
+/* One quantity as text; each use in a call needs a cell of its own. */
+typedef struct {
+    char text[CELL];
+} cell;
+
+static cell quantity(double value, plw_unit unit, int digits) {
+    cell c;
+    plw_quantity_format(value, unit, digits, c.text, sizeof c.text);
+    return c;
+}
+
+static cell volts(double value) {
+    return quantity(value, PLW_UNIT_VOLT, 3);
+}
+
+static cell amps(double value) {
+    return quantity(value, PLW_UNIT_AMPERE, 3);
+}
+
+static cell watts(double value) {
+    return quantity(value, PLW_UNIT_WATT, value >= 9.95 ? 3 : 2);
+}
+
+static cell ohms(double value) {
+    return quantity(value, PLW_UNIT_OHM, 3);
+}
+
+/* Print a text into a field of `width` columns, right-aligned; UTF-8 letters count once. */
+static void right(FILE *out, const char *text, int width) {
+    int letters = 0;
+    for (const char *at = text; *at != '\0'; at++) {
+        letters += ((unsigned char)*at & 0xC0U) != 0x80U;
+    }
+    fprintf(out, "%*s%s", width > letters ? width - letters : 0, "", text);
+}
+
+/* Print a paragraph broken at spaces, with a mark before its first line. */
+static void paragraph(FILE *out, const char *mark, const char *text) {
+    const int indent = (int)strlen(mark);
+    int column = fprintf(out, "%s", mark);
+    bool first = true;
+    while (*text != '\0') {
+        const size_t length = strcspn(text, " ");
+        int letters = 0;
+        for (size_t index = 0; index < length; index++) {
+            letters += ((unsigned char)text[index] & 0xC0U) != 0x80U;
+        }
+        if (!first && column + 1 + letters > WIDTH) {
+            fprintf(out, "\n%*s", indent, "");
+            column = indent;
+            first = true;
+        }
+        column += fprintf(out, "%s%.*s", first ? "" : " ", (int)length, text) - ((int)length - letters);
+        first = false;
+        text += length;
+        text += strspn(text, " ");
+    }
+    fputc('\n', out);
+}
+
+static const char *tube_name(const plw_stage *stage) {
+    return stage->variant >= 0 ? stage->tube->variants[stage->variant].type : stage->tube->type;
+}
+
+static void title(FILE *out, const plw_answer *a) {
+    const plw_stage *stage = a->stage;
+    if (stage->parallel > 1) {
+        fprintf(out, "%u x ", stage->parallel);
+    }
+    fprintf(out, "%s", tube_name(stage));
+    if (stage->tube->kind != PLW_KIND_TRIODE) {
+        fprintf(out, ", %s", plw_connection_name(stage->connection));
+        if (stage->connection == PLW_CONNECTION_ULTRALINEAR) {
+            fprintf(out, " at %.3g %%", 100.0 * stage->tap);
+        }
+    }
+    fprintf(out, ", on %s, into %s\n\n", volts(a->option->quiescent.supply_volts).text, ohms(stage->load_ohms).text);
+}
+
+static void aim_words(FILE *out, const plw_aim *aim) {
+    if (aim->kind == PLW_AIM_DISSIPATION) {
+        fprintf(out, "%.3g %% of the rated plate dissipation", aim->value);
+    } else if (aim->kind == PLW_AIM_CURRENT) {
+        fprintf(out, "a plate current of %s", amps(aim->value).text);
+    } else {
+        fputs("the most power within the ratings", out);
+    }
+}
+
+static void bias_lines(FILE *out, const plw_answer *a) {
+    const plw_stage *stage = a->stage;
+    const plw_bias_option *o = a->option;
+    if (!isfinite(o->ohms)) {
+        fprintf(out, "FIXED BIAS        %s at the grid, to chassis\n", volts(stage->fixed_bias_volts).text);
+        return;
+    }
+    char code[CELL];
+    fprintf(out, "CATHODE RESISTOR  %s (%s)", ohms(o->ohms).text, plw_resistor_code(o->ohms, code, sizeof code));
+    if (a->choice != NULL) {
+        fprintf(out, ", E%d", (int)a->series);
+    }
+    if (isfinite(o->rating_watts)) {
+        fprintf(out, ", a %g W part", o->rating_watts);
+    } else {
+        fputs(", larger than any usual size", out);
+    }
+    fprintf(out, " (it turns %s into heat)\n", watts(o->watts).text);
+    if (stage->parallel > 1) {
+        fprintf(out, "                  %s\n",
+                stage->resistor_each ? "one for each tube" : "one for all tubes together");
+    }
+    if (stage->unbypassed) {
+        fputs("                  without a bypass capacitor\n", out);
+    }
+    if (a->choice != NULL) {
+        fputs("                  aimed at ", out);
+        aim_words(out, &a->choice->aim);
+        fprintf(out, "; exact %s\n", quantity(a->choice->exact_ohms, PLW_UNIT_OHM, 4).text);
+        if (!a->choice->aim_reached) {
+            paragraph(out, "                  NOT REACHED: ", a->choice->obstacle);
+        }
+    }
+}
+
+static void meter_line(FILE *out, const char *name, double rest, double driven) {
+    fprintf(out, "  %-11s", name);
+    right(out, volts(rest).text, 12);
+    right(out, isfinite(driven) ? volts(driven).text : "", 16);
+    fputc('\n', out);
+}
+
+/* What a meter reads with its black lead on the chassis. */
+static void meter_lines(FILE *out, const plw_answer *a) {
+    const plw_quiescent *q = &a->option->quiescent;
+    const plw_signal *s = &a->option->signal;
+    const double fixed = a->stage->fixed_bias_volts;
+    fputs("\nA METER READS, to chassis     at rest   at full drive\n", out);
+    meter_line(out, "supply", q->supply_volts, s->supply_volts);
+    meter_line(out, "plate", q->plate_to_ground_volts, (double)NAN);
+    if (isfinite(q->screen_to_ground_volts)) {
+        meter_line(out, "screen", q->screen_to_ground_volts, (double)NAN);
+    }
+    meter_line(out, "cathode", q->cathode_volts, s->cathode_volts);
+    meter_line(out, "grid", isfinite(fixed) ? fixed : 0.0, (double)NAN);
+}
+
+static void tube_lines(FILE *out, const plw_answer *a) {
+    const plw_quiescent *q = &a->option->quiescent;
+    const char *each = a->stage->parallel > 1 ? " (each tube)" : "";
+    fprintf(out, "\nTHE TUBE AT REST%s\n", each);
+    fprintf(out, "  to its cathode     plate %s", volts(q->plate_volts).text);
+    if (isfinite(q->screen_volts)) {
+        fprintf(out, ", screen %s", volts(q->screen_volts).text);
+    }
+    fprintf(out, ", grid %s\n", volts(q->grid_volts).text);
+    fprintf(out, "  current            plate %s", amps(q->plate_amps).text);
+    if (isfinite(q->screen_volts)) {
+        fprintf(out, ", screen %s, cathode %s", amps(q->screen_amps).text, amps(q->cathode_amps).text);
+    }
+    fprintf(out, "\n  small signal       gm %.3g mA/V, plate resistance %s, mu %.3g\n", 1e3 * q->gm_siemens,
+            quantity(q->plate_resistance_ohms, PLW_UNIT_OHM, 2).text, q->mu);
+}
+
+static const plw_rating_check *partner(const plw_bias_option *o, const plw_rating_check *check) {
+    for (size_t index = 0; index < o->ratings_count; index++) {
+        if (o->ratings[index].when == PLW_AT_FULL_DRIVE && strcmp(o->ratings[index].name, check->name) == 0) {
+            return &o->ratings[index];
+        }
+    }
+    return NULL;
+}
+
+static void rating_cell(FILE *out, const plw_rating_check *check) {
+    if (check == NULL) {
+        right(out, "", 20);
+        return;
+    }
+    const cell value = check->unit == PLW_UNIT_WATT ? watts(check->value) : quantity(check->value, check->unit, 3);
+    right(out, value.text, 10);
+    fprintf(out, " %4.0f %%%s", check->share_percent, check->ok ? "   " : " !!");
+}
+
+/* Every rating: at rest, at full drive, the limit. */
+static void rating_lines(FILE *out, const plw_answer *a) {
+    const plw_bias_option *o = a->option;
+    const plw_ratings *ratings = plw_tube_ratings(a->stage->tube, a->stage->variant, a->stage->connection);
+    fputs("\nRATINGS                          at rest       at full drive      limit\n", out);
+    for (size_t index = 0; index < o->ratings_count; index++) {
+        const plw_rating_check *check = &o->ratings[index];
+        if (check->when != PLW_AT_IDLE) {
+            continue;
+        }
+        const plw_rating_check *driven = partner(o, check);
+        fprintf(out, "  %-28s", check->name);
+        rating_cell(out, check);
+        rating_cell(out, driven);
+        const double limit = driven != NULL ? driven->limit : check->limit;
+        right(out, quantity(limit, check->unit, 3).text, 9);
+        if (driven != NULL && driven->limit != check->limit) {
+            fprintf(out, " (at rest %s)", quantity(check->limit, check->unit, 3).text);
+        }
+        fputc('\n', out);
+    }
+    fprintf(out, "  %s, %s\n", plw_rating_system_name(ratings->system), ratings->provenance.source);
+}
+
+static void power_lines(FILE *out, const plw_answer *a) {
+    const plw_signal *s = &a->option->signal;
+    const bool copper = s->power_watts > 1.0005 * s->speaker_watts;
+    fprintf(out, "\nFULL DRIVE        %s at the speaker", watts(s->speaker_watts).text);
+    if (copper) {
+        fprintf(out, " (%s at the plate, the rest heats the copper)", watts(s->power_watts).text);
+    }
+    fprintf(out, "\n                  distortion %.1f %% (2nd %.1f, 3rd %.1f, 4th %.1f, 5th %.1f)\n", s->thd_percent,
+            fabs(s->harmonic_percent[2]), fabs(s->harmonic_percent[3]), fabs(s->harmonic_percent[4]),
+            fabs(s->harmonic_percent[5]));
+    fprintf(out, "                  drive %s peak at the grid (%s RMS)", volts(s->drive_peak_volts).text,
+            volts(s->drive_peak_volts / sqrt(2.0)).text);
+    if (s->limit == PLW_DRIVE_GIVEN) {
+        fputs(", as given\n", out);
+    } else {
+        fprintf(out, ", where %s begins\n", s->limit == PLW_DRIVE_GRID_CURRENT ? "grid current" : "cut-off");
+    }
+    fprintf(out, "                  the plate swings %s to %s to its cathode, %s to %s\n",
+            volts(s->plate_volts_least).text, volts(s->plate_volts_most).text, amps(s->plate_amps_least).text,
+            amps(s->plate_amps_most).text);
+}
+
+static void neighbour_lines(FILE *out, const plw_answer *a) {
+    const plw_bias_choice *choice = a->choice;
+    if (choice == NULL || choice->options < 2) {
+        return;
+    }
+    fputs("\nA STEP EITHER WAY   cathode     plate   dissipation   at speaker  distortion\n", out);
+    for (size_t index = 0; index < choice->options; index++) {
+        const plw_bias_option *o = &choice->option[index];
+        fputs(index == choice->chosen ? "  > " : "    ", out);
+        right(out, ohms(o->ohms).text, 9);
+        right(out, volts(o->quiescent.cathode_volts).text, 14);
+        right(out, amps(o->quiescent.plate_amps).text, 10);
+        right(out, watts(o->quiescent.plate_watts).text, 14);
+        right(out, watts(o->signal.speaker_watts).text, 13);
+        fprintf(out, "%9.1f %%%s\n", o->signal.thd_percent, o->within_ratings ? "" : "  over a rating");
+    }
+}
+
+static void specimen_lines(FILE *out, const plw_answer *a) {
+    const plw_specimen *s = a->specimen;
+    if (s == NULL) {
+        return;
+    }
+    fputs("\nTHIS TUBE, BY THE METER\n", out);
+    fprintf(out, "  cathode %s: cathode current %s", volts(s->cathode_volts).text, amps(s->cathode_amps).text);
+    if (isfinite(s->screen_volts)) {
+        fprintf(out, ", of which screen %s (by the model's share),\n  plate %s", amps(s->screen_amps).text,
+                amps(s->plate_amps).text);
+    }
+    fprintf(out, "; plate to cathode %s, plate %s", volts(s->plate_volts).text, watts(s->plate_watts).text);
+    if (isfinite(s->screen_watts)) {
+        fprintf(out, ", screen %s", watts(s->screen_watts).text);
+    }
+    fprintf(out, "\n  it draws %.0f %% %s than the model's tube at these voltages (%s)\n", fabs(s->off_percent),
+            s->off_percent < 0.0 ? "less" : "more", amps(s->model_cathode_amps).text);
+    if (isfinite(s->primary_ohms)) {
+        fprintf(out, "  between supply and plate lie %s\n", ohms(s->primary_ohms).text);
+    }
+    if (!s->plate_read || !s->supply_read) {
+        fprintf(out, "  not read, so taken from the model:%s%s\n", s->supply_read ? "" : " supply",
+                s->plate_read ? "" : " plate");
+    }
+    if (s->resistor_found) {
+        const plw_bias_option *o = &s->choice.option[s->choice.chosen];
+        fprintf(out, "  for this very tube: %s, for ", ohms(o->ohms).text);
+        aim_words(out, &s->choice.aim);
+        fprintf(out, ";\n  then cathode %s, plate %s, %s\n", volts(o->quiescent.cathode_volts).text,
+                amps(o->quiescent.plate_amps).text, watts(o->quiescent.plate_watts).text);
+    } else {
+        paragraph(out, "  no resistor suits this tube: ", s->resistor_obstacle);
+    }
+}
+
+/* One line for all that was not described. */
+static void ideal_line(FILE *out, const plw_answer *a) {
+    const plw_stage *stage = a->stage;
+    char text[256];
+    snprintf(text, sizeof text, "Taken as ideal:%s%s%s%s.",
+             stage->primary_ohms > 0.0 ? "" : " no copper in the transformer,",
+             stage->supply.kind == PLW_SUPPLY_STIFF ? " a stiff supply," : "",
+             isfinite(stage->cathode_resistor_ohms) && !stage->unbypassed ? " the cathode fully bypassed," : "",
+             " a resistive speaker at mid-band");
+    fputc('\n', out);
+    paragraph(out, "", text);
+}
+
+static void trust_line(FILE *out, const plw_answer *a) {
+    const plw_model *m = &a->stage->tube->model;
+    char text[256];
+    snprintf(text, sizeof text, "Model: within %.1f %% of the printed plate currents",
+             m->fit_error.plate_current_percent);
+    size_t used = strlen(text);
+    if (isfinite(m->left_out_error.plate_current_percent)) {
+        used += (size_t)snprintf(text + used, sizeof text - used, ", %.1f %% of rows left out of the fit (medians)",
+                                 m->left_out_error.plate_current_percent);
+    }
+    snprintf(text + used, sizeof text - used, "; tubes of one type differ by 20 %% or more.");
+    if (isfinite(m->fit_error.plate_current_percent)) {
+        paragraph(out, "", text);
+    }
+}
+
+static void caution_lines(FILE *out, const plw_answer *a) {
+    static const size_t most = CAUTIONS_MOST;
+    char lines[CAUTIONS_MOST][CAUTION_SIZE];
+    const size_t count = plw_report_cautions(a, lines, most);
+    fputs("\nCAUTIONS\n", out);
+    for (size_t index = 0; index < count; index++) {
+        paragraph(out, "  ! ", lines[index]);
+    }
+}
+
+plw_status plw_report_text(const plw_answer *answer, char **text, plw_error *error) {
+    plw_text_buffer buffer;
+    const plw_status status = plw_text_begin(&buffer, error);
+    if (status != PLW_OK) {
+        return status;
+    }
+    FILE *out = buffer.file;
+    title(out, answer);
+    bias_lines(out, answer);
+    meter_lines(out, answer);
+    tube_lines(out, answer);
+    rating_lines(out, answer);
+    power_lines(out, answer);
+    neighbour_lines(out, answer);
+    specimen_lines(out, answer);
+    ideal_line(out, answer);
+    trust_line(out, answer);
+    caution_lines(out, answer);
+    return plw_text_end(&buffer, PLW_OK, text, error);
+}
