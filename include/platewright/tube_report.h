@@ -5,6 +5,7 @@
 
 #include <stddef.h>
 
+#include "platewright/fit.h"
 #include "platewright/status.h"
 #include "platewright/tube.h"
 
@@ -22,6 +23,11 @@ PLW_API plw_status plw_tubes_text(const plw_tube *const *tubes, size_t count, ch
 /* One tube: pins, heater, ratings with their system, published rows, coefficients with their errors, and the sources.
  * Out, Ret: as plw_tubes_text() */
 PLW_API plw_status plw_tube_text(const plw_tube *tube, char **text, plw_error *error) PLW_MUST_USE;
+
+/* A fit: coefficients with their errors, then every printed figure beside the model's.
+ * In:   tube, whose model is that of the fit
+ * Out, Ret: as plw_tubes_text() */
+PLW_API plw_status plw_fit_text(const plw_tube *tube, const plw_fit *fit, char **text, plw_error *error) PLW_MUST_USE;
 
 #ifdef __cplusplus
 }

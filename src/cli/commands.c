@@ -15,13 +15,13 @@ static const cli_command commands[] = {
      .description = "Works out which cathode resistor brings the tube to its aim on the supply that is really there, "
                     "and says what it costs: its watts, the voltages a meter will read at each pin, the margins to "
                     "the ratings, power and distortion, and the same for the next values above and below.",
-     .examples = {{"A table radio on the bench at Morrow Quay: 285 V with the set playing, 5 kohm transformer",
+     .examples = {{"A table radio in for repair at Morrow Quay: 285 V, transformer of 5k",
                    "platewright design --tube 6V6GT --supply 285V --load 5k"},
-                  {"The supply by two readings, the load by ratio and speaker, the resistor from the E12 series",
+                  {"The supply by two readings, the load by ratio and speaker, E12 resistors",
                    "platewright design --tube EL84 --reading 290V --reading 255V@5k --ratio 25 --speaker 8 --series "
                    "E12"},
-                  {"From a stage file, to 40 mA instead of the usual 90 % dissipation; the result kept for the bench",
-                   "platewright design morrow-quay.xml --aim current=40mA --save as-built.xml"}},
+                  {"From a stage file, aiming at 40 mA, the result kept for the bench",
+                   "platewright design quay-radio.xml --aim current=40mA --save as-built.xml"}},
      .run = cli_run_design},
     {.name = "check",
      .bit = CLI_CHECK,
@@ -41,9 +41,9 @@ static const cli_command commands[] = {
      .description = "Writes a gnuplot script, complete in itself, and has gnuplot draw it. Without a bias it chooses "
                     "the cathode resistor as design does.",
      .examples = {{"The load line of the radio, as a drawing and a script",
-                   "platewright plot morrow-quay.xml --output load-line.svg"},
+                   "platewright plot quay-radio.xml --output load-line.svg"},
                   {"How the resistor sets the bias, to be printed",
-                   "platewright plot morrow-quay.xml --kind transfer --output bias.pdf"},
+                   "platewright plot quay-radio.xml --kind transfer --output bias.pdf"},
                   {"The script alone, to be changed by hand",
                    "platewright plot --tube 2A3 --supply 300V --load 2.5k --output radiogram.gp"}},
      .run = cli_run_plot},
@@ -55,6 +55,16 @@ static const cli_command commands[] = {
                     "type with its ratings, pins, published rows and their sources.",
      .examples = {{"All of them", "platewright tubes"}, {"One of them", "platewright tubes EL84"}},
      .run = cli_run_tubes},
+    {.name = "fit",
+     .bit = CLI_FIT,
+     .positional = "TUBEFILE.xml",
+     .positional_required = true,
+     .summary = "work out a tube's coefficients from its published rows and points",
+     .description = "Fits the characteristic law of one tube file to what is printed of the tube, and shows every "
+                    "printed figure beside the model's.",
+     .examples = {{"See how well the rows of a tube file of one's own hang together", "platewright fit 6V6GT.xml"},
+                  {"The same, and keep the coefficients", "platewright fit 6V6GT.xml --output 6V6GT.xml"}},
+     .run = cli_run_fit},
 };
 
 enum { COMMANDS = sizeof commands / sizeof commands[0] };

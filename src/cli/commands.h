@@ -39,5 +39,6 @@ int cli_run_design(const cli_arguments *arguments);
 int cli_run_check(const cli_arguments *arguments);
 int cli_run_plot(const cli_arguments *arguments);
 int cli_run_tubes(const cli_arguments *arguments);
+int cli_run_fit(const cli_arguments *arguments);
 
 #endif

@@ -9,6 +9,7 @@
 
 #include "platewright/quantity.h"
 #include "report/text_buffer.h"
+#include "report/tube_text.h"
 
 enum { CELL = 40, LINE = 512, WIDTH = 80 };
 
@@ -102,13 +103,13 @@ static void put_tube_line(FILE *out, const plw_tube *tube) {
     const double unknown = (double)NAN;
     char names[LINE];
     other_names(tube, names);
-    fprintf(out, "%-9s %-9s %-7s", tube->type, plw_tube_kind_name(tube->kind), tube->base);
-    right(out, short_number(ratings == NULL ? unknown : ratings->plate_watts).text, 8);
-    right(out, short_number(ratings == NULL ? unknown : ratings->screen_watts).text, 9);
-    right(out, short_number(tube->heater_volts).text, 9);
-    right(out, short_number(tube->heater_amps).text, 9);
+    fprintf(out, "%-9s %-9s %-15s", tube->type, plw_tube_kind_name(tube->kind), tube->base);
+    right(out, short_number(ratings == NULL ? unknown : ratings->plate_watts).text, 7);
+    right(out, short_number(ratings == NULL ? unknown : ratings->screen_watts).text, 8);
+    right(out, short_number(tube->heater_volts).text, 8);
+    right(out, short_number(tube->heater_amps).text, 8);
     right(out, number(tube->has_model ? tube->model.fit_error.plate_current_percent : unknown, 1).text, 7);
-    right(out, number(tube->has_model ? tube->model.left_out_error.plate_current_percent : unknown, 1).text, 8);
+    right(out, number(tube->has_model ? tube->model.left_out_error.plate_current_percent : unknown, 1).text, 7);
     fprintf(out, "%s%s\n", names[0] == '\0' ? "" : "  ", names);
 }
 
@@ -118,8 +119,8 @@ plw_status plw_tubes_text(const plw_tube *const *tubes, size_t count, char **tex
     if (status != PLW_OK) {
         return status;
     }
-    fputs("                             plate   screen   heater   heater  model    left\n"
-          "type      kind      base         W        W        V        A  err %   out %  other names\n",
+    fputs("                                      plate  screen  heater  heater  model   left\n"
+          "type      kind      base                 W       W       V       A  err %  out %  other names\n",
           buffer.file);
     for (size_t i = 0; i < count; i++) {
         put_tube_line(buffer.file, tubes[i]);
@@ -197,14 +198,19 @@ static void put_heading(FILE *out, const plw_tube *tube, source_list *sources) {
     paragraph(out, "  ", "    ", line);
 }
 
+/* Number and unit without a space, so that no line break parts them. */
 static void add_limit(char line[LINE], const char *name, double value, plw_unit unit) {
     if (isfinite(value)) {
+        cell c = short_number(value);
+        if (unit == PLW_UNIT_OHM) {
+            plw_resistor_code(value, c.text, sizeof c.text);
+        }
         append(line, line[0] == '\0' ? "" : ", ");
         append(line, name);
         append(line, " ");
-        append(line, unit == PLW_UNIT_OHM ? quantity(value, unit, 3).text : short_number(value).text);
-        append(line, unit == PLW_UNIT_VOLT ? " V" : "");
-        append(line, unit == PLW_UNIT_WATT ? " W" : "");
+        append(line, c.text);
+        append(line, unit == PLW_UNIT_VOLT ? "V" : "");
+        append(line, unit == PLW_UNIT_WATT ? "W" : "");
     }
 }
 
@@ -222,7 +228,7 @@ static void put_ratings(FILE *out, const plw_ratings *ratings, source_list *sour
     if (isfinite(ratings->cathode_amps)) {
         append(line, line[0] == '\0' ? "cathode " : ", cathode ");
         append(line, short_number(1000.0 * ratings->cathode_amps).text);
-        append(line, " mA");
+        append(line, "mA");
     }
     add_limit(line, "grid resistor with cathode bias", ratings->grid_ohms_cathode_bias, PLW_UNIT_OHM);
     add_limit(line, "with fixed bias", ratings->grid_ohms_fixed_bias, PLW_UNIT_OHM);
@@ -300,7 +306,7 @@ static void put_errors(FILE *out, const char *name, const plw_model_errors *erro
             number(errors->power_percent, 1).text, number(errors->distortion_points, 1).text);
 }
 
-static void put_model(FILE *out, const plw_tube *tube) {
+void plw_put_model(FILE *out, const plw_tube *tube) {
     if (tube->kind == PLW_KIND_RECTIFIER) {
         return;
     }
@@ -343,7 +349,7 @@ plw_status plw_tube_text(const plw_tube *tube, char **text, plw_error *error) {
         }
         put_all_ratings(buffer.file, tube, &sources);
         put_rows(buffer.file, tube, &sources);
-        put_model(buffer.file, tube);
+        plw_put_model(buffer.file, tube);
         put_sources(buffer.file, &sources);
         status = plw_text_end(&buffer, PLW_OK, text, error);
     }
