@@ -251,12 +251,6 @@ static plw_status next_guess(const plw_engine *engine, const plw_rectifier *supp
     return PLW_OK;
 }
 
-/* How short a step must be: against the fall of the reservoir from the peak, for the current goes as its power 3/2. */
-static double line_tolerance(const plw_network *network, const plw_steady *last) {
-    const double fall = 1 - last->start[0] / (network->law.peak_volts - network->law.drop_volts);
-    return network->choke_input ? LINE_TOLERANCE * 0.01 : LINE_TOLERANCE * fmin(1, fmax(1e-5, fall));
-}
-
 /* Out:  *reached: how many points hold */
 static plw_status run_line(const plw_engine *engine, const plw_rectifier *supply, double most_amps, plw_supply *line,
                            size_t *reached, plw_error *error) {
@@ -271,8 +265,7 @@ static plw_status run_line(const plw_engine *engine, const plw_rectifier *supply
         } else {
             plw_status status = next_guess(engine, supply, last, k, amps, &now, error);
             if (status == PLW_OK) {
-                status = plw_steady_solve(
-                    engine, amps, k < 4 ? PLW_STEADY_TOLERANCE : line_tolerance(&engine->network, last), &now, error);
+                status = plw_steady_solve(engine, amps, LINE_TOLERANCE, &now, error);
             }
             if (status != PLW_OK) {
                 return status;

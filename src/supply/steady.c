@@ -197,6 +197,12 @@ static double damped_move(const plw_engine *engine, double load_amps, const doub
     return after;
 }
 
+/* What steps are measured against: the fall of the reservoir from the peak, since the current goes as its power 3/2. */
+static double fall_from_peak(const plw_network *network, const double *start) {
+    const double fall = 1 - start[0] / (network->law.peak_volts - network->law.drop_volts);
+    return network->choke_input ? 0.01 : fmin(1, fmax(1e-6, fall));
+}
+
 /* Ret: the misfit, or 0 when a step was short enough */
 static double newton(const plw_engine *engine, double load_amps, double tolerance, const double *scale,
                      plw_steady *steady) {
@@ -214,7 +220,7 @@ static double newton(const plw_engine *engine, double load_amps, double toleranc
         for (size_t i = 0; i < n; i++) {
             longest = fmax(longest, fabs(move[i]) / scale[i]);
         }
-        if (longest <= tolerance) {
+        if (longest <= tolerance * fall_from_peak(&engine->network, steady->start)) {
             for (size_t i = 0; i < n; i++) {
                 steady->start[i] += move[i];
             }

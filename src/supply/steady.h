@@ -5,7 +5,7 @@
 
 #include "supply/engine.h"
 
-#define PLW_STEADY_TOLERANCE 1e-7
+#define PLW_STEADY_TOLERANCE 1e-5
 
 typedef struct {
     double start[PLW_STATES_MOST]; /* at the zero of the EMF */
@@ -19,9 +19,10 @@ typedef struct {
 plw_status plw_steady_guess(const plw_engine *engine, const plw_rectifier *supply, double load_amps, plw_steady *steady,
                             plw_error *error);
 
-/* Newton's method on the period map from a guess.  It ends with the first step that is shorter than `tolerance`; what
- * is then left is of the order of its square. In:   tolerance: relative to the peak of the EMF Ret:  PLW_OK,
- * PLW_E_NO_CONVERGENCE */
+/* Newton's method on the period map from a guess.  It ends with the first step that is short; what is then left is of
+ * the order of its square.
+ * In:   tolerance: what is short, relative to the fall of the reservoir from the peak
+ * Ret:  PLW_OK, PLW_E_NO_CONVERGENCE */
 plw_status plw_steady_solve(const plw_engine *engine, double load_amps, double tolerance, plw_steady *steady,
                             plw_error *error);
 
