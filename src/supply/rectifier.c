@@ -284,6 +284,33 @@ static plw_status run_line(const plw_engine *engine, const plw_rectifier *supply
     return PLW_OK;
 }
 
+/* Output by the first guess, in which the reservoir is boundless; 0 when the current cannot be had. */
+static double guessed_volts(const plw_engine *engine, const plw_rectifier *supply, double amps) {
+    plw_steady guess;
+    if (nothing_drawn(&engine->network, amps)) {
+        return plw_rectifier_peak_volts(supply);
+    }
+    return plw_steady_guess(engine, supply, amps, &guess, NULL) == PLW_OK ? guess.output_volts : 0;
+}
+
+/* Where the line will end, so that it need not be run twice. */
+static double line_reach(const plw_engine *engine, const plw_rectifier *supply, double most_amps) {
+    const double least_volts = LINE_SHARE_LEAST * guessed_volts(engine, supply, 0);
+    if (guessed_volts(engine, supply, most_amps) >= least_volts) {
+        return most_amps;
+    }
+    double low = 0, high = most_amps;
+    while (high - low > 0.01 * high && high > most_amps / 200) {
+        const double middle = (low + high) / 2;
+        if (guessed_volts(engine, supply, middle) >= 1.1 * least_volts) {
+            low = middle;
+        } else {
+            high = middle;
+        }
+    }
+    return low > 0 ? low : high;
+}
+
 /* Bound each tangent by three times the flatter chord beside it: then every cubic falls throughout (F. N. Fritsch and
  * R. E. Carlson, "Monotone piecewise cubic interpolation", SIAM J. Numer. Anal. 17, 1980; from memory). */
 static void bound_tangents(plw_supply *line) {
@@ -317,8 +344,8 @@ plw_status plw_rectifier_line(const plw_rectifier *supply, double most_amps, plw
     made.kind = PLW_SUPPLY_RECTIFIER;
     made.source_ohms = (double)NAN;
     plw_error failed = {0};
-    double reach = most_amps;
-    status = PLW_E_NO_POINT;
+    double reach = line_reach(engine, supply, most_amps);
+    status = plw_fail(&failed, PLW_E_NO_POINT, "supply: not even a hundredth of %.4g mA can be had", 1e3 * most_amps);
     while (status != PLW_OK && reach >= most_amps / 100) {
         size_t reached = 0;
         status = run_line(engine, supply, reach, &made, &reached, &failed);

@@ -197,10 +197,11 @@ static double damped_move(const plw_engine *engine, double load_amps, const doub
     return after;
 }
 
-/* What steps are measured against: the fall of the reservoir from the peak, since the current goes as its power 3/2. */
+/* What steps are measured against: the fall of the first node from the peak, since the current goes as its power 3/2.
+ */
 static double fall_from_peak(const plw_network *network, const double *start) {
-    const double fall = 1 - start[0] / (network->law.peak_volts - network->law.drop_volts);
-    return network->choke_input ? 0.01 : fmin(1, fmax(1e-6, fall));
+    const double first_node = start[network->choke_input ? 1 : 0];
+    return fmin(1, fmax(1e-6, 1 - first_node / (network->law.peak_volts - network->law.drop_volts)));
 }
 
 /* Ret: the misfit, or 0 when a step was short enough */

@@ -21,7 +21,7 @@ plw_status plw_steady_guess(const plw_engine *engine, const plw_rectifier *suppl
 
 /* Newton's method on the period map from a guess.  It ends with the first step that is short; what is then left is of
  * the order of its square.
- * In:   tolerance: what is short, relative to the fall of the reservoir from the peak
+ * In:   tolerance: what is short, relative to the fall of the first node from the peak
  * Ret:  PLW_OK, PLW_E_NO_CONVERGENCE */
 plw_status plw_steady_solve(const plw_engine *engine, double load_amps, double tolerance, plw_steady *steady,
                             plw_error *error);
