@@ -11,17 +11,17 @@
 /* No printer or screen shows more; fewer than a double holds, so that the last bit of a library's pow() is not seen. */
 enum { SCRIPT_DIGITS = 6 };
 
+/* Gnuplot reads '' inside single quotes as one quote, but not at the beginning nor twice in a row: such a text would
+ * fall into two.  So quotes that are only to be read become typographic ones. */
 void plw_script_quoted(FILE *file, const char *text) {
     fputc('\'', file);
     for (const char *at = text == NULL ? "" : text; *at != '\0'; at++) {
         const unsigned char byte = (unsigned char)*at;
-        if (byte < 0x20 || byte == 0x7f) {
-            continue;
-        }
         if (byte == '\'') {
-            fputc('\'', file);
+            fputs("\xE2\x80\x99", file);
+        } else if (byte >= 0x20 && byte != 0x7f) {
+            fputc(byte, file);
         }
-        fputc(byte, file);
     }
     fputc('\'', file);
 }
@@ -37,7 +37,7 @@ static const struct {
 };
 
 /* Only the last part of a path: the picture falls beside the script.  A leading | would be a command and a leading ~ a
- * home folder to gnuplot. */
+ * home folder to gnuplot.  The quotes of a name must stay what they are: each is a string of its own, joined on. */
 static void put_output(FILE *file, plw_plot_format format, const char *output, const char *fallback) {
     const char *name = output == NULL ? "" : output;
     for (const char *at = name; *at != '\0'; at++) {
@@ -48,15 +48,21 @@ static void put_output(FILE *file, plw_plot_format format, const char *output, c
     while ((*name > 0 && *name < 0x20) || *name == 0x7f) {
         name++;
     }
-    char text[256];
+    fputs("set output '", file);
     if (*name == '\0') {
-        snprintf(text, sizeof text, "%s.%s", fallback, formats[format].suffix);
-    } else {
-        snprintf(text, sizeof text, "%s%s", *name == '|' || *name == '~' ? "./" : "", name);
+        fprintf(file, "%s.%s", fallback, formats[format].suffix);
+    } else if (*name == '|' || *name == '~') {
+        fputs("./", file);
     }
-    fputs("set output ", file);
-    plw_script_quoted(file, text);
-    fputc('\n', file);
+    for (; *name != '\0'; name++) {
+        const unsigned char byte = (unsigned char)*name;
+        if (byte == '\'') {
+            fputs("'.\"'\".'", file);
+        } else if (byte >= 0x20 && byte != 0x7f) {
+            fputc(byte, file);
+        }
+    }
+    fputs("'\n", file);
 }
 
 void plw_script_begin(FILE *file, plw_plot_format format, const char *output, const char *fallback) {

@@ -7,7 +7,8 @@
 
 #include "platewright/report.h"
 
-/* Text in single quotes, in which gnuplot runs nothing; control characters are dropped, a missing text is empty. */
+/* Text to be read, in single quotes, in which gnuplot runs nothing: control characters are dropped, quotes made
+ * typographic, a missing text is empty. */
 void plw_script_quoted(FILE *file, const char *text);
 
 /* The opening of every script: encoding, page, output, frame.
