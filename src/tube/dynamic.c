@@ -10,7 +10,8 @@
 #define REST_TOLERANCE_AMPS 1e-10
 #define CYCLE_TOLERANCE_AMPS 1e-9
 #define MARCH_TOLERANCE_AMPS 1e-4 /* of the first, rough walk along the cycle */
-enum { NEWTON_STEPS_MOST = 40, HALVINGS_MOST = 10, SWEEPS_MOST = 60, BISECTIONS = 70 };
+#define FAR_PART 1e-3             /* averages further off than this part of the current at rest may need damped steps */
+enum { NEWTON_STEPS_MOST = 40, HALVINGS_MOST = 10, SWEEPS_MOST = 60, FREE_SWEEPS = 4, BISECTIONS = 70 };
 
 /* The voltages at given currents, and the resistances with which they fall: at rest the averages are the currents
  * themselves, at an instant the averages stay. */
@@ -44,11 +45,40 @@ typedef struct {
     double size;
 } balance;
 
+/* Behind the driver's resistance the grid stays below the open signal by its own current's fall.
+ * In:   volts at the grid as if it drew nothing
+ * Out:  volts at the grid
+ * Ret:  how much of a change in the open volts arrives at the grid, 0..1 */
+static double load_driver(const network *net, double *grid_volts) {
+    const double ohms = net->feed->driver_ohms;
+    const double open = *grid_volts;
+    if (!(ohms > 0.0) || open < -2.0) {
+        return 1.0;
+    }
+    /* The current rises convexly with the grid volts: Newton from above comes down without overshoot. */
+    plw_currents c = {0};
+    double part = 1.0;
+    for (int step = 0; step < NEWTON_STEPS_MOST; step++) {
+        plw_law_evaluate(net->law, 0.0, 0.0, *grid_volts, &c);
+        part = 1.0 / (1.0 + ohms * c.grid_by_grid);
+        const double off = (*grid_volts + ohms * c.grid_amps - open) * part;
+        *grid_volts -= off;
+        if (fabs(off) < 1e-12) {
+            break;
+        }
+    }
+    return part;
+}
+
 static void balance_at(const network *net, plw_instant *point, balance *b) {
     double ohms[PLW_ELECTRODES][PLW_FLOWS];
     network_volts(net, point->amps, point->volts, ohms);
     plw_currents *c = &point->law;
+    const double arriving = load_driver(net, &point->volts[PLW_AT_GRID]);
     plw_law_evaluate(net->law, point->volts[PLW_AT_PLATE], point->volts[PLW_AT_SCREEN], point->volts[PLW_AT_GRID], c);
+    /* From here on the grid's slopes are those by the open signal. */
+    c->plate_by_grid *= arriving;
+    c->screen_by_grid *= arriving;
     b->residual[PLW_OF_PLATE] = point->amps[PLW_OF_PLATE] - c->plate_amps;
     b->residual[PLW_OF_SCREEN] = point->amps[PLW_OF_SCREEN] - c->screen_amps;
     for (int flow = 0; flow < PLW_FLOWS; flow++) {
@@ -251,14 +281,30 @@ static double cut_off_drive(cycle_work *work, const plw_cycle *cycle, double by_
     return at.volts[PLW_AT_GRID] - grid_volts;
 }
 
+/* The drive at which the grid's crest just comes to zero volts.  With an unbypassed cathode the crest's current lifts
+ * the cathode, and itself follows the drive: Newton's step from the crest as it now is. */
+static double grid_current_drive(const cycle_work *work, const plw_cycle *cycle, double by_average[PLW_FLOWS]) {
+    const plw_feed *feed = work->net.feed;
+    const double *by_grid = work->by_grid[0];
+    const double grid_volts =
+        work->base_volts[PLW_AT_GRID] + cycle->drive_peak_volts - grid_fall_volts(feed, cycle->instant[0].amps);
+    const double slope = 1.0 - grid_fall_volts(feed, by_grid);
+    for (int flow = 0; flow < PLW_FLOWS; flow++) {
+        double amps_by[PLW_FLOWS]; /* of the crest, by this average, the drive held */
+        for (int of = 0; of < PLW_FLOWS; of++) {
+            amps_by[of] = work->by_averages[0][of][flow] - by_grid[of] * work->drive_by_average[flow];
+        }
+        by_average[flow] = -(work->by_average[PLW_AT_GRID][flow] - grid_fall_volts(feed, amps_by)) / slope;
+    }
+    return cycle->drive_peak_volts - grid_volts / slope;
+}
+
 /* Set the drive to the first of grid current and cut-off, by what the cycle now looks like. */
 static void set_limit_drive(cycle_work *work, plw_cycle *cycle) {
-    const plw_instant *crest = &cycle->instant[0];
-    double drive = grid_fall_volts(work->net.feed, crest->amps) - work->base_volts[PLW_AT_GRID];
+    double crest_by_average[PLW_FLOWS];
+    double drive = grid_current_drive(work, cycle, crest_by_average);
     cycle->limit = PLW_LIMIT_GRID_CURRENT;
-    for (int flow = 0; flow < PLW_FLOWS; flow++) {
-        work->drive_by_average[flow] = -work->by_average[PLW_AT_GRID][flow];
-    }
+    memcpy(work->drive_by_average, crest_by_average, sizeof crest_by_average);
     const double wanted = PLW_CUT_OFF_FRACTION * work->rest_amps;
     if (cathode_amps(&cycle->instant[PLW_CYCLE_STEPS]) < 1.5 * wanted) {
         double by_average[PLW_FLOWS];
@@ -359,20 +405,34 @@ static void take_means(cycle_work *work, const plw_cycle *cycle) {
     }
 }
 
-/* Newton's step for the averages, carried on to every instant through its slopes.
- * Ret: by how much the averages were off, in A */
-static double move_averages(cycle_work *work, plw_cycle *cycle) {
+/* Move the averages, and carry the step on to every instant through its slopes. */
+static void shift_averages(cycle_work *work, plw_cycle *cycle, const double step[PLW_FLOWS]) {
+    for (int flow = 0; flow < PLW_FLOWS; flow++) {
+        cycle->average_amps[flow] += step[flow];
+    }
+    for (int index = 0; index < PLW_CYCLE_INSTANTS; index++) {
+        double(*slopes)[PLW_FLOWS] = work->by_averages[index];
+        move_instant(&cycle->instant[index], slopes[0][0] * step[0] + slopes[0][1] * step[1],
+                     slopes[1][0] * step[0] + slopes[1][1] * step[1]);
+    }
+    set_averages(work, cycle);
+}
+
+/* By how much the averages are off the means over the cycle, in A. */
+static double averages_off(const cycle_work *work, const plw_cycle *cycle) {
+    return fabs(work->mean_amps[0] - cycle->average_amps[0]) + fabs(work->mean_amps[1] - cycle->average_amps[1]);
+}
+
+/* Newton's step for the averages. */
+static void newton_averages(const cycle_work *work, const plw_cycle *cycle, double step[PLW_FLOWS]) {
     double matrix[PLW_FLOWS][PLW_FLOWS];
     double off[PLW_FLOWS];
-    double size = 0.0;
     for (int flow = 0; flow < PLW_FLOWS; flow++) {
         off[flow] = work->mean_amps[flow] - cycle->average_amps[flow];
-        size += fabs(off[flow]);
         for (int other = 0; other < PLW_FLOWS; other++) {
             matrix[flow][other] = (flow == other ? 1.0 : 0.0) - work->mean_by_average[flow][other];
         }
     }
-    double step[PLW_FLOWS];
     solve_pair(matrix, off, step);
     /* A step longer than the average itself comes from far off: go half-way to zero, or double, at the most. */
     double part = 1.0;
@@ -383,15 +443,8 @@ static double move_averages(cycle_work *work, plw_cycle *cycle) {
         }
     }
     for (int flow = 0; flow < PLW_FLOWS; flow++) {
-        step[flow] *= part;
-        cycle->average_amps[flow] += step[flow];
+        step[flow] = fmax(step[flow] * part, -cycle->average_amps[flow]); /* no average current is negative */
     }
-    for (int index = 0; index < PLW_CYCLE_INSTANTS; index++) {
-        double(*slopes)[PLW_FLOWS] = work->by_averages[index];
-        move_instant(&cycle->instant[index], slopes[0][0] * step[0] + slopes[0][1] * step[1],
-                     slopes[1][0] * step[0] + slopes[1][1] * step[1]);
-    }
-    return size;
 }
 
 /* Follow the limit: the drive that belongs to the averages now, and the instants moved along with the difference from
@@ -401,6 +454,7 @@ static double follow_limit(cycle_work *work, plw_cycle *cycle, double foreseen_v
     if (!work->seek_limit) {
         return 0.0;
     }
+    cycle->drive_peak_volts = foreseen_volts;
     set_limit_drive(work, cycle);
     const double volts = cycle->drive_peak_volts - foreseen_volts;
     for (int index = 0; index < PLW_CYCLE_INSTANTS; index++) {
@@ -420,13 +474,48 @@ static void load_harmonics(const plw_feed *feed, plw_cycle *cycle) {
     plw_cosine_series(load_amps, cycle->harmonic_amps);
 }
 
-plw_status plw_dynamic_cycle(const plw_law *law, const plw_feed *feed, const plw_instant *rest, double drive_peak_volts,
-                             plw_cycle *cycle) {
-    cycle_work work = {.net = {.law = law, .feed = feed}, .seek_limit = isnan(drive_peak_volts)};
-    work.rest_amps = cathode_amps(rest);
+/* Newton's steps for the averages, damped where they are still far off, and with them the limit of drive. */
+static plw_status settle_averages(cycle_work *work, plw_cycle *cycle) {
+    const double far_amps = FAR_PART * work->rest_amps;
+    double last[PLW_FLOWS] = {0.0}; /* averages before the last step, and by how much they were off */
+    double last_off = HUGE_VAL;
+    double step[PLW_FLOWS];
+    plw_status status = PLW_OK;
+    for (int round = 0; status == PLW_OK && round < SWEEPS_MOST; round++) {
+        take_means(work, cycle);
+        const double amps_off = averages_off(work, cycle);
+        if (round > FREE_SWEEPS && amps_off >= last_off && amps_off > far_amps) {
+            /* Still far off, and the last step made it worse: go half of it back. */
+            for (int flow = 0; flow < PLW_FLOWS; flow++) {
+                step[flow] = 0.5 * (last[flow] - cycle->average_amps[flow]);
+            }
+        } else {
+            last_off = amps_off;
+            memcpy(last, cycle->average_amps, sizeof last);
+            newton_averages(work, cycle, step);
+        }
+        double foreseen = cycle->drive_peak_volts;
+        for (int flow = 0; flow < PLW_FLOWS; flow++) {
+            foreseen += work->drive_by_average[flow] * step[flow];
+        }
+        shift_averages(work, cycle, step);
+        const double volts_off = follow_limit(work, cycle, foreseen);
+        if (round > 0 && amps_off <= CYCLE_TOLERANCE_AMPS && volts_off <= 1e-7 &&
+            work->worst_residual <= CYCLE_TOLERANCE_AMPS) {
+            return PLW_OK;
+        }
+        status = sweep(work, cycle, CYCLE_TOLERANCE_AMPS);
+    }
+    return status == PLW_OK ? PLW_E_NO_CONVERGENCE : status;
+}
+
+/* A cycle from the point of rest outward, at a drive or, where that is NaN, at its limit. */
+static plw_status cycle_from_rest(const network *net, const plw_instant *rest, double drive_peak_volts,
+                                  plw_cycle *cycle) {
+    cycle_work work = {.net = *net, .seek_limit = isnan(drive_peak_volts), .rest_amps = cathode_amps(rest)};
     memcpy(cycle->average_amps, rest->amps, sizeof cycle->average_amps);
     cycle->limit = PLW_LIMIT_DRIVE;
-    cycle->drive_peak_volts = drive_peak_volts;
+    cycle->drive_peak_volts = work.seek_limit ? 0.0 : drive_peak_volts;
     set_averages(&work, cycle);
     if (work.seek_limit) {
         for (int index = 0; index < PLW_CYCLE_INSTANTS; index++) {
@@ -434,23 +523,61 @@ plw_status plw_dynamic_cycle(const plw_law *law, const plw_feed *feed, const plw
         }
         set_limit_drive(&work, cycle);
     }
-    plw_status status = march(&work, cycle, rest);
-    for (int round = 0; status == PLW_OK && round < SWEEPS_MOST; round++) {
-        take_means(&work, cycle);
-        const double before[PLW_FLOWS] = {cycle->average_amps[0], cycle->average_amps[1]};
-        const double amps_off = move_averages(&work, cycle);
-        double foreseen = cycle->drive_peak_volts;
-        for (int flow = 0; flow < PLW_FLOWS; flow++) {
-            foreseen += work.drive_by_average[flow] * (cycle->average_amps[flow] - before[flow]);
-        }
-        set_averages(&work, cycle);
-        const double volts_off = follow_limit(&work, cycle, foreseen);
-        if (round > 0 && amps_off <= CYCLE_TOLERANCE_AMPS && volts_off <= 1e-7 &&
-            work.worst_residual <= CYCLE_TOLERANCE_AMPS) {
-            load_harmonics(feed, cycle);
-            return PLW_OK;
-        }
-        status = sweep(&work, cycle, CYCLE_TOLERANCE_AMPS);
+    const plw_status status = march(&work, cycle, rest);
+    return status == PLW_OK ? settle_averages(&work, cycle) : status;
+}
+
+/* What the drive of a solved cycle oversteps; PLW_LIMIT_DRIVE: nothing. */
+static plw_limit overstepped(const plw_cycle *cycle, const plw_instant *rest) {
+    if (cycle->instant[0].volts[PLW_AT_GRID] > 0.0) {
+        return PLW_LIMIT_GRID_CURRENT;
     }
-    return status == PLW_OK ? PLW_E_NO_CONVERGENCE : status;
+    const bool cut_off = cathode_amps(&cycle->instant[PLW_CYCLE_STEPS]) < PLW_CUT_OFF_FRACTION * cathode_amps(rest);
+    return cut_off ? PLW_LIMIT_CUT_OFF : PLW_LIMIT_DRIVE;
+}
+
+/* Where average current and limit of drive chase each other (fixed bias, deep class AB): cycles at given drives,
+ * halving between one within the limit and one beyond. */
+static plw_status bracket_limit(const network *net, const plw_instant *rest, plw_cycle *cycle) {
+    double within = 0.0;
+    double beyond = fmax(-rest->volts[PLW_AT_GRID], 1e-3);
+    plw_limit limit = PLW_LIMIT_DRIVE;
+    plw_status status = PLW_OK;
+    for (int step = 0; status == PLW_OK && step < BISECTIONS && limit == PLW_LIMIT_DRIVE; step++) {
+        status = cycle_from_rest(net, rest, beyond, cycle);
+        limit = status == PLW_OK ? overstepped(cycle, rest) : PLW_LIMIT_DRIVE;
+        if (limit == PLW_LIMIT_DRIVE) {
+            within = beyond;
+            beyond *= 1.5;
+        }
+    }
+    for (int step = 0; status == PLW_OK && step < BISECTIONS && beyond - within > 1e-13 * beyond; step++) {
+        const double middle = 0.5 * (within + beyond);
+        status = cycle_from_rest(net, rest, middle, cycle);
+        const plw_limit at_middle = status == PLW_OK ? overstepped(cycle, rest) : PLW_LIMIT_DRIVE;
+        if (at_middle == PLW_LIMIT_DRIVE) {
+            within = middle;
+        } else {
+            beyond = middle;
+            limit = at_middle;
+        }
+    }
+    if (status == PLW_OK) {
+        status = cycle_from_rest(net, rest, within, cycle);
+        cycle->limit = limit;
+    }
+    return status;
+}
+
+plw_status plw_dynamic_cycle(const plw_law *law, const plw_feed *feed, const plw_instant *rest, double drive_peak_volts,
+                             plw_cycle *cycle) {
+    const network net = {.law = law, .feed = feed};
+    plw_status status = cycle_from_rest(&net, rest, drive_peak_volts, cycle);
+    if (status == PLW_E_NO_CONVERGENCE && isnan(drive_peak_volts)) {
+        status = bracket_limit(&net, rest, cycle);
+    }
+    if (status == PLW_OK) {
+        load_harmonics(feed, cycle);
+    }
+    return status;
 }
