@@ -474,6 +474,16 @@ static void load_harmonics(const plw_feed *feed, plw_cycle *cycle) {
     plw_cosine_series(load_amps, cycle->harmonic_amps);
 }
 
+/* The voltages that belong to the last step's averages, drive and currents. */
+static void refresh_volts(cycle_work *work, plw_cycle *cycle) {
+    for (int index = 0; index < PLW_CYCLE_INSTANTS; index++) {
+        double ohms[PLW_ELECTRODES][PLW_FLOWS];
+        memcpy(work->net.steady_volts, work->base_volts, sizeof work->base_volts);
+        work->net.steady_volts[PLW_AT_GRID] += cycle->drive_peak_volts * phase_cosine(index);
+        network_volts(&work->net, cycle->instant[index].amps, cycle->instant[index].volts, ohms);
+    }
+}
+
 /* Newton's steps for the averages, damped where they are still far off, and with them the limit of drive. */
 static plw_status settle_averages(cycle_work *work, plw_cycle *cycle) {
     const double far_amps = FAR_PART * work->rest_amps;
@@ -502,6 +512,7 @@ static plw_status settle_averages(cycle_work *work, plw_cycle *cycle) {
         const double volts_off = follow_limit(work, cycle, foreseen);
         if (round > 0 && amps_off <= CYCLE_TOLERANCE_AMPS && volts_off <= 1e-7 &&
             work->worst_residual <= CYCLE_TOLERANCE_AMPS) {
+            refresh_volts(work, cycle);
             return PLW_OK;
         }
         status = sweep(work, cycle, CYCLE_TOLERANCE_AMPS);
