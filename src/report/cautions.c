@@ -116,9 +116,9 @@ static void of_screen(list *l, const plw_answer *answer) {
         return;
     }
     const double driven = option->signal.screen_watts;
-    char idle_text[TEXT_SIZE];
-    char driven_text[TEXT_SIZE];
     if (ratings != NULL) {
+        char idle_text[TEXT_SIZE];
+        char driven_text[TEXT_SIZE];
         const double limit =
             isfinite(ratings->screen_watts_full_drive) ? ratings->screen_watts_full_drive : ratings->screen_watts;
         if (driven > SCREEN_NEAR * limit && driven > option->quiescent.screen_watts) {
@@ -134,7 +134,6 @@ static void of_screen(list *l, const plw_answer *answer) {
 
 static void of_bias(list *l, const plw_answer *answer) {
     const plw_stage *stage = answer->stage;
-    char value[TEXT_SIZE];
     if (isfinite(stage->fixed_bias_volts)) {
         say(l, "With fixed bias nothing but the bias supply holds the current: let it come up first, watch the cathode "
                "current, and fuse the cathode.");
@@ -145,6 +144,7 @@ static void of_bias(list *l, const plw_answer *answer) {
             stage->parallel);
     }
     if (isfinite(stage->cathode_resistor_ohms) && !stage->unbypassed) {
+        char value[TEXT_SIZE];
         say(l, "Rate the cathode bypass capacitor for twice the bias, %s at least.",
             written(2.0 * answer->option->quiescent.cathode_volts, PLW_UNIT_VOLT, value));
     }
@@ -225,9 +225,9 @@ static void of_model(list *l, const plw_answer *answer) {
 static void of_voltages(list *l, const plw_answer *answer) {
     const plw_supply *supply = &answer->stage->supply;
     const plw_signal *signal = &answer->option->signal;
-    char off_load[TEXT_SIZE];
     char high[TEXT_SIZE];
     if (supply->kind != PLW_SUPPLY_STIFF && isfinite(supply->volts)) {
+        char off_load[TEXT_SIZE];
         say(l,
             "Rate capacitors and windings for the unloaded supply at high mains: %s off load, %s with the mains 10 %% "
             "up. With cold tubes it stands there at every switching on.",

@@ -200,10 +200,10 @@ static void put_marks(FILE *file, const sheet *s, int column, bool in_key) {
 
 static void put_title(FILE *file, const sheet *s) {
     char text[320];
-    char screen[48];
     if (s->family.tap > 0.0) {
         snprintf(text, sizeof text, "%.200s, %s", s->tube->type, plw_connection_name(s->connection));
     } else {
+        char screen[48];
         snprintf(text, sizeof text, "%.200s, %s, %s on the screen", s->tube->type, plw_connection_name(s->connection),
                  plw_script_value(s->family.screen_volts, PLW_UNIT_VOLT, 4, screen, sizeof screen));
     }

@@ -102,7 +102,8 @@ static void scales_end_on_round_numbers(void **state) {
     assert_near(plw_round_step(0.0201), 0.025, 1e-12, "1, 2, 2.5, 5");
     assert_near(plw_round_step(50), 50, 1e-12, "a step itself");
     assert_near(plw_round_step(5.3e-7), 1e-6, 1e-18, "the next decade");
-    for (double most = 0.037; most < 5e6; most *= 1.37) {
+    for (int i = 0; i < 60; i++) {
+        const double most = 0.037 * pow(1.37, i);
         const plw_scale scale = plw_scale_for(-0.3 * most, most, 6);
         assert_true(scale.most >= most * (1 - 1e-9) && scale.most < most + scale.step);
         assert_true(scale.least <= -0.3 * most * (1 - 1e-9) && scale.least > -0.3 * most - scale.step);
@@ -329,7 +330,7 @@ static void printed_rows_are_marked_with_their_misses(void **state) {
     static solved_stage s;
     stage_begin(&s, &made_up_pentode);
     char *script = family_of(&s.tube, PLW_CONNECTION_PENTODE, PLW_PLOT_SVG);
-    double marks[4][2];
+    double marks[4][2] = {{0}};
     assert_int_equal(block_points(script, "printed", marks, 4), 1);
     assert_near_relative(marks[0][0], 247.3, WRITTEN, "as printed");
     assert_near_relative(marks[0][1], 49.1, WRITTEN, "as printed");
