@@ -25,8 +25,9 @@ typedef struct {
     void (*average_volts)(const void *context, const double average_amps[PLW_FLOWS], double volts[PLW_ELECTRODES],
                           double by_average[PLW_ELECTRODES][PLW_FLOWS]);
     const void *context;
-    double load_ohms; /* across the whole primary; a tap of the screen carries its share */
-    double tap;       /* 0: screen not on the primary; 1: triode connection; between: ultralinear */
+    double load_ohms;   /* across the whole primary; a tap of the screen carries its share */
+    double driver_ohms; /* resistance of what drives the grid: grid current makes the crest soft; 0: none */
+    double tap;         /* 0: screen not on the primary; 1: triode connection; between: ultralinear */
 } plw_feed;
 
 /* A solved instant. */
