@@ -77,7 +77,7 @@ static void put_examples(FILE *out) {
     for (size_t i = 0; cli_command_at(i) != NULL; i++) {
         const cli_command *command = cli_command_at(i);
         for (size_t k = 0; k < CLI_EXAMPLES_MOST && command->examples[k].command != NULL; k++) {
-            fputs(".PP\n", out);
+            fputs(i + k == 0 ? "" : ".PP\n", out);
             put_text(out, command->examples[k].what);
             fputs(":\n.PP\n.nf\n.RS 4\n", out);
             put_line(out, command->examples[k].command);
@@ -124,7 +124,7 @@ static void put_ending(FILE *out) {
 void cli_manual(FILE *out) {
     fputs(
         ".\\\" SPDX-License-Identifier: GPL-3.0-or-later\n"
-        ".TH PLATEWRIGHT 1 \"\" \"platewright " PLW_VERSION "\" \"User Commands\"\n"
+        ".TH PLATEWRIGHT 1 2026-12-01 \"platewright " PLW_VERSION "\" \"User Commands\"\n"
         ".SH NAME\nplatewright \\- operating point of a single\\-ended tube output stage\n"
         ".SH SYNOPSIS\n\\fBplatewright\\fR \\fICOMMAND\\fR [\\fISTAGE.xml\\fR] [\\fB\\-\\-option\\fR "
         "\\fIvalue\\fR]...\n"

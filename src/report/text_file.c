@@ -78,7 +78,9 @@ plw_status plw_text_write(const char *path, const char *text, plw_error *error) 
     if (reason != 0) {
         return refuse(path, reason, error);
     }
-    char *target = exists ? realpath(path, NULL) : NULL; /* a link stays a link */
+    struct stat link = {0};
+    const bool is_link = lstat(path, &link) == 0 && S_ISLNK(link.st_mode);
+    char *target = exists && is_link ? realpath(path, NULL) : NULL; /* a link stays a link */
     const plw_status written = plw_replace_file(target == NULL ? path : target, text, strlen(text), error);
     free(target);
     return written;
