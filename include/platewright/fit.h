@@ -25,7 +25,8 @@ typedef struct {
 /* Predict a row at its printed voltages, bias, drive and load.
  * In:   a valid law; the row's plate volts, and grid volts or cathode resistor
  * Ret:  PLW_OK; PLW_E_USAGE when the row does not give a bias; PLW_E_NO_CONVERGENCE
- * A row with a cathode resistor is driven with the bias that its own mean current makes. */
+ * A row that prints a cathode resistor and no grid volts is driven with the bias that its own mean current makes; one
+ * that prints both is taken at the grid volts. */
 PLW_API plw_status plw_predict_row(const plw_law *law, const plw_row *row, plw_prediction *prediction,
                                    plw_error *error) PLW_MUST_USE;
 

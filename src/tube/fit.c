@@ -21,18 +21,18 @@ typedef struct {
     size_t coefficients;
 } problem;
 
-static plw_law law_of(const problem *p, const gsl_vector *logarithms) {
-    plw_law law = {.kind = p->kind};
+static plw_law law_of(const problem *p, const gsl_vector *place) {
+    double coordinates[PLW_LAW_COEFFICIENTS_MOST];
     for (size_t index = 0; index < p->coefficients; index++) {
-        law.coefficient[index] = exp(gsl_vector_get(logarithms, index));
+        coordinates[index] = gsl_vector_get(place, index);
     }
-    return law;
+    return plw_law_at_coordinates(p->kind, coordinates);
 }
 
 /* Residuals: the observations first, then what is known beforehand of each coefficient. */
-static int residuals(const gsl_vector *logarithms, void *context, gsl_vector *out) {
+static int residuals(const gsl_vector *place, void *context, gsl_vector *out) {
     const problem *p = context;
-    const plw_law law = law_of(p, logarithms);
+    const plw_law law = law_of(p, place);
     double predicted[PLW_RESIDUALS_MOST];
     plw_observations_predict(p->observations, &law, predicted);
     const size_t count = p->observations->count;
@@ -40,16 +40,16 @@ static int residuals(const gsl_vector *logarithms, void *context, gsl_vector *ou
         gsl_vector_set(out, index, plw_observation_residual(&p->observations->observation[index], predicted[index]));
     }
     for (size_t index = 0; index < p->coefficients; index++) {
-        const double expected = p->prior->logarithm[index];
-        gsl_vector_set(out, count + index, (gsl_vector_get(logarithms, index) - expected) / p->prior->deviation[index]);
+        const double expected = p->prior->expected[index];
+        gsl_vector_set(out, count + index, (gsl_vector_get(place, index) - expected) / p->prior->deviation[index]);
     }
     return GSL_SUCCESS;
 }
 
 /* One run of Levenberg-Marquardt.
- * Out:  on success sum of squares, coefficients and (wanted) their relative standard errors */
+ * Out:  on success sum of squares, coefficients and (wanted) the standard errors of their coordinates */
 static bool run(problem *p, gsl_multifit_nlinear_workspace *work, gsl_vector *start, double *sum_of_squares,
-                plw_law *law, double *relative_error) {
+                plw_law *law, double *coordinate_error) {
     gsl_multifit_nlinear_fdf functions = {
         .f = residuals,
         .n = p->observations->count + p->coefficients,
@@ -70,14 +70,14 @@ static bool run(problem *p, gsl_multifit_nlinear_workspace *work, gsl_vector *st
         return false;
     }
     *law = law_of(p, gsl_multifit_nlinear_position(work));
-    if (relative_error != NULL) {
+    if (coordinate_error != NULL) {
         gsl_matrix *covariance = gsl_matrix_alloc(p->coefficients, p->coefficients);
         if (covariance == NULL) {
             return false;
         }
         gsl_multifit_nlinear_covar(gsl_multifit_nlinear_jac(work), 0.0, covariance);
         for (size_t index = 0; index < p->coefficients; index++) {
-            relative_error[index] = sqrt(gsl_matrix_get(covariance, index, index));
+            coordinate_error[index] = sqrt(gsl_matrix_get(covariance, index, index));
         }
         gsl_matrix_free(covariance);
     }
@@ -103,7 +103,7 @@ static void scale_start(const problem *p, plw_law *start) {
 }
 
 /* Fit from the law near by, or from every start, and keep the best. */
-static plw_status best_fit(problem *p, const plw_law *near, plw_law *law, double *relative_error,
+static plw_status best_fit(problem *p, const plw_law *near, plw_law *law, double *coordinate_error,
                            double *sum_of_squares, plw_error *error) {
     gsl_multifit_nlinear_parameters parameters = gsl_multifit_nlinear_default_parameters();
     parameters.h_df = 1e-5; /* of a logarithm: larger than the solver's own noise, small against its curvature */
@@ -123,18 +123,20 @@ static plw_status best_fit(problem *p, const plw_law *near, plw_law *law, double
         if (near == NULL) {
             scale_start(p, &trial);
         }
+        double coordinates[PLW_LAW_COEFFICIENTS_MOST];
+        plw_law_coordinates(&trial, coordinates);
         for (size_t index = 0; index < p->coefficients; index++) {
-            gsl_vector_set(start, index, log(trial.coefficient[index]));
+            gsl_vector_set(start, index, coordinates[index]);
         }
         double squares;
         double errors[PLW_LAW_COEFFICIENTS_MOST];
-        if (run(p, work, start, &squares, &trial, relative_error != NULL ? errors : NULL) &&
+        if (run(p, work, start, &squares, &trial, coordinate_error != NULL ? errors : NULL) &&
             (!found || squares < *sum_of_squares)) {
             found = true;
             *law = trial;
             *sum_of_squares = squares;
-            if (relative_error != NULL) {
-                memcpy(relative_error, errors, sizeof errors);
+            if (coordinate_error != NULL) {
+                memcpy(coordinate_error, errors, sizeof errors);
             }
         }
     }
@@ -150,11 +152,11 @@ static plw_status fit_observations(const plw_observations *observations, const p
     problem p = {observations, &prior, kind, plw_law_coefficient_count(kind)};
     const plw_status status = best_fit(&p, near, law, relative_error, sum_of_squares, error);
     if (status == PLW_OK && relative_error != NULL) {
-        /* Where the rows hardly narrow what was expected beforehand, they do not determine the coefficient. */
         for (size_t index = 0; index < p.coefficients; index++) {
-            if (relative_error[index] > 0.8 * prior.deviation[index]) {
-                relative_error[index] = (double)NAN;
-            }
+            /* Where the rows hardly narrow what was expected beforehand, they do not determine the coefficient. */
+            const bool determined = relative_error[index] <= 0.8 * prior.deviation[index];
+            relative_error[index] =
+                determined ? plw_coordinate_error_relative(law, index, relative_error[index]) : (double)NAN;
         }
     }
     return status;

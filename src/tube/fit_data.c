@@ -9,18 +9,19 @@
 
 /* Standard deviations by which printed figures are believed.  Ratios as parts of one, distortion in percentage points.
  * Common practice, no source: makers' tables round to two or three digits, and editions differ by about this much. */
-#define PLATE_CURRENT_DEVIATION 0.03
-#define SCREEN_CURRENT_DEVIATION 0.08
+#define PLATE_CURRENT_DEVIATION 0.025
+#define SCREEN_CURRENT_DEVIATION 0.06
 #define GM_DEVIATION 0.05
 #define PLATE_RESISTANCE_DEVIATION_SCREENED 0.20
 #define PLATE_RESISTANCE_DEVIATION_TRIODE 0.05
 #define MU_DEVIATION 0.05
 #define INNER_MU_DEVIATION 0.10
 #define PLATE_CURRENT_DRIVEN_DEVIATION 0.04
-#define SCREEN_CURRENT_DRIVEN_DEVIATION 0.20
-#define POWER_DEVIATION 0.06
-#define DISTORTION_DEVIATION_POINTS 1.0
-#define HARMONIC_DEVIATION_POINTS 1.0
+#define SCREEN_CURRENT_DRIVEN_DEVIATION 0.18
+#define POWER_DEVIATION 0.05
+#define DISTORTION_DEVIATION_POINTS 0.8
+#define SECOND_DEVIATION_POINTS 0.5
+#define THIRD_DEVIATION_POINTS 1.0
 #define CUT_OFF_DEVIATION 0.7
 #define CUT_OFF_FLOOR_AMPS 1e-5
 #define CURVE_DEVIATION 0.05         /* of the current */
@@ -105,8 +106,8 @@ static void add_row(plw_observations *all, size_t index) {
                   SCREEN_CURRENT_DRIVEN_DEVIATION);
     }
     add_difference(all, true, index, PLW_SEEN_DISTORTION, r->thd_percent, DISTORTION_DEVIATION_POINTS);
-    add_difference(all, true, index, PLW_SEEN_SECOND, r->h2_percent, HARMONIC_DEVIATION_POINTS);
-    add_difference(all, true, index, PLW_SEEN_THIRD, r->h3_percent, HARMONIC_DEVIATION_POINTS);
+    add_difference(all, true, index, PLW_SEEN_SECOND, r->h2_percent, SECOND_DEVIATION_POINTS);
+    add_difference(all, true, index, PLW_SEEN_THIRD, r->h3_percent, THIRD_DEVIATION_POINTS);
 }
 
 static void add_point(plw_observations *all, size_t index, double largest_curve_amps) {

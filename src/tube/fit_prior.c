@@ -4,37 +4,76 @@
 
 #include <math.h>
 
+enum { MU, EXPONENT, KG1, KP };
+enum { TRIODE_CONTACT = 5, PENTODE_CAPTURE = 7, PENTODE_CONTACT = 8 };
+#define CAPTURE_MOST 0.5 /* as the law has it */
+
+static size_t contact_index(plw_law_kind kind) {
+    return kind == PLW_LAW_TRIODE ? TRIODE_CONTACT : PENTODE_CONTACT;
+}
+
+void plw_law_coordinates(const plw_law *law, double coordinates[PLW_LAW_COEFFICIENTS_MOST]) {
+    for (size_t index = 0; index < plw_law_coefficient_count(law->kind); index++) {
+        const double value = law->coefficient[index];
+        coordinates[index] = index == contact_index(law->kind) ? value : log(value);
+    }
+    coordinates[KP] -= coordinates[MU];
+}
+
+plw_law plw_law_at_coordinates(plw_law_kind kind, const double coordinates[PLW_LAW_COEFFICIENTS_MOST]) {
+    plw_law law = {.kind = kind};
+    for (size_t index = 0; index < plw_law_coefficient_count(kind); index++) {
+        law.coefficient[index] = index == contact_index(kind) ? coordinates[index] : exp(coordinates[index]);
+    }
+    law.coefficient[KP] *= law.coefficient[MU];
+    if (kind == PLW_LAW_PENTODE && law.coefficient[PENTODE_CAPTURE] > CAPTURE_MOST) {
+        law.coefficient[PENTODE_CAPTURE] = CAPTURE_MOST;
+    }
+    return law;
+}
+
+double plw_coordinate_error_relative(const plw_law *law, size_t index, double coordinate_error) {
+    if (index == contact_index(law->kind)) {
+        const double volts = fabs(law->coefficient[index]);
+        return volts > 0.0 ? coordinate_error / volts : (double)NAN;
+    }
+    return coordinate_error;
+}
+
 typedef struct {
-    double expected, deviation; /* value; standard deviation of its logarithm */
+    double expected, deviation; /* value (of kp: kp/mu); standard deviation of its coordinate */
 } expectation;
 
-/* Medians and spreads over the catalogue's own fits, rounded; the perveance and mu of a type are left open. */
-static const expectation triode[] = {
-    {8.0, 1.5},    /* mu */
-    {1.42, 0.08},  /* exponent */
-    {1500.0, 4.0}, /* kg1 */
-    {60.0, 0.8},   /* kp */
-    {300.0, 0.8},  /* kvb */
-    {0.3, 0.7},    /* contact volts */
-};
-static const expectation pentode[] = {
-    {10.0, 1.0},  /* mu */
-    {1.40, 0.06}, /* exponent */
-    {950.0, 3.0}, /* kg1 */
-    {50.0, 0.6},  /* kp */
-    {0.052, 0.6}, /* penetration */
-    {1.5, 0.4},   /* knee */
-    {2.28, 0.2},  /* knee sharpness */
-    {10.0, 1.0},  /* division */
-    {0.65, 0.4},  /* capture */
-};
+/* Centres and spreads over the catalogue's own fits, rounded; mu and the perveance of a type are left open.  The
+ * contact potential of a filament tube takes up half the filament's volts as well. */
+static const expectation filament_triode[] = {{8.0, 1.5}, {1.5, 0.03},  {2000.0, 4.0},
+                                              {8.0, 0.6}, {300.0, 0.5}, {0.0, 2.0}};
+static const expectation heater_triode[] = {{20.0, 1.5}, {1.5, 0.03},  {1500.0, 4.0},
+                                            {6.5, 0.6},  {300.0, 0.5}, {0.6, 0.3}};
+static const expectation beam[] = {{10.0, 1.0}, {1.5, 0.02}, {1000.0, 3.0}, {4.7, 0.35}, {0.045, 0.5},
+                                   {0.85, 0.4}, {16.0, 0.6}, {0.35, 0.4},   {0.65, 0.2}};
+static const expectation pentode[] = {{10.0, 1.0}, {1.5, 0.02}, {1000.0, 3.0}, {4.7, 0.35}, {0.025, 0.9},
+                                      {1.3, 0.4},  {6.5, 0.5},  {0.37, 0.4},   {0.65, 0.2}};
+
+static const expectation *expectations_for(const plw_tube *tube) {
+    switch (tube->kind) {
+    case PLW_KIND_BEAM:
+        return beam;
+    case PLW_KIND_PENTODE:
+        return pentode;
+    case PLW_KIND_TRIODE:
+    case PLW_KIND_RECTIFIER:
+        break;
+    }
+    return tube->directly_heated ? filament_triode : heater_triode;
+}
 
 plw_prior plw_prior_for(const plw_observations *observations) {
-    const expectation *table = observations->screened ? pentode : triode;
+    const expectation *table = expectations_for(observations->tube);
     const plw_law_kind kind = observations->screened ? PLW_LAW_PENTODE : PLW_LAW_TRIODE;
     plw_prior prior = {{0}, {0}};
     for (size_t index = 0; index < plw_law_coefficient_count(kind); index++) {
-        prior.logarithm[index] = log(table[index].expected);
+        prior.expected[index] = index == contact_index(kind) ? table[index].expected : log(table[index].expected);
         prior.deviation[index] = table[index].deviation;
     }
     return prior;
@@ -61,14 +100,11 @@ static double mu_from_rows(const plw_observations *observations, double otherwis
 }
 
 plw_law plw_prior_start(const plw_observations *observations, const plw_prior *prior, size_t attempt) {
-    static const double mu_factor[PLW_STARTS] = {1.0, 0.5, 2.0, 1.0};
-    plw_law law = {.kind = observations->screened ? PLW_LAW_PENTODE : PLW_LAW_TRIODE};
-    for (size_t index = 0; index < plw_law_coefficient_count(law.kind); index++) {
-        law.coefficient[index] = exp(prior->logarithm[index]);
-    }
-    law.coefficient[0] = mu_from_rows(observations, law.coefficient[0]) * mu_factor[attempt % PLW_STARTS];
-    if (attempt == 3) {
-        law.coefficient[1] = 1.5;
-    }
+    static const double mu_factor[PLW_STARTS] = {1.0, 0.7, 1.0};
+    static const double steepness_factor[PLW_STARTS] = {1.0, 1.0, 0.5};
+    plw_law law = plw_law_at_coordinates(observations->screened ? PLW_LAW_PENTODE : PLW_LAW_TRIODE, prior->expected);
+    const double steepness = law.coefficient[KP] / law.coefficient[MU] * steepness_factor[attempt % PLW_STARTS];
+    law.coefficient[MU] = mu_from_rows(observations, law.coefficient[MU]) * mu_factor[attempt % PLW_STARTS];
+    law.coefficient[KP] = steepness * law.coefficient[MU];
     return law;
 }

@@ -58,7 +58,8 @@ static row_circuit row_conditions(const plw_law *law, const plw_row *row) {
         .grid_volts = row->grid_volts,
         .load_ohms = isfinite(row->load_ohms) ? row->load_ohms : 0.0,
         .tap = triode_connected ? 1.0 : 0.0,
-        .cathode_ohms = isfinite(row->cathode_resistor_ohms) ? row->cathode_resistor_ohms : 0.0,
+        /* A row that prints both was taken at the grid volts: its full-drive currents agree with that alone. */
+        .cathode_ohms = isnan(row->grid_volts) ? row->cathode_resistor_ohms : 0.0,
         .rest_amps = UNKNOWN,
         .bias_from_current = isnan(row->grid_volts),
     };
