@@ -1,17 +1,16 @@
-/* The model against the printed rows of confidence high: currents, small signal, power, distortion at the printed bias,
- * drive and load.  The source of each row stands in the tube's file and is printed with a failure.
+/* The model against the printed rows of confidence high and medium, every type: currents, small signal, power,
+ * distortion at the printed bias, drive and load.  The source of each row stands in the tube's file and is printed with
+ * a failure.
  *
  * Tolerances, for a row that entered the fit: plate current 5 %, screen 20 %, gm 8 %, plate resistance 30 % (screened
  * tubes; makers' figures of one type differ by as much between editions) or 10 % (triodes), power 12 %, distortion 2.5
  * percentage points: what makers' rounding and the differences between their editions leave.  A figure that misses is
  * listed below with the reason; the list is exact: an exception that is no longer needed fails too.
  * SPDX-License-Identifier: GPL-3.0-or-later */
-#include "rows.h"
-
-#include <stdio.h>
 #include <string.h>
 
-static const char *const types[] = {"6V6GT", "EL84", "6L6GC", "6L6", "EL34", "6F6G", "6K6GT", "2A3", "300B", "45"};
+#include "platewright/fit.h"
+#include "rows.h"
 
 typedef struct {
     const char *type;
@@ -21,8 +20,23 @@ typedef struct {
     bool met;
 } exception;
 
+#define ROUNDED_BIAS "bias printed to whole volts: half a volt is worth 2 to 4 % of so small a current"
+#define TWO_845                                                                                                        \
+    "52 to 80 mA over 14 V of bias make 2.0 mA/V; the sheets print 3.1 at both: early and late editions mixed"
+
 static exception exceptions[] = {
-    {"", 0, "", "", false},
+    {"300B", 5, "plate current", ROUNDED_BIAS, false},
+    {"300B", 7, "plate current", ROUNDED_BIAS, false},
+    {"300B", 8, "plate current", ROUNDED_BIAS, false},
+    {"300B", 26, "plate current", ROUNDED_BIAS, false},
+    {"845", 2, "gm", TWO_845, false},
+    {"845", 2, "plate resistance", TWO_845, false},
+    {"845", 3, "plate current", TWO_845, false},
+    {"5687", 1, "plate current", "gm falls faster with current over its three rows than any law of the 3/2 power",
+     false},
+    {"EL34", 2, "plate current", "15.5 V at 250 V and 25.9 V at 375 V, both 70 mA, make mu 12; the sheet prints 10.5",
+     false},
+    {"KT66", 0, "gm", "editions print 6300 and 7000 micromhos for one point; both are fitted", false},
 };
 
 static bool excepted(const char *type, size_t row, const char *figure) {
@@ -77,48 +91,61 @@ static void check_row(context *c) {
     }
     plw_signal s;
     assert_int_equal(plw_signal_solve(&stage, &q, &s, &error), PLW_OK);
+    if (row->undistorted) { /* printed for less than full drive: print times 1.25 is an upper bound */
+        if (!(s.power_watts <= 1.25 * row->power_watts)) {
+            compare(c, "power", s.power_watts, row->power_watts, 0.25 * row->power_watts);
+        }
+        return;
+    }
     compare(c, "power", s.power_watts, row->power_watts, 0.12 * row->power_watts);
     compare(c, "distortion", s.thd_percent, row->thd_percent, 2.5);
     compare(c, "2nd harmonic", fabs(s.harmonic_percent[2]), row->h2_percent, 2.5);
     compare(c, "3rd harmonic", fabs(s.harmonic_percent[3]), row->h3_percent, 2.5);
 }
 
-static void test_high_confidence_rows(void **state) {
+static int report_unmet_exceptions(void) {
+    int failures = 0;
+    for (size_t index = 0; index < sizeof exceptions / sizeof exceptions[0]; index++) {
+        if (!exceptions[index].met) {
+            print_error("%s row %zu %s: no longer an exception\n", exceptions[index].type, exceptions[index].row,
+                        exceptions[index].figure);
+            failures++;
+        }
+    }
+    return failures;
+}
+
+static void test_fitted_rows(void **state) {
     (void)state;
     plw_catalogue *catalogue = open_tubedata();
+    const plw_tube *const *tubes;
+    size_t count;
+    plw_error error = {0};
+    assert_int_equal(plw_catalogue_all(catalogue, &tubes, &count, &error), PLW_OK);
     int rows = 0;
     int failures = 0;
-    for (size_t index = 0; index < sizeof types / sizeof types[0]; index++) {
-        const plw_tube *tube;
-        int variant;
-        plw_error error = {0};
-        if (plw_catalogue_find(catalogue, types[index], &tube, &variant, &error) != PLW_OK) {
-            fail_msg("%s", error.text);
+    for (size_t index = 0; index < count; index++) {
+        if (tubes[index]->kind == PLW_KIND_RECTIFIER) {
+            continue;
         }
-        assert_true(tube->has_model);
-        for (size_t row = 0; row < tube->rows_count; row++) {
-            if (tube->rows[row].provenance.confidence == PLW_CONFIDENCE_HIGH && isfinite(tube->rows[row].plate_amps)) {
-                context c = {tube, row, 0};
+        assert_true(tubes[index]->has_model);
+        for (size_t row = 0; row < tubes[index]->rows_count; row++) {
+            if (plw_row_is_fitted(&tubes[index]->rows[row])) {
+                context c = {tubes[index], row, 0};
                 check_row(&c);
                 failures += c.failures;
                 rows++;
             }
         }
     }
-    for (size_t index = 0; index < sizeof exceptions / sizeof exceptions[0]; index++) {
-        if (exceptions[index].type[0] != '\0' && !exceptions[index].met) {
-            print_error("%s row %zu %s: no longer an exception\n", exceptions[index].type, exceptions[index].row,
-                        exceptions[index].figure);
-            failures++;
-        }
-    }
+    failures += report_unmet_exceptions();
     plw_catalogue_free(catalogue);
     print_message("%d rows compared\n", rows);
-    assert_true(rows >= 30);
+    assert_true(rows >= 120);
     assert_int_equal(failures, 0);
 }
 
 int main(void) {
-    const struct CMUnitTest tests[] = {cmocka_unit_test(test_high_confidence_rows)};
+    const struct CMUnitTest tests[] = {cmocka_unit_test(test_fitted_rows)};
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
