@@ -84,16 +84,16 @@ enum { TEST_BEAM_SMALL, TEST_PENTODE_STEEP, TEST_BEAM_LARGE, TEST_PENTODE_LARGE,
 
 static inline plw_law pentode_law(int which) {
     static const double table[TEST_PENTODES][9] = {
-        /* mu, exponent, kg1, kp, penetration, knee, sharpness, division, capture */
-        {9.5, 1.4, 1620, 42, 0.010, 1.5, 2.2, 10, 0.8},
-        {18.7, 1.35, 690, 95, 0.006, 1.9, 1.8, 8.7, 0.9},
-        {8.7, 1.38, 1130, 45, 0.012, 1.2, 3.1, 14.4, 0.7},
-        {10.9, 1.42, 1010, 55, 0.008, 1.6, 1.6, 6.7, 0.85},
+        /* mu, exponent, kg1, kp, penetration, knee, division, capture, contact-volts */
+        {9.5, 1.4, 1620, 42, 0.010, 0.9, 10, 0.30, 0.0},
+        {18.7, 1.35, 690, 95, 0.006, 1.2, 8.7, 0.38, 0.3},
+        {8.7, 1.38, 1130, 45, 0.012, 0.7, 14.4, 0.25, 0.0},
+        {10.9, 1.42, 1010, 55, 0.008, 1.0, 6.7, 0.35, -0.2},
     };
     const double *c = table[which];
-    const named_value values[] = {
-        {"mu", c[0]},   {"exponent", c[1]},       {"kg1", c[2]},      {"kp", c[3]},     {"penetration", c[4]},
-        {"knee", c[5]}, {"knee-sharpness", c[6]}, {"division", c[7]}, {"capture", c[8]}};
+    const named_value values[] = {{"mu", c[0]},       {"exponent", c[1]},    {"kg1", c[2]},
+                                  {"kp", c[3]},       {"penetration", c[4]}, {"knee", c[5]},
+                                  {"division", c[6]}, {"capture", c[7]},     {"contact-volts", c[8]}};
     return law_of(PLW_LAW_PENTODE, values, sizeof values / sizeof values[0]);
 }
 
@@ -195,9 +195,7 @@ static inline plw_law random_law(random_source *r) {
         const bool exponent = strcmp(plw_law_coefficient_name(law.kind, index), "exponent") == 0;
         law.coefficient[index] *= exponent ? random_between(r, 0.95, 1.1) : random_ratio(r, 0.8, 1.25);
     }
-    if (law.kind == PLW_LAW_TRIODE) {
-        *coefficient_of(&law, "contact-volts") = random_chance(r, 0.5) ? random_between(r, 0.0, 0.8) : 0.0;
-    }
+    *coefficient_of(&law, "contact-volts") = random_chance(r, 0.5) ? random_between(r, -0.3, 0.8) : 0.0;
     return law;
 }
 
