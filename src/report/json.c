@@ -47,10 +47,14 @@ static void put_number(const sink *s, const char *name, double value) {
     put(s, name, number(value));
 }
 
+/* An object within an object; when it can't be put there it is gone already, and what goes into it is lost too. */
 static sink object_in(const sink *parent, const char *name) {
-    const sink s = {json_object(), parent->failed};
-    put(parent, name, s.object);
-    return s;
+    json_t *object = json_object();
+    if (json_object_set_new(parent->object, name, object) != 0) {
+        *parent->failed = true;
+        object = NULL;
+    }
+    return (sink){object, parent->failed};
 }
 
 static void put_fields(const sink *s, const plw_field *fields, size_t count, const void *record) {

@@ -67,8 +67,9 @@ static bool room(const plw_frame *frame, const plw_curve_end *end, const plw_cur
 }
 
 static void end_label(FILE *file, const plw_curve_end *end, double grid_volts) {
-    char text[64];
-    plw_script_value(grid_volts, PLW_UNIT_VOLT, 4, text, sizeof text);
+    char text[64] = "+"; /* a positive grid is worth its sign */
+    const size_t sign = grid_volts > 0.0 ? 1 : 0;
+    plw_script_value(grid_volts, PLW_UNIT_VOLT, 4, text + sign, sizeof text - sign);
     plw_script_label(file, text, end->volts, end->milliamps,
                      end->through_top ? "center offset 0,0.55 textcolor rgb '#3d4a57'"
                                       : "left offset 0.6,0 textcolor rgb '#3d4a57'");

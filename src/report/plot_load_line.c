@@ -127,10 +127,10 @@ static void next(FILE *file) {
 
 static void tube_entries(FILE *file, const picture *p, const plw_answer *answer) {
     const plw_plate_family family = plw_stage_family(answer);
-    char text[ENTRY_SIZE] = "plate curves at the grid volts marked";
+    char text[ENTRY_SIZE] = "plate curves by grid volts";
     char value[48];
     if (family.law->kind == PLW_LAW_PENTODE && family.tap == 0.0) {
-        snprintf(text, sizeof text, "plate curves at the grid volts marked, screen %s",
+        snprintf(text, sizeof text, "plate curves by grid volts, screen %s",
                  plw_script_value(family.screen_volts, PLW_UNIT_VOLT, 3, value, sizeof value));
     }
     plw_plot_line(file, "curves", PLW_INK_CURVE, text);

@@ -155,10 +155,10 @@ static void compose(sheet *s) {
 static const struct {
     const char *block, *style, *title;
 } kinds[MARK_KINDS] = {
-    [MARK_PRINTED] = {"printed", "pointtype 7 pointsize 1.2 linecolor rgb '#c2360c'", "printed"},
-    [MARK_OTHER_SCREEN] = {"others", "pointtype 4 pointsize 1.3 linecolor rgb '#00618f' linewidth 1.6",
+    [MARK_PRINTED] = {"printed", "pointtype 7 pointsize mark*1.2 linecolor rgb '#c2360c'", "printed"},
+    [MARK_OTHER_SCREEN] = {"others", "pointtype 4 pointsize mark*1.3 linecolor rgb '#00618f' linewidth 1.6",
                            "printed for other screen volts"},
-    [MARK_DOUBTFUL] = {"doubtful", "pointtype 2 pointsize 1.1 linecolor rgb '#6b6b6b' linewidth 1.4",
+    [MARK_DOUBTFUL] = {"doubtful", "pointtype 2 pointsize mark*1.1 linecolor rgb '#6b6b6b' linewidth 1.4",
                        "printed, of low confidence"},
 };
 

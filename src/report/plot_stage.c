@@ -26,7 +26,7 @@ static void put_title(FILE *file, const plw_answer *answer) {
         snprintf(bias_text, sizeof bias_text, "%s%s", bias, stage->parallel > 1 && stage->resistor_each ? " each" : "");
     }
     plw_script_value(answer->option->quiescent.supply_volts, PLW_UNIT_VOLT, 3, supply, sizeof supply);
-    plw_script_value(stage->load_ohms, PLW_UNIT_OHM, 4, load, sizeof load);
+    plw_script_value(stage->load_ohms, PLW_UNIT_OHM, 3, load, sizeof load);
     char text[512];
     snprintf(text, sizeof text, "%s%.200s, %s, %s, %s, %s", tubes, plw_stage_tube_type(stage),
              plw_connection_name(stage->tube->kind == PLW_KIND_TRIODE ? PLW_CONNECTION_TRIODE : stage->connection),
@@ -109,7 +109,7 @@ void plw_plot_line(FILE *file, const char *block, plw_ink ink, const char *title
 }
 
 void plw_plot_mark(FILE *file, const char *block, int point_type, double size, const char *colour, const char *title) {
-    fprintf(file, "$%s using 1:2 with points pointtype %d pointsize ", block, point_type);
+    fprintf(file, "$%s using 1:2 with points pointtype %d pointsize mark*", block, point_type);
     plw_script_number(file, size);
     fprintf(file, " linecolor rgb '%s' linewidth 1.6", colour);
     fputs(title[0] == '\0' ? " notitle" : " title ", file);

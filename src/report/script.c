@@ -26,14 +26,18 @@ void plw_script_quoted(FILE *file, const char *text) {
     fputc('\'', file);
 }
 
+/* The three pages look alike: what a point, a mark and the width of a letter are differs from one to the other.  The
+ * width of the key's columns is only estimated by gnuplot, for SVG too largely. */
 static const struct {
-    const char *suffix, *terminal;
+    const char *suffix, *terminal, *mark_size;
+    int key_width;
 } formats[] = {
-    [PLW_PLOT_SVG] = {"svg",
-                      "svg size 960,720 noenhanced font 'serif,15' linewidth 1 dashlength 1.2 background '#ffffff'"},
-    [PLW_PLOT_PNG] = {"png", "pngcairo size 1440,1080 noenhanced font 'serif,17' linewidth 1.6 dashlength 1.2 "
-                             "background '#ffffff'"},
-    [PLW_PLOT_PDF] = {"pdf", "pdfcairo size 24cm,18cm noenhanced font 'serif,12' linewidth 1.3 dashlength 1.2"},
+    [PLW_PLOT_SVG] = {"svg", "svg size 960,720 noenhanced font 'serif,15' linewidth 1 dashlength 1.2", "0.5", -11},
+    [PLW_PLOT_PNG] = {"png", "pngcairo size 1440,1080 noenhanced font 'serif,17' linewidth 1.6 dashlength 1.2", "1",
+                      -4},
+    [PLW_PLOT_PDF] = {"pdf",
+                      "pdfcairo size 24cm,18cm noenhanced font 'serif,15' fontscale 0.53 linewidth 1.3 dashlength 1.2",
+                      "0.55", -4},
 };
 
 /* Only the last part of a path: the picture falls beside the script.  A leading | would be a command and a leading ~ a
@@ -70,7 +74,8 @@ void plw_script_begin(FILE *file, plw_plot_format format, const char *output, co
     fputs("# Drawn by: gnuplot FILE   (5.2 or later)\n"
           "set encoding utf8\n",
           file);
-    fprintf(file, "set terminal %s\n", formats[known].terminal);
+    fprintf(file, "set terminal %s background '#ffffff'\n", formats[known].terminal);
+    fprintf(file, "mark = %s\nset key width %d\n", formats[known].mark_size, formats[known].key_width);
     put_output(file, known, output, fallback);
     fputs("set border 31 linecolor rgb '#2b2b2b' linewidth 0.8\n"
           "set tics scale 0.6 textcolor rgb '#2b2b2b'\n"

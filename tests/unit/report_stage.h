@@ -8,9 +8,30 @@
 #include "near.h"
 #include "platewright/report.h"
 
-/* Coefficients near those of a small output pentode and of a power triode; nothing here depends on their values. */
-static const plw_law made_up_pentode = {PLW_LAW_PENTODE, {19.5, 1.35, 403.7, 100, 0.004, 1.9, 2.2, 8.5, 0.6}};
-static const plw_law made_up_triode = {PLW_LAW_TRIODE, {3.95, 1.4, 1550, 65, 300, 0}};
+/* Coefficients near those of a small output pentode and of a power triode, by name; nothing here depends on their
+ * values. */
+static inline plw_law made_up_law(plw_law_kind kind) {
+    static const struct {
+        const char *name;
+        double pentode, triode;
+    } table[] = {{"mu", 19.5, 3.95},   {"exponent", 1.35, 1.4}, {"kg1", 400, 1500}, {"kp", 100, 65},
+                 {"kvb", 1, 300},      {"capture", 0.4, 1},     {"knee", 1.9, 1},   {"penetration", 0.004, 1},
+                 {"division", 8.5, 1}, {"contact-volts", 0, 0}};
+    plw_law law = {.kind = kind};
+    for (size_t i = 0; i < plw_law_coefficient_count(kind); i++) {
+        law.coefficient[i] = 1.0;
+        for (size_t k = 0; k < sizeof table / sizeof table[0]; k++) {
+            if (strcmp(table[k].name, plw_law_coefficient_name(kind, i)) == 0) {
+                law.coefficient[i] = kind == PLW_LAW_PENTODE ? table[k].pentode : table[k].triode;
+            }
+        }
+    }
+    plw_error error = {0};
+    if (plw_law_validate(&law, &error) != PLW_OK) {
+        fail_msg("%s", error.text);
+    }
+    return law;
+}
 
 typedef struct {
     char type[200], source[32];
@@ -56,8 +77,8 @@ static inline plw_row made_up_row(double plate, double screen, double grid, doub
 }
 
 /* A stage not yet solved: one pentode at 285 V into 5 kohm, or one triode at 425 V into 3 kohm. */
-static inline void stage_begin(solved_stage *s, const plw_law *law) {
-    const bool triode = law->kind == PLW_LAW_TRIODE;
+static inline void stage_begin(solved_stage *s, plw_law_kind kind) {
+    const bool triode = kind == PLW_LAW_TRIODE;
     memset(s, 0, sizeof *s);
     snprintf(s->type, sizeof s->type, "%s", triode ? "TX-31" : "PX-84");
     snprintf(s->source, sizeof s->source, "made up");
@@ -73,7 +94,7 @@ static inline void stage_begin(solved_stage *s, const plw_law *law) {
                          .rows = s->rows,
                          .rows_count = 3,
                          .has_model = true,
-                         .model = {.law = *law,
+                         .model = {.law = made_up_law(kind),
                                    .fit_error = {1.87, 4.2, 2.3, 0.4},
                                    .left_out_error = {3.14, (double)NAN, 3.9, 0.5},
                                    .region = {100, 400, 100, 300, 0.01, 0.1}}};

@@ -153,7 +153,7 @@ static void the_family_passes_through_the_point_of_rest(void **state) {
     static solved_stage s;
     const plw_connection connections[] = {PLW_CONNECTION_PENTODE, PLW_CONNECTION_TRIODE, PLW_CONNECTION_ULTRALINEAR};
     for (size_t i = 0; i < 3; i++) {
-        stage_begin(&s, &made_up_pentode);
+        stage_begin(&s, PLW_LAW_PENTODE);
         s.stage.connection = connections[i];
         s.stage.tap = connections[i] == PLW_CONNECTION_ULTRALINEAR ? 0.43 : s.stage.tap;
         stage_solve(&s);
@@ -171,7 +171,7 @@ static void the_family_passes_through_the_point_of_rest(void **state) {
 static void the_load_line_is_ohms_law(void **state) {
     (void)state;
     static solved_stage s;
-    stage_begin(&s, &made_up_pentode);
+    stage_begin(&s, PLW_LAW_PENTODE);
     s.stage.parallel = 2;
     s.stage.load_ohms = 2385;
     s.stage.primary_ohms = 137;
@@ -201,7 +201,7 @@ static void the_load_line_is_ohms_law(void **state) {
 static void the_swing_and_the_limits_are_drawn(void **state) {
     (void)state;
     static solved_stage s;
-    stage_begin(&s, &made_up_pentode);
+    stage_begin(&s, PLW_LAW_PENTODE);
     stage_solve(&s);
     char *script = script_of(&s.answer, PLW_PLOT_LOAD_LINE, PLW_PLOT_SVG, "x.svg");
     double swing[PLW_PATH_POINTS + 1][2];
@@ -233,7 +233,7 @@ static void curves_keep_inside_the_frame(void **state) {
     static solved_stage s;
     const double loads[] = {700, 2385, 5000, 21000};
     for (size_t i = 0; i < 8; i++) {
-        stage_begin(&s, i < 4 ? &made_up_pentode : &made_up_triode);
+        stage_begin(&s, i < 4 ? PLW_LAW_PENTODE : PLW_LAW_TRIODE);
         s.stage.load_ohms = loads[i % 4];
         stage_solve(&s);
         char *script = script_of(&s.answer, PLW_PLOT_LOAD_LINE, PLW_PLOT_SVG, "x.svg");
@@ -260,7 +260,7 @@ static void curves_keep_inside_the_frame(void **state) {
 static void the_resistor_line_meets_the_cathode_current(void **state) {
     (void)state;
     static solved_stage s;
-    stage_begin(&s, &made_up_pentode);
+    stage_begin(&s, PLW_LAW_PENTODE);
     s.stage.parallel = 2;
     s.stage.load_ohms = 2385;
     stage_solve(&s);
@@ -305,7 +305,7 @@ static void the_resistor_line_meets_the_cathode_current(void **state) {
 static void without_a_cycle_the_rest_is_still_drawn(void **state) {
     (void)state;
     static solved_stage s;
-    stage_begin(&s, &made_up_triode);
+    stage_begin(&s, PLW_LAW_TRIODE);
     stage_solve(&s);
     static plw_bias_option option;
     option = *s.answer.option;
@@ -328,7 +328,7 @@ static void without_a_cycle_the_rest_is_still_drawn(void **state) {
 static void printed_rows_are_marked_with_their_misses(void **state) {
     (void)state;
     static solved_stage s;
-    stage_begin(&s, &made_up_pentode);
+    stage_begin(&s, PLW_LAW_PENTODE);
     char *script = family_of(&s.tube, PLW_CONNECTION_PENTODE, PLW_PLOT_SVG);
     double marks[4][2] = {{0}};
     assert_int_equal(block_points(script, "printed", marks, 4), 1);
@@ -349,7 +349,7 @@ static void printed_rows_are_marked_with_their_misses(void **state) {
 static void what_cannot_be_drawn_is_refused(void **state) {
     (void)state;
     static solved_stage s;
-    stage_begin(&s, &made_up_pentode);
+    stage_begin(&s, PLW_LAW_PENTODE);
     stage_solve(&s);
     char *text = NULL;
     plw_error error = {0};
@@ -371,7 +371,7 @@ static void what_cannot_be_drawn_is_refused(void **state) {
 static void output_keeps_its_last_part_only(void **state) {
     (void)state;
     static solved_stage s;
-    stage_begin(&s, &made_up_pentode);
+    stage_begin(&s, PLW_LAW_PENTODE);
     stage_solve(&s);
     const char *const cases[][2] = {
         {"/tmp/some where/o'ut.svg", "\nset output 'o'.\"'\".'ut.svg'\n"},
@@ -396,9 +396,9 @@ static void output_keeps_its_last_part_only(void **state) {
 static void the_same_answer_gives_the_same_bytes(void **state) {
     (void)state;
     static solved_stage s, again;
-    stage_begin(&s, &made_up_pentode);
+    stage_begin(&s, PLW_LAW_PENTODE);
     stage_solve(&s);
-    stage_begin(&again, &made_up_pentode);
+    stage_begin(&again, PLW_LAW_PENTODE);
     stage_solve(&again);
     for (int kind = 0; kind < PLW_PLOT_COUNT; kind++) {
         char *one = script_of(&s.answer, (plw_plot_kind)kind, PLW_PLOT_PNG, "x.png");
@@ -421,7 +421,7 @@ static void gnuplot_draws_every_picture(void **state) {
     const plw_plot_format formats[] = {PLW_PLOT_SVG, PLW_PLOT_PNG, PLW_PLOT_PDF};
     const char *const starts[] = {"<?xml", "\x89PNG", "%PDF"};
     for (size_t i = 0; i < 6; i++) {
-        stage_begin(&s, i < 3 ? &made_up_pentode : &made_up_triode);
+        stage_begin(&s, i < 3 ? PLW_LAW_PENTODE : PLW_LAW_TRIODE);
         stage_solve(&s);
         for (int kind = 0; kind <= PLW_PLOT_COUNT; kind++) {
             char *script = kind < PLW_PLOT_COUNT
@@ -449,7 +449,7 @@ static void odd_names_stay_inert(void **state) {
     static solved_stage s;
     test_folder folder;
     folder_make(&folder);
-    stage_begin(&s, &made_up_pentode);
+    stage_begin(&s, PLW_LAW_PENTODE);
     snprintf(
         s.type, sizeof s.type,
         "E'`touch evil`\"`touch evil`\" $(touch evil)\n'; system 'touch evil'\r\x01 @GPVAL_TERM <b>&amp;_{x}^2 \\");
