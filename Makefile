@@ -110,6 +110,9 @@ $(B)/tests/failure/test_%: $(B)/tests/failure/test_%.o $(STATIC)
 $(B)/tests/bench/%: $(B)/tests/bench/%.o $(STATIC)
 	$(LINK) $^ $(PACKAGE_LIBS) -lm -o $@
 
+# A test that needs a library of its own says so beside it.
+include $(wildcard tests/*/*.mk)
+
 .PHONY: check check-headers check-units check-cli
 check: all check-headers check-units check-cli
 	@echo 'check: all passed'
