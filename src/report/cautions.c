@@ -117,11 +117,11 @@ static void of_screen(list *l, const plw_answer *answer) {
     }
     const double driven = option->signal.screen_watts;
     if (ratings != NULL) {
-        char idle_text[TEXT_SIZE];
-        char driven_text[TEXT_SIZE];
         const double limit =
             isfinite(ratings->screen_watts_full_drive) ? ratings->screen_watts_full_drive : ratings->screen_watts;
         if (driven > SCREEN_NEAR * limit && driven > option->quiescent.screen_watts) {
+            char idle_text[TEXT_SIZE];
+            char driven_text[TEXT_SIZE];
             say(l,
                 "Screen dissipation rises from %s idle to %s at full drive: a resistor in the screen lead spares it.",
                 written(option->quiescent.screen_watts, PLW_UNIT_WATT, idle_text),

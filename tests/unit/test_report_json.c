@@ -145,6 +145,9 @@ static void figures_are_those_solved(void **state) {
     }
     assert_int_equal(json_array_size(at(root, "signal.harmonics_percent")), 9);
     assert_text_at(root, "signal.limit", plw_drive_limit_name(signal->limit));
+    assert_string_equal(plw_drive_limit_name(PLW_DRIVE_GIVEN), "drive");
+    assert_string_equal(plw_drive_limit_name(PLW_DRIVE_GRID_CURRENT), "grid current");
+    assert_string_equal(plw_drive_limit_name(PLW_DRIVE_CUT_OFF), "cut-off");
     json_decref(root);
 }
 
