@@ -44,6 +44,7 @@ typedef struct {
     bool screen_bypassed; /* the screen side of that resistor is held by a capacitor */
 
     double drive_peak_volts; /* at the grid; NaN: up to the first of grid current and cut-off */
+    double driver_ohms;      /* resistance of what drives the grid; 0: grid current costs the driver nothing */
 } plw_stage;
 
 /* A stage in which all that is not filled in is ideal: no copper, nothing in the screen lead, one tube, no other

@@ -83,4 +83,5 @@ void plw_circuit_prepare(const plw_stage *stage, plw_circuit *circuit) {
     circuit->feed.context = circuit;
     circuit->feed.load_ohms = circuit->load_ohms;
     circuit->feed.tap = circuit->tap;
+    circuit->feed.driver_ohms = tubes * stage->driver_ohms;
 }

@@ -160,6 +160,7 @@ plw_status plw_stage_validate(const plw_stage *stage, bool bias_wanted, plw_erro
         {"primary-ohms", stage->primary_ohms, 0.0, 1e5, PLW_UNIT_OHM},
         {"secondary-ohms", stage->secondary_ohms, 0.0, 1e5, PLW_UNIT_OHM},
         {"screen-resistor", stage->screen_resistor_ohms, 0.0, 1e6, PLW_UNIT_OHM},
+        {"driver-ohms", stage->driver_ohms, 0.0, 1e6, PLW_UNIT_OHM},
         {"other-current", stage->other_amps, 0.0, 10.0, PLW_UNIT_AMPERE},
     };
     for (size_t index = 0; status == PLW_OK && index < sizeof ranges / sizeof ranges[0]; index++) {
