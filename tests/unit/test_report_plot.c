@@ -161,6 +161,13 @@ static void the_family_passes_through_the_point_of_rest(void **state) {
         const plw_plate_family family = plw_stage_family(&s.answer);
         assert_near(plw_family_amps(&family, rest->plate_volts, rest->grid_volts),
                     plw_drawn_amps(&s.answer, rest->plate_amps, rest->screen_amps), 1e-9, "residual of the solution");
+        /* Away from rest the screen stays, goes with the plate, or goes a share of the way. */
+        const double screen_volts[] = {rest->screen_volts, 153.7,
+                                       rest->screen_volts + 0.43 * (153.7 - rest->plate_volts)};
+        plw_currents currents;
+        plw_law_evaluate(&s.tube.model.law, 153.7, screen_volts[i], -6.385, &currents);
+        assert_near(plw_family_amps(&family, 153.7, -6.385),
+                    plw_drawn_amps(&s.answer, currents.plate_amps, currents.screen_amps), 1e-12, "the same law");
         if (connections[i] == PLW_CONNECTION_TRIODE) {
             assert_near(plw_drawn_amps(&s.answer, rest->plate_amps, rest->screen_amps), rest->cathode_amps, 1e-12,
                         "both together");
