@@ -19,13 +19,13 @@ typedef struct {
 
 typedef struct cli_command {
     const char *name;
-    unsigned bit;
-    const char *positional;   /* "[STAGE.xml]" */
-    bool positional_required; /* it must be there */
-    const char *summary;      /* one line */
-    const char *description;  /* a few sentences */
+    const char *positional;  /* "[STAGE.xml]" */
+    const char *summary;     /* one line */
+    const char *description; /* a few sentences */
     cli_example examples[CLI_EXAMPLES_MOST];
     int (*run)(const cli_arguments *arguments); /* Ret: exit status */
+    unsigned bit;
+    bool positional_required; /* it must be there */
 } cli_command;
 
 /* Ret: NULL beyond the last. */

@@ -37,9 +37,13 @@ int cli_run_fit(const cli_arguments *arguments) {
     plw_tube *tube = NULL;
     plw_error error = {.status = PLW_OK};
     plw_fit *result = calloc(1, sizeof *result);
-    plw_status status = result == NULL ? plw_fail(&error, PLW_E_NO_MEMORY, "out of memory")
-                                       : plw_tube_read(arguments->positional, &tube, &error);
-    if (status == PLW_OK) {
+    plw_status status = PLW_E_NO_MEMORY;
+    if (result != NULL) {
+        status = plw_tube_read(arguments->positional, &tube, &error);
+    } else {
+        (void)plw_fail(&error, status, "out of memory");
+    }
+    if (status == PLW_OK && tube != NULL) {
         status = fit(arguments, tube, result, &error);
     }
     free(result);

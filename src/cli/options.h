@@ -45,16 +45,16 @@ typedef enum {
 
 typedef struct {
     const char *name;
-    char letter; /* short form, or 0 */
-    cli_value value;
-    const char *placeholder; /* what stands for the value in the help */
-    cli_group group;
-    unsigned commands;
-    bool stage; /* an entry of the stage description of that name */
-    bool repeatable;
+    const char *placeholder;    /* what stands for the value in the help */
     const char *const *choices; /* NULL-terminated */
     const char *help;
     const char *elsewhere; /* said when another command is given this option; may be NULL */
+    cli_value value;
+    cli_group group;
+    unsigned commands;
+    char letter; /* short form, or 0 */
+    bool stage;  /* an entry of the stage description of that name */
+    bool repeatable;
 } cli_option;
 
 /* Ret: NULL beyond the last. */

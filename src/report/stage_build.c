@@ -293,8 +293,8 @@ static bool read_reading(builder *work, const plw_stage_entry *entry, plw_readin
 static void take_readings(builder *work, plw_stage *stage) {
     plw_reading readings[PLW_READINGS_MOST];
     size_t count = 0;
-    const plw_stage_entry *last = NULL;
-    bool good = true;
+    const plw_stage_entry *last = entry_of(work, "reading");
+    bool good = last != NULL;
     for (size_t i = 0; i < work->description->count; i++) {
         const plw_stage_entry *entry = &work->description->entry[i];
         if (entry->type->kind != PLW_ENTRY_READING) {

@@ -13,7 +13,8 @@
 enum { TEXT_LENGTH_MOST = 60 };
 
 static plw_status out_of_memory(plw_error *error) {
-    return plw_fail(error, PLW_E_NO_MEMORY, "stage: out of memory");
+    (void)plw_fail(error, PLW_E_NO_MEMORY, "stage: out of memory");
+    return PLW_E_NO_MEMORY;
 }
 
 plw_status plw_stage_description_new(plw_stage_description **description, plw_error *error) {

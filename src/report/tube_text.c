@@ -19,7 +19,7 @@ typedef struct {
 } cell;
 
 static cell quantity(double value, plw_unit unit, int digits) {
-    cell c;
+    cell c = {""};
     plw_quantity_format(value, unit, digits, c.text, sizeof c.text);
     return c;
 }
@@ -135,7 +135,11 @@ plw_status plw_tubes_text(const plw_tube *const *tubes, size_t count, char **tex
 
 /* The sources met so far, numbered in order. */
 typedef struct {
-    const plw_provenance **seen;
+    const plw_provenance *provenance;
+} source;
+
+typedef struct {
+    source *seen;
     size_t count, room;
 } source_list;
 
@@ -150,11 +154,11 @@ static cell cite(source_list *sources, const plw_provenance *provenance) {
     if (provenance->source == NULL) {
         return c;
     }
-    while (index < sources->count && !same_source(sources->seen[index], provenance)) {
+    while (index < sources->count && !same_source(sources->seen[index].provenance, provenance)) {
         index++;
     }
     if (index == sources->count && sources->count < sources->room) {
-        sources->seen[sources->count++] = provenance;
+        sources->seen[sources->count++].provenance = provenance;
     }
     snprintf(c.text, sizeof c.text, "[%zu]", index + 1);
     return c;
@@ -163,7 +167,7 @@ static cell cite(source_list *sources, const plw_provenance *provenance) {
 static void put_sources(FILE *out, const source_list *sources) {
     fputs("\nSources\n", out);
     for (size_t i = 0; i < sources->count; i++) {
-        const plw_provenance *provenance = sources->seen[i];
+        const plw_provenance *provenance = sources->seen[i].provenance;
         char mark[CELL];
         char line[LINE];
         snprintf(mark, sizeof mark, "  [%zu] ", i + 1);
@@ -336,9 +340,10 @@ plw_status plw_tube_text(const plw_tube *tube, char **text, plw_error *error) {
     for (size_t i = 0; i < tube->variants_count; i++) {
         room += tube->variants[i].ratings_count;
     }
-    source_list sources = {.seen = calloc(room, sizeof *sources.seen), .room = room};
+    source *seen = calloc(room, sizeof *seen);
+    source_list sources = {.seen = seen, .room = room};
     plw_text_buffer buffer;
-    if (sources.seen == NULL) {
+    if (seen == NULL) {
         return plw_fail(error, PLW_E_NO_MEMORY, "out of memory for a report");
     }
     plw_status status = plw_text_begin(&buffer, error);
@@ -353,6 +358,6 @@ plw_status plw_tube_text(const plw_tube *tube, char **text, plw_error *error) {
         put_sources(buffer.file, &sources);
         status = plw_text_end(&buffer, PLW_OK, text, error);
     }
-    free((void *)sources.seen);
+    free(seen);
     return status;
 }
