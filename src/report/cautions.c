@@ -23,6 +23,9 @@
 /* What capacitors must stand: the mains may be a tenth high.  Common practice, no source. */
 #define HIGH_MAINS 1.1
 
+/* Volts and amperes this far beyond the printed ones are not called extrapolated.  Common practice, no source. */
+#define REGION_MARGIN 0.05
+
 /* A screen that runs at this share of its rating under drive is worth a word. */
 #define SCREEN_NEAR 0.8
 
@@ -150,8 +153,9 @@ static void of_bias(list *l, const plw_answer *answer) {
     }
 }
 
+/* A law is good for a little more than the data it came from. */
 static bool outside(double value, double least, double most) {
-    return value < least || value > most; /* false when the bounds are not known */
+    return value < (1.0 - REGION_MARGIN) * least || value > (1.0 + REGION_MARGIN) * most; /* false: bounds not known */
 }
 
 static void of_region(list *l, const plw_answer *answer) {
@@ -168,15 +172,22 @@ static void of_region(list *l, const plw_answer *answer) {
         {"screen volts", rest->screen_volts, region->screen_volts_least, region->screen_volts_most, PLW_UNIT_VOLT},
         {"plate current", amps, region->plate_amps_least, region->plate_amps_most, PLW_UNIT_AMPERE},
     };
+    char text[PLW_CAUTION_SIZE / 2] = "";
     for (size_t i = 0; i < sizeof parts / sizeof parts[0]; i++) {
         if (outside(parts[i].value, parts[i].least, parts[i].most)) {
             char value[TEXT_SIZE];
             char least[TEXT_SIZE];
             char most[TEXT_SIZE];
-            say(l, "Extrapolated: %s at rest, %s, lies outside what the printed data of the tube cover, %s to %s.",
-                parts[i].name, written(parts[i].value, parts[i].unit, value),
-                written(parts[i].least, parts[i].unit, least), written(parts[i].most, parts[i].unit, most));
+            written(parts[i].least, parts[i].unit, least);
+            written(parts[i].most, parts[i].unit, most);
+            const bool one = strcmp(least, most) == 0;
+            const size_t used = strlen(text);
+            snprintf(text + used, sizeof text - used, "%s%s %s (printed: %s%s%s)", used > 0 ? ", " : "", parts[i].name,
+                     written(parts[i].value, parts[i].unit, value), one ? "" : least, one ? "" : " to ", most);
         }
+    }
+    if (text[0] != '\0') {
+        say(l, "Extrapolated beyond the printed data of the tube, at rest: %s.", text);
     }
 }
 
