@@ -5,6 +5,20 @@
 
 #include "tube/fit_data.h"
 
+/* What a law says of its own coefficients, in their order.  Every law begins with mu, exponent, kg1 and kp.  These
+ * three belong to the law: another law brings its own. */
+typedef struct {
+    double expected, deviation; /* value (of kp: kp/mu); standard deviation of its coordinate */
+} plw_expectation;
+
+const plw_expectation *plw_law_expectations(const plw_tube *tube);
+
+/* The coefficient that may have either sign (the contact potential, in V), or PLW_LAW_COEFFICIENTS_MOST. */
+size_t plw_law_signed_coefficient(plw_law_kind kind);
+
+/* The largest value that the law admits; INFINITY: any. */
+double plw_law_coefficient_most(plw_law_kind kind, size_t index);
+
 /* The coordinates of a fit: the logarithm of each coefficient, but of kp the logarithm of kp/mu, which differs far less
  * from tube to tube, and the contact potential itself, in V. */
 void plw_law_coordinates(const plw_law *law, double coordinates[PLW_LAW_COEFFICIENTS_MOST]);
