@@ -1,0 +1,246 @@
+/* One tube by its meter readings: stronger and weaker tubes recognised, the screen's share, refusals.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
+#include "platewright/specimen.h"
+
+#include <string.h>
+
+#include "near.h"
+#include "unit/stages.h"
+
+static const plw_aim usual_aim = {PLW_AIM_DISSIPATION, 90.0};
+
+static void make_rated(test_tube *tube, plw_law law) {
+    make_tube(tube, law);
+    tube->ratings[0].plate_watts = 12.0;
+}
+
+/* The readings that a meter would take of this stage. */
+static plw_meter_readings readings_of(const plw_stage *stage, plw_quiescent *q) {
+    plw_error error = {0};
+    if (plw_quiescent_solve(stage, q, &error) != PLW_OK) {
+        fail_msg("%s", error.text);
+    }
+    return (plw_meter_readings){q->supply_volts, q->plate_to_ground_volts, q->screen_to_ground_volts, q->cathode_volts};
+}
+
+/* Measure, on the bogey tube's stage, what a tube `strength` times as strong reads in it. */
+static plw_quiescent measure_strength(const plw_stage *bogey, double strength, plw_meter_readings *readings,
+                                      plw_specimen *specimen) {
+    test_tube strong;
+    make_rated(&strong, bogey->tube->model.law);
+    plw_law_scale(&strong.tube.model.law, strength);
+    plw_stage bench = *bogey;
+    bench.tube = &strong.tube;
+    plw_quiescent q, model;
+    *readings = readings_of(&bench, &q);
+    assert_int_equal(plw_quiescent_solve(bogey, &model, NULL), PLW_OK);
+    plw_error error = {0};
+    if (plw_specimen_measure(bogey, &model, readings, usual_aim, PLW_E24, specimen, &error) != PLW_OK) {
+        fail_msg("%s", error.text);
+    }
+    return q;
+}
+
+static plw_stage pentode_stage(const test_tube *tube) {
+    plw_stage stage = simple_stage(tube, 285.0, 5000.0, 270.0, UNKNOWN);
+    stage.primary_ohms = 280.0;
+    stage.screen_resistor_ohms = 470.0;
+    return stage;
+}
+
+/* The division of the current between plate and screen does not depend on the tube's strength, so everything comes back
+ * exactly: currents, heat, copper, and how far the tube is off. */
+static void a_stronger_tube_is_told_exactly(void **state) {
+    (void)state;
+    static const double strengths[] = {0.71, 0.9, 1.0, 1.2, 1.385};
+    test_tube tube;
+    make_rated(&tube, pentode_law(TEST_BEAM_SMALL));
+    const plw_stage stage = pentode_stage(&tube);
+    for (size_t index = 0; index < sizeof strengths / sizeof strengths[0]; index++) {
+        plw_meter_readings readings;
+        plw_specimen s;
+        const plw_quiescent q = measure_strength(&stage, strengths[index], &readings, &s);
+        const char *source = "the readings are those of the model times a strength";
+        assert_near(s.off_percent, 100.0 * (strengths[index] - 1.0), 1e-5, source);
+        assert_near_relative(s.cathode_amps, q.cathode_amps, 1e-8, source);
+        assert_near_relative(s.plate_amps, q.plate_amps, 1e-7, source);
+        assert_near_relative(s.screen_amps, q.screen_amps, 1e-6, source);
+        assert_near_relative(s.plate_watts, q.plate_watts, 1e-7, source);
+        assert_near_relative(s.screen_watts, q.screen_watts, 1e-6, source);
+        assert_near_relative(s.primary_ohms, 280.0, 1e-6, source);
+        assert_near(s.plate_volts, q.plate_volts, 1e-9, "plate reading less cathode reading");
+        assert_near(s.grid_volts, -q.cathode_volts, 1e-9, "the grid is at the chassis");
+        assert_true(s.supply_read && s.plate_read && s.screen_read);
+        /* The stage that belongs to this tube rests where the meter says. */
+        plw_quiescent again;
+        assert_int_equal(plw_quiescent_solve(&s.stage, &again, NULL), PLW_OK);
+        assert_near(again.cathode_volts, q.cathode_volts, 1e-5, source);
+        assert_ptr_equal(s.stage.tube, &s.tube);
+    }
+}
+
+/* The screen's current is in the cathode's and not in the plate's: 4 to 15 % of it in these tubes. */
+static void the_screens_share_is_taken_off(void **state) {
+    (void)state;
+    for (int which = 0; which < TEST_PENTODES; which++) {
+        test_tube tube;
+        make_rated(&tube, pentode_law(which));
+        const plw_stage stage = pentode_stage(&tube);
+        plw_meter_readings readings;
+        plw_specimen s;
+        measure_strength(&stage, 1.1, &readings, &s);
+        assert_near_relative(s.cathode_amps, readings.cathode_volts / 270.0, 1e-12, "Ohm's law");
+        assert_near_relative(s.plate_amps + s.screen_amps, s.cathode_amps, 1e-12, "Kirchhoff");
+        assert_true(s.screen_amps > 0.03 * s.cathode_amps && s.screen_amps < 0.2 * s.cathode_amps);
+    }
+    test_tube triode;
+    make_rated(&triode, koren_triode(KOREN_2A3));
+    const plw_stage stage = simple_stage(&triode, 297.0, 2500.0, 750.0, UNKNOWN);
+    plw_meter_readings readings;
+    plw_specimen s;
+    measure_strength(&stage, 0.93, &readings, &s);
+    assert_near(s.screen_amps, 0.0, 0.0, "a triode has no screen");
+    assert_near(s.off_percent, -7.0, 1e-5, "strength 0.93");
+    assert_true(isnan(s.screen_volts) && isnan(s.screen_to_ground_volts) && isnan(s.screen_watts));
+}
+
+static void connections_and_parallel_tubes_are_read_alike(void **state) {
+    (void)state;
+    random_source r = {20250219};
+    int measured = 0;
+    for (int trial = 0; trial < 400; trial++) {
+        test_tube tube;
+        plw_stage stage;
+        random_stage(&r, &tube, &stage);
+        if (isnan(stage.cathode_resistor_ohms)) {
+            continue;
+        }
+        tube.ratings[0].plate_watts = 12.0;
+        plw_meter_readings readings;
+        plw_specimen s;
+        const plw_quiescent q = measure_strength(&stage, 1.2, &readings, &s);
+        assert_near(s.off_percent, 20.0, 1e-4, "strength 1.2");
+        assert_near_relative(s.plate_amps, q.plate_amps, 1e-6, "one tube's current");
+        measured++;
+    }
+    assert_true(measured > 200);
+}
+
+/* Readings that were not taken: the model's figures stand in, and the answer is still close. */
+static void missing_readings_are_filled_in_and_flagged(void **state) {
+    (void)state;
+    test_tube tube;
+    make_rated(&tube, pentode_law(TEST_BEAM_SMALL));
+    const plw_stage stage = pentode_stage(&tube);
+    plw_meter_readings readings;
+    plw_specimen s;
+    const plw_quiescent q = measure_strength(&stage, 1.2, &readings, &s);
+    readings.supply_volts = readings.plate_volts = readings.screen_volts = UNKNOWN;
+    assert_int_equal(plw_specimen_measure(&stage, &q, &readings, usual_aim, PLW_E24, &s, NULL), PLW_OK);
+    assert_false(s.supply_read || s.plate_read || s.screen_read);
+    assert_true(isnan(s.primary_ohms));
+    assert_near(s.off_percent, 20.0, 1e-4, "on a stiff supply the rest follows from the cathode");
+    assert_near(s.plate_to_ground_volts, q.plate_to_ground_volts, 1e-5, "the circuit at these currents");
+    assert_near(s.screen_to_ground_volts, q.screen_to_ground_volts, 1e-5, "the circuit at these currents");
+}
+
+/* A supply that reads otherwise than described moves the stage's supply. */
+static void the_supply_is_taken_as_read(void **state) {
+    (void)state;
+    test_tube tube;
+    make_rated(&tube, pentode_law(TEST_BEAM_SMALL));
+    plw_stage stage = pentode_stage(&tube);
+    stage.supply = stiff(301.0);
+    plw_quiescent q;
+    const plw_meter_readings readings = readings_of(&stage, &q);
+    plw_stage described = stage;
+    described.supply = stiff(285.0);
+    plw_specimen s;
+    assert_int_equal(plw_specimen_measure(&described, &q, &readings, usual_aim, PLW_E24, &s, NULL), PLW_OK);
+    assert_near(s.off_percent, 0.0, 1e-4, "it is the bogey tube, on more volts");
+    plw_quiescent again;
+    assert_int_equal(plw_quiescent_solve(&s.stage, &again, NULL), PLW_OK);
+    assert_near(again.supply_volts, 301.0, 1e-6, "as read");
+}
+
+/* The resistor that suits this very tube: the aim met with the scaled law. */
+static void the_resistor_found_suits_this_tube(void **state) {
+    (void)state;
+    test_tube tube;
+    make_rated(&tube, pentode_law(TEST_BEAM_SMALL));
+    const plw_stage stage = pentode_stage(&tube);
+    plw_meter_readings readings;
+    plw_specimen weak, strong;
+    measure_strength(&stage, 0.9, &readings, &weak);
+    measure_strength(&stage, 1.2, &readings, &strong);
+    assert_true(weak.resistor_found && strong.resistor_found);
+    assert_true(strong.choice.exact_ohms > weak.choice.exact_ohms);
+    plw_stage suited = strong.stage;
+    suited.tube = &strong.tube;
+    suited.cathode_resistor_ohms = strong.choice.exact_ohms;
+    plw_quiescent q;
+    assert_int_equal(plw_quiescent_solve(&suited, &q, NULL), PLW_OK);
+    assert_near_relative(q.plate_watts, 0.9 * 12.0, 1e-6, "the aim");
+    tube.ratings[0].plate_watts = 120.0;
+    const plw_meter_readings same = readings_of(&stage, &q);
+    assert_int_equal(plw_specimen_measure(&stage, &q, &same, usual_aim, PLW_E24, &strong, NULL), PLW_OK);
+    assert_false(strong.resistor_found);
+    assert_non_null(strstr(strong.resistor_obstacle, "out of reach"));
+}
+
+/* ---- refusals ---------------------------------------------------------------------------------------------------- */
+
+static void readings_that_contradict_are_refused(void **state) {
+    (void)state;
+    test_tube tube;
+    make_rated(&tube, pentode_law(TEST_BEAM_SMALL));
+    plw_stage stage = pentode_stage(&tube);
+    plw_quiescent q;
+    const plw_meter_readings good = readings_of(&stage, &q);
+    const struct {
+        double supply, plate, screen, cathode;
+        const char *text;
+    } wrong[] = {
+        {good.supply_volts, good.plate_volts, good.screen_volts, UNKNOWN, "cathode"},
+        {good.supply_volts, good.plate_volts, good.screen_volts, 0.0, "cathode"},
+        {good.supply_volts, good.plate_volts, good.screen_volts, -12.6, "cathode"},
+        {good.supply_volts, good.plate_volts, good.screen_volts, 5001.0, "cathode"},
+        {good.supply_volts, 1.05 * good.supply_volts, good.screen_volts, good.cathode_volts, "plate"},
+        {good.supply_volts, 0.9 * good.cathode_volts, good.screen_volts, good.cathode_volts, "plate"},
+        {good.supply_volts, good.plate_volts, 0.9 * good.cathode_volts, good.cathode_volts, "screen"},
+        {0.9 * good.cathode_volts, UNKNOWN, UNKNOWN, good.cathode_volts, "supply"},
+        {(double)INFINITY, UNKNOWN, UNKNOWN, good.cathode_volts, "supply"},
+        {good.supply_volts, good.plate_volts, good.screen_volts, 79.0, "cut off"},
+    };
+    for (size_t index = 0; index < sizeof wrong / sizeof wrong[0]; index++) {
+        const plw_meter_readings readings = {wrong[index].supply, wrong[index].plate, wrong[index].screen,
+                                             wrong[index].cathode};
+        plw_specimen s;
+        plw_error error = {0};
+        if (plw_specimen_measure(&stage, &q, &readings, usual_aim, PLW_E24, &s, &error) != PLW_E_USAGE) {
+            fail_msg("readings %zu were accepted", index);
+        }
+        if (strstr(error.text, wrong[index].text) == NULL) {
+            fail_msg("want \"%s\" in: %s", wrong[index].text, error.text);
+        }
+    }
+    stage.fixed_bias_volts = -12.5;
+    stage.cathode_resistor_ohms = UNKNOWN;
+    plw_specimen s;
+    plw_error error = {0};
+    assert_int_equal(plw_specimen_measure(&stage, &q, &good, usual_aim, PLW_E24, &s, &error), PLW_E_USAGE);
+    assert_non_null(strstr(error.text, "fixed bias"));
+}
+
+int main(void) {
+    const struct CMUnitTest tests[] = {
+        cmocka_unit_test(a_stronger_tube_is_told_exactly),
+        cmocka_unit_test(the_screens_share_is_taken_off),
+        cmocka_unit_test(connections_and_parallel_tubes_are_read_alike),
+        cmocka_unit_test(missing_readings_are_filled_in_and_flagged),
+        cmocka_unit_test(the_supply_is_taken_as_read),
+        cmocka_unit_test(the_resistor_found_suits_this_tube),
+        cmocka_unit_test(readings_that_contradict_are_refused),
+    };
+    return cmocka_run_group_tests(tests, NULL, NULL);
+}
