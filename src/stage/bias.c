@@ -105,18 +105,19 @@ static bool find_crossing(const search *s, double *ohms, double *nearest, plw_er
 /* ---- ratings that a resistor can cure -----------------------------------------------------------------------------
  */
 
-/* The first check at rest that is not kept, or NULL. */
-static const plw_rating_check *broken_at_rest(const plw_bias_option *option) {
+static bool is_voltage(const plw_rating_check *check) {
+    return check->unit == PLW_UNIT_VOLT;
+}
+
+/* The first check at rest that is not kept, or NULL; of heat and current alone, which a resistor cures, or of all. */
+static const plw_rating_check *broken_at_rest(const plw_bias_option *option, bool curable_only) {
     for (size_t index = 0; index < option->ratings_count; index++) {
-        if (!option->ratings[index].ok && option->ratings[index].when == PLW_AT_IDLE) {
-            return &option->ratings[index];
+        const plw_rating_check *check = &option->ratings[index];
+        if (!check->ok && check->when == PLW_AT_IDLE && !(curable_only && is_voltage(check))) {
+            return check;
         }
     }
     return NULL;
-}
-
-static bool is_voltage(const plw_rating_check *check) {
-    return check->unit == PLW_UNIT_VOLT;
 }
 
 static void describe(const plw_rating_check *check, char *text, size_t size) {
@@ -149,8 +150,8 @@ static plw_status step_into_ratings(const plw_stage *stage, plw_series series, p
     plw_rating_check last = {0};
     *stepped = false;
     for (int step = 0; step < STEPS_UP_MOST; step++) {
-        const plw_rating_check *broken = broken_at_rest(&trial);
-        if (broken == NULL || is_voltage(broken)) {
+        const plw_rating_check *broken = broken_at_rest(&trial, true);
+        if (broken == NULL) {
             *option = trial;
             return PLW_OK;
         }
@@ -286,7 +287,7 @@ static plw_status out_of_reach(const search *s, double nearest, const plw_error 
 
 /* Say which limit kept the choice from the aim, or stays broken whatever the resistor. */
 static void note_obstacle(const plw_stage *stage, const plw_rating_check *stepped_for, plw_bias_choice *choice) {
-    const plw_rating_check *broken = broken_at_rest(&choice->option[choice->chosen]);
+    const plw_rating_check *broken = broken_at_rest(&choice->option[choice->chosen], false);
     const plw_rating_check *told = stepped_for != NULL ? stepped_for : broken;
     choice->aim_reached = told == NULL;
     if (told != NULL) {

@@ -220,6 +220,19 @@ static void a_voltage_rating_stays_broken_whatever_the_resistor(void **state) {
     assert_false(c.option[c.chosen].within_ratings);
 }
 
+/* A voltage that no resistor cures does not hide heat and current that one does. */
+static void a_broken_voltage_does_not_hide_a_broken_current(void **state) {
+    (void)state;
+    test_tube tube;
+    make_rated(&tube);
+    tube.ratings[0].plate_volts = 180.0;
+    tube.ratings[0].cathode_amps = 30e-3;
+    const plw_stage stage = rated_stage(&tube);
+    const plw_bias_choice c = chosen(&stage, PLW_AIM_DISSIPATION, 90.0, PLW_E24);
+    assert_false(c.aim_reached);
+    assert_true(c.option[c.chosen].quiescent.cathode_amps <= 30e-3);
+}
+
 static void refused(const plw_stage *stage, plw_aim_kind kind, double value, plw_status status, const char *text) {
     plw_bias_choice choice = {.exact_ohms = 2.385};
     plw_error error = {0};
@@ -334,6 +347,7 @@ int main(void) {
         cmocka_unit_test(rounding_never_ends_above_the_rating),
         cmocka_unit_test(a_current_rating_stands_in_the_way),
         cmocka_unit_test(a_voltage_rating_stays_broken_whatever_the_resistor),
+        cmocka_unit_test(a_broken_voltage_does_not_hide_a_broken_current),
         cmocka_unit_test(what_cannot_be_reached_is_said),
         cmocka_unit_test(wrong_aims_are_refused),
         cmocka_unit_test(most_power_is_the_best_of_all_values),
