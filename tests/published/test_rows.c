@@ -5,49 +5,20 @@
  * Tolerances, for a row that entered the fit: plate current 5 %, screen 20 %, gm 8 %, plate resistance 30 % (screened
  * tubes; makers' figures of one type differ by as much between editions) or 10 % (triodes), power 12 %, distortion 2.5
  * percentage points: what makers' rounding and the differences between their editions leave.  A figure that misses is
- * listed below with the reason; the list is exact: an exception that is no longer needed fails too.
+ * listed in known_misses.h with the reason; the list is exact: an exception that is no longer needed fails too.
  * SPDX-License-Identifier: GPL-3.0-or-later */
-#include <string.h>
-
 #include "platewright/fit.h"
+#include "published/known_misses.h"
 #include "rows.h"
 
-typedef struct {
-    const char *type;
-    size_t row;
-    const char *figure;
-    const char *reason;
-    bool met;
-} exception;
-
-#define ROUNDED_BIAS "bias printed to whole volts: half a volt is worth 2 to 4 % of so small a current"
-#define TWO_845                                                                                                        \
-    "52 to 80 mA over 14 V of bias make 2.0 mA/V; the sheets print 3.1 at both: early and late editions mixed"
-
-static exception exceptions[] = {
-    {"300B", 5, "plate current", ROUNDED_BIAS, false},
-    {"300B", 7, "plate current", ROUNDED_BIAS, false},
-    {"300B", 8, "plate current", ROUNDED_BIAS, false},
-    {"300B", 26, "plate current", ROUNDED_BIAS, false},
-    {"845", 2, "gm", TWO_845, false},
-    {"845", 2, "plate resistance", TWO_845, false},
-    {"845", 3, "plate current", TWO_845, false},
-    {"5687", 1, "plate current", "gm falls faster with current over its three rows than any law of the 3/2 power",
-     false},
-    {"EL34", 2, "plate current", "15.5 V at 250 V and 25.9 V at 375 V, both 70 mA, make mu 12; the sheet prints 10.5",
-     false},
-    {"KT66", 0, "gm", "editions print 6300 and 7000 micromhos for one point; both are fitted", false},
-};
+static bool met[PLW_KNOWN_MISSES];
 
 static bool excepted(const char *type, size_t row, const char *figure) {
-    for (size_t index = 0; index < sizeof exceptions / sizeof exceptions[0]; index++) {
-        exception *e = &exceptions[index];
-        if (strcmp(e->type, type) == 0 && e->row == row && strcmp(e->figure, figure) == 0) {
-            e->met = true;
-            return true;
-        }
+    const plw_known_miss *miss = plw_known_miss_of(type, row, figure);
+    if (miss != NULL) {
+        met[miss - plw_known_misses] = true;
     }
-    return false;
+    return miss != NULL;
 }
 
 typedef struct {
@@ -105,10 +76,10 @@ static void check_row(context *c) {
 
 static int report_unmet_exceptions(void) {
     int failures = 0;
-    for (size_t index = 0; index < sizeof exceptions / sizeof exceptions[0]; index++) {
-        if (!exceptions[index].met) {
-            print_error("%s row %zu %s: no longer an exception\n", exceptions[index].type, exceptions[index].row,
-                        exceptions[index].figure);
+    for (size_t index = 0; index < PLW_KNOWN_MISSES; index++) {
+        if (!met[index]) {
+            print_error("%s row %zu %s: no longer an exception\n", plw_known_misses[index].type,
+                        plw_known_misses[index].row, plw_known_misses[index].figure);
             failures++;
         }
     }
