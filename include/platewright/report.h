@@ -6,6 +6,7 @@
 
 #include "platewright/bias.h"
 #include "platewright/specimen.h"
+#include "platewright/uncertainty.h"
 
 #ifdef __cplusplus
 extern "C" {
@@ -17,6 +18,7 @@ typedef struct {
     const plw_bias_choice *choice; /* design; NULL in check */
     const plw_bias_option *option; /* what the stage does: the chosen option, or the stage as built */
     const plw_specimen *specimen;  /* check with meter readings */
+    const plw_uncertainty *uncertainty;
     plw_series series;
 } plw_answer;
 

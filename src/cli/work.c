@@ -145,13 +145,20 @@ plw_status cli_work_save(const cli_work *work, plw_error *error) {
 plw_status cli_work_answer(const cli_work *work, const plw_answer *answer, plw_error *error) {
     const char *format = cli_argument(work->arguments, "format");
     char *text = NULL;
+    plw_uncertainty uncertainty;
+    plw_answer full = *answer;
+    /* Without it the answer still stands: a stage at the edge of its supply's readings may not bear a stronger tube. */
+    if (plw_uncertainty_estimate(answer->stage, &answer->option->quiescent, &answer->option->signal, &uncertainty,
+                                 NULL) == PLW_OK) {
+        full.uncertainty = &uncertainty;
+    }
     plw_status status = PLW_OK;
     if (format == NULL || strcmp(format, "text") == 0) {
-        status = plw_report_text(answer, &text, error);
+        status = plw_report_text(&full, &text, error);
     } else if (strcmp(format, "json") == 0) {
-        status = plw_report_json(answer, &text, error);
+        status = plw_report_json(&full, &text, error);
     } else {
-        status = plw_report_csv(answer, &text, error);
+        status = plw_report_csv(&full, &text, error);
     }
     if (status == PLW_OK) {
         status = cli_put(text, cli_argument(work->arguments, "output"), error);

@@ -23,8 +23,10 @@
 /* What capacitors must stand: the mains may be a tenth high.  Common practice, no source. */
 #define HIGH_MAINS 1.1
 
-/* Volts and amperes this far beyond the printed ones are not called extrapolated.  Common practice, no source. */
-#define REGION_MARGIN 0.05
+/* Volts within these parts of the printed ones are not called extrapolated: the range for which the RCA receiving tube
+ * manuals call their conversion to other voltages good (from memory). */
+#define REGION_LEAST 0.7
+#define REGION_MOST 1.5
 
 /* A screen that runs at this share of its rating under drive is worth a word. */
 #define SCREEN_NEAR 0.8
@@ -76,8 +78,10 @@ static void of_ratings(list *l, const plw_bias_option *option) {
         written(check->limit, check->unit, limit);
         const char *when = check->when == PLW_AT_IDLE ? "idle" : "full drive";
         if (!check->ok) {
-            say(l, "Rating exceeded at %s: %s is %s, the limit %s (%.0f %%). Do not build it so.", when, check->name,
-                value, limit, check->share_percent);
+            say(l, "Rating exceeded at %s: %s is %s, the limit %s (%.0f %%). %s", when, check->name, value, limit,
+                check->share_percent,
+                check->when == PLW_AT_IDLE ? "Do not build it so."
+                                           : "Speech and music heat less than this steady tone.");
         } else if (check->share_percent >= NEAR_PERCENT) {
             say(l, "At %s the %s is %s of a rated %s: nothing is left for high mains or a strong tube.", when,
                 check->name, value, limit);
@@ -153,9 +157,9 @@ static void of_bias(list *l, const plw_answer *answer) {
     }
 }
 
-/* A law is good for a little more than the data it came from. */
+/* A law is good for somewhat more than the data it came from. */
 static bool outside(double value, double least, double most) {
-    return value < (1.0 - REGION_MARGIN) * least || value > (1.0 + REGION_MARGIN) * most; /* false: bounds not known */
+    return value < REGION_LEAST * least || value > REGION_MOST * most; /* false: bounds not known */
 }
 
 static void of_region(list *l, const plw_answer *answer) {
@@ -264,7 +268,7 @@ static void standing(list *l) {
     say(l, "Local codes and the judgement of a licensed practitioner go before anything said here.");
 }
 
-size_t plw_report_cautions(const plw_answer *answer, char (*lines)[PLW_CAUTION_SIZE], size_t most) {
+size_t plw_report_cautions(const plw_answer *answer, char (*lines)[PLW_CAUTION_SIZE], size_t most, size_t *own) {
     list l = {lines, most, 0};
     if (answer->choice != NULL && !answer->choice->aim_reached && answer->choice->obstacle[0] != '\0') {
         say(&l, "The aim is not reached: %s", answer->choice->obstacle);
@@ -276,6 +280,9 @@ size_t plw_report_cautions(const plw_answer *answer, char (*lines)[PLW_CAUTION_S
     of_region(&l, answer);
     of_model(&l, answer);
     of_voltages(&l, answer);
+    if (own != NULL) {
+        *own = l.count;
+    }
     standing(&l);
     return l.count;
 }

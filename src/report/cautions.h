@@ -11,7 +11,8 @@ enum { PLW_CAUTION_SIZE = 512, PLW_CAUTIONS_MOST = 40 };
 
 /* One sentence or two a line, UTF-8, without a line break; the stage's own first, then the standing ones.
  * In:   most: room in lines; PLW_CAUTIONS_MOST is always enough
+ * Out:  *own, when not NULL: how many are this stage's own
  * Ret:  how many were written */
-size_t plw_report_cautions(const plw_answer *answer, char (*lines)[PLW_CAUTION_SIZE], size_t most);
+size_t plw_report_cautions(const plw_answer *answer, char (*lines)[PLW_CAUTION_SIZE], size_t most, size_t *own);
 
 #endif

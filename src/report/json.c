@@ -183,6 +183,28 @@ static void put_supply(const sink *root, const plw_answer *answer) {
     }
 }
 
+static void put_deviation(const sink *s, const char *name, const plw_deviation *deviation) {
+    const sink d = object_in(s, name);
+    put_number(&d, "model", deviation->model);
+    put_number(&d, "tubes", deviation->tubes);
+    put_number(&d, "both", deviation->both);
+}
+
+/* One standard deviation of the main figures, in their own units. */
+static void put_uncertainty(const sink *root, const plw_uncertainty *u) {
+    if (u == NULL) {
+        return;
+    }
+    const sink s = object_in(root, "uncertainty");
+    put_deviation(&s, "plate_amps", &u->plate_amps);
+    put_deviation(&s, "plate_watts", &u->plate_watts);
+    put_deviation(&s, "cathode_volts", &u->cathode_volts);
+    put_deviation(&s, "speaker_watts", &u->speaker_watts);
+    put_number(&s, "model_percent", u->model_percent);
+    put(&s, "dominated_by", json_string(u->model_dominates ? "model" : "tubes"));
+    put(&s, "outside_data", u->outside_data ? json_string(u->outside) : json_null());
+}
+
 static void put_specimen_choice(const sink *s, const plw_specimen *specimen) {
     const sink resistor = object_in(s, "suitable_resistor");
     const plw_bias_choice *choice = &specimen->choice;
@@ -242,7 +264,7 @@ static void put_cautions(const sink *root, const plw_answer *answer) {
     if (lines == NULL) {
         *root->failed = true;
     } else {
-        const size_t count = plw_report_cautions(answer, lines, PLW_CAUTIONS_MOST);
+        const size_t count = plw_report_cautions(answer, lines, PLW_CAUTIONS_MOST, NULL);
         for (size_t i = 0; i < count; i++) {
             append(cautions, json_string(lines[i]), root->failed);
         }
@@ -263,6 +285,7 @@ static json_t *answer_object(const plw_answer *answer) {
     put_ratings(&root, answer->option);
     put(&root, "choices", choices_array(answer->choice, answer->stage->parallel, &failed));
     put_specimen(&root, answer->specimen);
+    put_uncertainty(&root, answer->uncertainty);
     put_cautions(&root, answer);
     if (failed) {
         json_decref(root.object);

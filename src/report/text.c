@@ -9,7 +9,7 @@
 #include "report/cautions.h"
 #include "report/text_buffer.h"
 
-enum { CELL = 32, CAUTIONS_MOST = 40, CAUTION_SIZE = 512, WIDTH = 78 };
+enum { CELL = 32, WIDTH = 78 };
 
 /* One quantity as text; each use in a call needs a cell of its own. */
 typedef struct {
@@ -138,7 +138,9 @@ static void bias_lines(FILE *out, const plw_answer *a) {
 static void meter_line(FILE *out, const char *name, double rest, double driven) {
     fprintf(out, "  %-11s", name);
     right(out, volts(rest).text, 12);
-    right(out, isfinite(driven) ? volts(driven).text : "", 16);
+    if (isfinite(driven)) {
+        right(out, volts(driven).text, 16);
+    }
     fputc('\n', out);
 }
 
@@ -305,29 +307,55 @@ static void ideal_line(FILE *out, const plw_answer *a) {
     paragraph(out, "", text);
 }
 
-static void trust_line(FILE *out, const plw_answer *a) {
+static const char *deviation_text(double value, plw_unit unit, cell *c) {
+    plw_quantity_format(value, unit, 2, c->text, sizeof c->text);
+    return c->text;
+}
+
+/* How far the answer may be off, and by what. */
+static void trust_lines(FILE *out, const plw_answer *a) {
     const plw_model *m = &a->stage->tube->model;
-    char text[256];
-    snprintf(text, sizeof text, "Model: within %.1f %% of the printed plate currents",
-             m->fit_error.plate_current_percent);
-    size_t used = strlen(text);
-    if (isfinite(m->left_out_error.plate_current_percent)) {
-        used += (size_t)snprintf(text + used, sizeof text - used, ", %.1f %% of rows left out of the fit (medians)",
-                                 m->left_out_error.plate_current_percent);
+    const plw_uncertainty *u = a->uncertainty;
+    char text[512];
+    if (u != NULL) {
+        cell current;
+        cell heat;
+        cell power;
+        cell by_tubes;
+        cell by_model;
+        snprintf(
+            text, sizeof text,
+            "How sure: plate current +/- %s (tubes of one type %s, model %s), plate dissipation +/- %s, power +/- %s: "
+            "two in three amplifiers lie within; the %s counts most.",
+            deviation_text(u->plate_amps.both, PLW_UNIT_AMPERE, &current),
+            deviation_text(u->plate_amps.tubes, PLW_UNIT_AMPERE, &by_tubes),
+            deviation_text(u->plate_amps.model, PLW_UNIT_AMPERE, &by_model),
+            deviation_text(u->plate_watts.both, PLW_UNIT_WATT, &heat),
+            deviation_text(u->speaker_watts.both, PLW_UNIT_WATT, &power),
+            u->model_dominates ? "model" : "spread of tubes");
+        paragraph(out, "", text);
     }
-    snprintf(text + used, sizeof text - used, "; tubes of one type differ by 20 %% or more.");
     if (isfinite(m->fit_error.plate_current_percent)) {
+        int used = snprintf(text, sizeof text, "Model: within %.1f %% of the printed plate currents it was fitted to",
+                            m->fit_error.plate_current_percent);
+        if (isfinite(m->left_out_error.plate_current_percent)) {
+            used += snprintf(text + used, sizeof text - (size_t)used, ", %.1f %% of those left out",
+                             m->left_out_error.plate_current_percent);
+        }
+        snprintf(text + used, sizeof text - (size_t)used, " (medians).");
         paragraph(out, "", text);
     }
 }
 
 static void caution_lines(FILE *out, const plw_answer *a) {
-    static const size_t most = CAUTIONS_MOST;
-    char lines[CAUTIONS_MOST][CAUTION_SIZE];
-    const size_t count = plw_report_cautions(a, lines, most);
-    fputs("\nCAUTIONS\n", out);
+    char lines[PLW_CAUTIONS_MOST][PLW_CAUTION_SIZE];
+    size_t own = 0;
+    const size_t count = plw_report_cautions(a, lines, PLW_CAUTIONS_MOST, &own);
     for (size_t index = 0; index < count; index++) {
-        paragraph(out, "  ! ", lines[index]);
+        if (index == 0 || index == own) {
+            fputs(index < own ? "\nWARNINGS\n" : "\nCAUTIONS\n", out);
+        }
+        paragraph(out, index < own ? "  ! " : "  - ", lines[index]);
     }
 }
 
@@ -347,7 +375,7 @@ plw_status plw_report_text(const plw_answer *answer, char **text, plw_error *err
     neighbour_lines(out, answer);
     specimen_lines(out, answer);
     ideal_line(out, answer);
-    trust_line(out, answer);
+    trust_lines(out, answer);
     caution_lines(out, answer);
     return plw_text_end(&buffer, PLW_OK, text, error);
 }

@@ -471,7 +471,7 @@ static void numbers_are_written_alike(void **state) {
 static char lines[PLW_CAUTIONS_MOST][PLW_CAUTION_SIZE];
 
 static bool warned(const plw_answer *answer, const char *words) {
-    const size_t count = plw_report_cautions(answer, lines, PLW_CAUTIONS_MOST);
+    const size_t count = plw_report_cautions(answer, lines, PLW_CAUTIONS_MOST, NULL);
     assert_true(count > 4 && count < PLW_CAUTIONS_MOST);
     for (size_t i = 0; i < count; i++) {
         if (strstr(lines[i], words) != NULL) {
@@ -584,8 +584,8 @@ static void cautions_are_cut_between_characters(void **state) {
     json_t *root = parsed(&s.answer);
     assert_non_null(strstr(json_string_value(at(root, "cautions.0")), "The aim is not reached: \xE2\x84\xA6"));
     json_decref(root);
-    assert_int_equal(plw_report_cautions(&s.answer, lines, 2), 2);
-    assert_int_equal(plw_report_cautions(&s.answer, lines, 0), 0);
+    assert_int_equal(plw_report_cautions(&s.answer, lines, 2, NULL), 2);
+    assert_int_equal(plw_report_cautions(&s.answer, lines, 0, NULL), 0);
 }
 
 int main(void) {
