@@ -2,13 +2,11 @@
  * SPDX-License-Identifier: GPL-3.0-or-later */
 #include "platewright/fit.h"
 
-#include <gsl/gsl_blas.h>
-#include <gsl/gsl_errno.h>
-#include <gsl/gsl_multifit_nlinear.h>
 #include <math.h>
 #include <stdint.h>
 #include <string.h>
 
+#include "base/least_squares.h"
 #include "tube/fit_data.h"
 #include "tube/fit_prior.h"
 
@@ -21,67 +19,19 @@ typedef struct {
     size_t coefficients;
 } problem;
 
-static plw_law law_of(const problem *p, const gsl_vector *place) {
-    double coordinates[PLW_LAW_COEFFICIENTS_MOST];
-    for (size_t index = 0; index < p->coefficients; index++) {
-        coordinates[index] = gsl_vector_get(place, index);
-    }
-    return plw_law_at_coordinates(p->kind, coordinates);
-}
-
 /* Residuals: the observations first, then what is known beforehand of each coefficient. */
-static int residuals(const gsl_vector *place, void *context, gsl_vector *out) {
+static void residuals(const double *place, void *context, double *residual) {
     const problem *p = context;
-    const plw_law law = law_of(p, place);
+    const plw_law law = plw_law_at_coordinates(p->kind, place);
     double predicted[PLW_RESIDUALS_MOST];
     plw_observations_predict(p->observations, &law, predicted);
     const size_t count = p->observations->count;
     for (size_t index = 0; index < count; index++) {
-        gsl_vector_set(out, index, plw_observation_residual(&p->observations->observation[index], predicted[index]));
+        residual[index] = plw_observation_residual(&p->observations->observation[index], predicted[index]);
     }
     for (size_t index = 0; index < p->coefficients; index++) {
-        const double expected = p->prior->expected[index];
-        gsl_vector_set(out, count + index, (gsl_vector_get(place, index) - expected) / p->prior->deviation[index]);
+        residual[count + index] = (place[index] - p->prior->expected[index]) / p->prior->deviation[index];
     }
-    return GSL_SUCCESS;
-}
-
-/* One run of Levenberg-Marquardt.
- * Out:  on success sum of squares, coefficients and (wanted) the standard errors of their coordinates */
-static bool run(problem *p, gsl_multifit_nlinear_workspace *work, gsl_vector *start, double *sum_of_squares,
-                plw_law *law, double *coordinate_error) {
-    gsl_multifit_nlinear_fdf functions = {
-        .f = residuals,
-        .n = p->observations->count + p->coefficients,
-        .p = p->coefficients,
-        .params = p,
-    };
-    if (gsl_multifit_nlinear_init(start, &functions, work) != GSL_SUCCESS) {
-        return false;
-    }
-    int info = 0;
-    const int status = gsl_multifit_nlinear_driver(ITERATIONS_MOST, 1e-8, 1e-8, 0.0, NULL, NULL, &info, work);
-    if (status != GSL_SUCCESS && status != GSL_EMAXITER && status != GSL_ENOPROG) {
-        return false;
-    }
-    const gsl_vector *rest = gsl_multifit_nlinear_residual(work);
-    gsl_blas_ddot(rest, rest, sum_of_squares);
-    if (!isfinite(*sum_of_squares)) {
-        return false;
-    }
-    *law = law_of(p, gsl_multifit_nlinear_position(work));
-    if (coordinate_error != NULL) {
-        gsl_matrix *covariance = gsl_matrix_alloc(p->coefficients, p->coefficients);
-        if (covariance == NULL) {
-            return false;
-        }
-        gsl_multifit_nlinear_covar(gsl_multifit_nlinear_jac(work), 0.0, covariance);
-        for (size_t index = 0; index < p->coefficients; index++) {
-            coordinate_error[index] = sqrt(gsl_matrix_get(covariance, index, index));
-        }
-        gsl_matrix_free(covariance);
-    }
-    return true;
 }
 
 /* Perveance of the start: the printed plate currents, met on average. */
@@ -102,64 +52,53 @@ static void scale_start(const problem *p, plw_law *start) {
     }
 }
 
-/* Fit from the law near by, or from every start, and keep the best. */
-static plw_status best_fit(problem *p, const plw_law *near, plw_law *law, double *coordinate_error,
-                           double *sum_of_squares, plw_error *error) {
-    gsl_multifit_nlinear_parameters parameters = gsl_multifit_nlinear_default_parameters();
-    parameters.h_df = 1e-5; /* of a logarithm: larger than the solver's own noise, small against its curvature */
-    const size_t n = p->observations->count + p->coefficients;
-    gsl_multifit_nlinear_workspace *work =
-        gsl_multifit_nlinear_alloc(gsl_multifit_nlinear_trust, &parameters, n, p->coefficients);
-    gsl_vector *start = gsl_vector_alloc(p->coefficients);
-    if (work == NULL || start == NULL) {
-        gsl_multifit_nlinear_free(work);
-        gsl_vector_free(start);
-        return plw_fail(error, PLW_E_NO_MEMORY, "fit: out of memory");
-    }
-    bool found = false;
-    const size_t starts = near != NULL ? 1 : PLW_STARTS;
-    for (size_t attempt = 0; attempt < starts; attempt++) {
+/* Fit from the law near by, or from every start, and keep the best.
+ * Out:  *law, covariance[coefficients * coefficients] of its coordinates (may be NULL) */
+static plw_status best_fit(problem *p, const plw_law *near, plw_law *law, double *covariance, plw_error *error) {
+    const plw_least_squares core = {
+        .residuals = residuals,
+        .context = p,
+        .n = p->observations->count + p->coefficients,
+        .p = p->coefficients,
+        .difference_step = 1e-5, /* of a logarithm: larger than the solver's own noise, small against its curvature */
+        .iterations_most = ITERATIONS_MOST,
+        .tol_step = 1e-8,
+        .tol_gradient = 1e-8,
+    };
+    const size_t count = near != NULL ? 1 : PLW_STARTS;
+    double starts[PLW_STARTS * PLW_LAW_COEFFICIENTS_MOST];
+    for (size_t attempt = 0; attempt < count; attempt++) {
         plw_law trial = near != NULL ? *near : plw_prior_start(p->observations, p->prior, attempt);
         if (near == NULL) {
             scale_start(p, &trial);
         }
-        double coordinates[PLW_LAW_COEFFICIENTS_MOST];
-        plw_law_coordinates(&trial, coordinates);
-        for (size_t index = 0; index < p->coefficients; index++) {
-            gsl_vector_set(start, index, coordinates[index]);
-        }
-        double squares;
-        double errors[PLW_LAW_COEFFICIENTS_MOST];
-        if (run(p, work, start, &squares, &trial, coordinate_error != NULL ? errors : NULL) &&
-            (!found || squares < *sum_of_squares)) {
-            found = true;
-            *law = trial;
-            *sum_of_squares = squares;
-            if (coordinate_error != NULL) {
-                memcpy(coordinate_error, errors, sizeof errors);
-            }
-        }
+        plw_law_coordinates(&trial, starts + attempt * p->coefficients);
     }
-    gsl_multifit_nlinear_free(work);
-    gsl_vector_free(start);
-    return found ? PLW_OK : plw_fail(error, PLW_E_NO_CONVERGENCE, "fit: no start came to an end");
+    double place[PLW_LAW_COEFFICIENTS_MOST];
+    plw_least_squares_end end;
+    const plw_status status = plw_least_squares_solve(&core, starts, count, place, covariance, &end, error);
+    if (status == PLW_OK) {
+        *law = plw_law_at_coordinates(p->kind, place);
+    }
+    return status;
 }
 
 static plw_status fit_observations(const plw_observations *observations, const plw_law *near, plw_law *law,
-                                   double *relative_error, double *sum_of_squares, plw_error *error) {
+                                   double *relative_error, double *covariance, plw_error *error) {
     const plw_prior prior = plw_prior_for(observations);
     const plw_law_kind kind = observations->screened ? PLW_LAW_PENTODE : PLW_LAW_TRIODE;
     problem p = {observations, &prior, kind, plw_law_coefficient_count(kind)};
-    const plw_status status = best_fit(&p, near, law, relative_error, sum_of_squares, error);
-    if (status == PLW_OK && relative_error != NULL) {
-        for (size_t index = 0; index < p.coefficients; index++) {
-            /* Where the rows hardly narrow what was expected beforehand, they do not determine the coefficient. */
-            const bool determined = relative_error[index] <= 0.8 * prior.deviation[index];
-            relative_error[index] =
-                determined ? plw_coordinate_error_relative(law, index, relative_error[index]) : (double)NAN;
-        }
+    const plw_status status = best_fit(&p, near, law, covariance, error);
+    if (status != PLW_OK || covariance == NULL) {
+        return status;
     }
-    return status;
+    for (size_t index = 0; index < p.coefficients; index++) {
+        const double deviation = sqrt(covariance[index * p.coefficients + index]);
+        /* Where the rows hardly narrow what was expected beforehand, they do not determine the coefficient. */
+        const bool determined = deviation <= 0.8 * prior.deviation[index];
+        relative_error[index] = determined ? plw_coordinate_error_relative(law, index, deviation) : (double)NAN;
+    }
+    return PLW_OK;
 }
 
 plw_status plw_fit_without(const plw_tube *tube, size_t row, bool without_triode_connection, const plw_law *near,
@@ -173,8 +112,7 @@ plw_status plw_fit_without(const plw_tube *tube, size_t row, bool without_triode
     if (!has_current) {
         return plw_fail(error, PLW_E_DATA, "%s: nothing is left to fit", tube->type);
     }
-    double squares;
-    return fit_observations(&observations, near, law, NULL, &squares, error);
+    return fit_observations(&observations, near, law, NULL, NULL, error);
 }
 
 static void list_residuals(const plw_observations *observations, const plw_law *law, plw_fit *fit) {
@@ -228,9 +166,9 @@ plw_status plw_fit_tube(const plw_tube *tube, bool leave_out, plw_fit *fit, plw_
                         tube->type, observations.count);
     }
     memset(fit, 0, sizeof *fit);
-    double squares;
+    double covariance[PLW_LAW_COEFFICIENTS_MOST * PLW_LAW_COEFFICIENTS_MOST];
     const plw_status status =
-        fit_observations(&observations, NULL, &fit->model.law, fit->model.relative_error, &squares, error);
+        fit_observations(&observations, NULL, &fit->model.law, fit->model.relative_error, covariance, error);
     if (status != PLW_OK) {
         return status;
     }
