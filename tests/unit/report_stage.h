@@ -117,7 +117,10 @@ static inline void stage_solve(solved_stage *s) {
         fail_msg("%s", error.text);
     }
     s->stage.cathode_resistor_ohms = s->choice.option[s->choice.chosen].ohms;
-    s->answer = (plw_answer){&s->stage, &s->choice, &s->choice.option[s->choice.chosen], NULL, PLW_E24};
+    s->answer = (plw_answer){.stage = &s->stage,
+                             .choice = &s->choice,
+                             .option = &s->choice.option[s->choice.chosen],
+                             .series = PLW_E24};
 }
 
 #endif
