@@ -75,7 +75,7 @@ static double choke_volts(const plw_rectifier *s, double emf, double amps) {
     }
     double low = -fabs(emf) - 100 - s->path_ohms * amps, high = fabs(emf) + 10;
     double over = rectified_amps(s, emf, low) - amps, under = rectified_amps(s, emf, high) - amps;
-    for (int i = 0; i < 100 && high - low > 1e-9; i++) {
+    for (int i = 0; i < 150 && high - low > 1e-12; i++) {
         const double middle = i % 3 == 2 ? (low + high) / 2 : (low * under - high * over) / (under - over);
         const double excess = rectified_amps(s, emf, middle) - amps;
         if (excess > 0) {
@@ -249,6 +249,8 @@ static void settle(circuit *c, settled *out) {
         assert_int_equal(CVodeRootInit(solver, 1, switching), CV_SUCCESS);
         assert_int_equal(CVodeSetRootDirection(solver, &falling), CV_SUCCESS);
     }
+    /* The solver's own noise at the switchings of a choke input is larger. */
+    const double quiet = (c->supply.reservoir_farads > 0 ? 1e-7 : 1e-6) * c->supply.winding_rms_volts;
     int still = 0; /* periods in a row in which hardly anything moved: slow swings of a choke pass through rest */
     for (long period = 0; period < 6000 && still < STILL_PERIODS; period++) {
         run_period(solver, c, x, equations);
@@ -257,7 +259,7 @@ static void settle(circuit *c, settled *out) {
             moved = fmax(moved, fabs(values[i] - before[i]));
         }
         memcpy(before, values, c->states * sizeof(double));
-        still = moved < 1e-7 * c->supply.winding_rms_volts ? still + 1 : 0;
+        still = moved < quiet ? still + 1 : 0;
     }
     const double seconds = 1 / c->supply.mains_hertz, *sums = values + c->states;
     for (size_t k = 0; k < nodes; k++) {
