@@ -540,8 +540,8 @@ static void conditions_have_their_cautions(void **state) {
     assert_true(warned(&s.answer, "2 tubes share one cathode resistor"));
     s.stage.resistor_each = true;
     assert_false(warned(&s.answer, "share one"));
-    option.quiescent.plate_volts = 437;
-    assert_true(warned(&s.answer, "at rest: plate volts 437 V (printed: 100 V to 400 V)."));
+    option.quiescent.plate_volts = 637;
+    assert_true(warned(&s.answer, "at rest: plate volts 637 V (printed: 100 V to 400 V)."));
     s.stage.fixed_bias_volts = -9.7;
     assert_true(warned(&s.answer, "With fixed bias"));
 }
