@@ -207,14 +207,15 @@ static double kept_power(const plw_stage *stage, double ohms, plw_bias_option *o
 static bool choose_most_power(const plw_stage *stage, plw_series series, plw_bias_choice *choice) {
     plw_bias_option best = {0};
     double best_watts = 0.0;
-    for (double ohms = plw_preferred_at_least(LEAST_OHMS, series); ohms <= 1e5;
-         ohms = plw_preferred_step(ohms, 1, series)) {
+    double trial_ohms = plw_preferred_at_least(LEAST_OHMS, series);
+    while (trial_ohms <= 1e5) {
         plw_bias_option option;
-        const double watts = kept_power(stage, ohms, &option);
+        const double watts = kept_power(stage, trial_ohms, &option);
         if (watts > best_watts) {
             best_watts = watts;
             best = option;
         }
+        trial_ohms = plw_preferred_step(trial_ohms, 1, series);
     }
     if (!(best_watts > 0.0)) {
         return false;

@@ -157,7 +157,7 @@ static bool newton_step(const network *net, plw_instant *point, balance *b) {
     const plw_instant before = *point;
     const double size = b->size;
     double part = 1.0;
-    for (int halving = 0; halving < HALVINGS_MOST; halving++, part *= 0.5) {
+    for (int halving = 0; halving < HALVINGS_MOST; halving++) {
         for (int flow = 0; flow < PLW_FLOWS; flow++) {
             const double amps = before.amps[flow] - part * step[flow];
             point->amps[flow] = amps > 0.0 ? amps : 0.0;
@@ -166,6 +166,7 @@ static bool newton_step(const network *net, plw_instant *point, balance *b) {
         if (b->size < size || b->size == 0.0) {
             return true;
         }
+        part *= 0.5;
     }
     return false;
 }

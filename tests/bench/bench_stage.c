@@ -116,7 +116,7 @@ int main(void) {
     name[count] = "pentode, unbypassed";
     stage[count] = pentode_stage(&pentode);
     stage[count++].unbypassed = true;
-    double sink = 0.0, ratio[STAGES_MOST];
+    double sink = 0.0, ratio[STAGES_MOST] = {0};
     printf("One complete stage in evaluations of the bare plate law (goal: at most 150), medians of %d\n", REPETITIONS);
     for (size_t index = 0; index < count; index++) {
         ratio[index] = measure(name[index], &stage[index], &sink);

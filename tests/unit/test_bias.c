@@ -289,13 +289,14 @@ static void check_best(const plw_stage *stage, plw_series series) {
     assert_true(c.aim_reached);
     double best = 0.0, best_ohms = 0.0;
     double ohms = 1.0;
-    for (; ohms <= 1e6; ohms = plw_preferred_step(ohms, 1, series)) {
+    while (ohms <= 1e6) {
         plw_bias_option option;
         if (plw_bias_option_solve(stage, ohms, &option, NULL) == PLW_OK && option.within_ratings &&
             option.signal.speaker_watts > best) {
             best = option.signal.speaker_watts;
             best_ohms = ohms;
         }
+        ohms = plw_preferred_step(ohms, 1, series);
     }
     const plw_bias_option *option = &c.option[c.chosen];
     assert_near(option->ohms, best_ohms, 0.0, "exhaustive scan");

@@ -58,8 +58,10 @@ static void check_derivatives_at(const plw_law *law, const double volts[3]) {
     const double grid[3] = {0.0, 0.0, c.grid_by_grid};
     for (int which = BY_PLATE; which <= BY_GRID; which++) {
         const double step = 2e-4 * fabs(volts[which]);
-        const plw_currents up = moved(law, volts, which, step), down = moved(law, volts, which, -step);
-        const plw_currents far_up = moved(law, volts, which, 2 * step), far_down = moved(law, volts, which, -2 * step);
+        const plw_currents up = moved(law, volts, (electrode)which, step),
+                           down = moved(law, volts, (electrode)which, -step);
+        const plw_currents far_up = moved(law, volts, (electrode)which, 2 * step),
+                           far_down = moved(law, volts, (electrode)which, -2 * step);
         /* The argument itself is rounded: the currents are known to their slope times its last digit. */
         const double plate_amps = fabs(c.plate_amps) + fabs(plate[which] * volts[which]);
         const double screen_amps =
@@ -187,7 +189,8 @@ static void no_plate_current_without_plate_volts(void **state) {
         const plw_law law = law_number(index);
         static const double plates[] = {0.0, -1e-12, -2.385, -250.0};
         for (size_t p = 0; p < sizeof plates / sizeof plates[0]; p++) {
-            for (double grid = -20.0; grid <= 20.0; grid += 3.7) {
+            for (int step = 0; step < 11; step++) {
+                const double grid = -20.0 + 3.7 * step;
                 plw_currents c;
                 plw_law_evaluate(&law, plates[p], 251.0, grid, &c);
                 assert_near(c.plate_amps, 0.0, 0.0, "zero plate current at and below zero plate volts");
@@ -204,8 +207,10 @@ static void the_plate_current_rises_with_every_voltage(void **state) {
     for (int index = 0; index < LAWS; index++) {
         const plw_law law = law_number(index);
         /* Within the knee's foot, about the first volt, the grid pushes the knee out faster than the current up. */
-        for (double plate = 2.5; plate < 900.0; plate *= 1.7) {
-            for (double grid = -60.0; grid <= 5.0; grid += 4.3) {
+        for (int step = 0; step < 12; step++) {
+            const double plate = 2.5 * pow(1.7, step);
+            for (int bias = 0; bias < 16; bias++) {
+                const double grid = -60.0 + 4.3 * bias;
                 plw_currents c;
                 plw_law_evaluate(&law, plate, 213.0, grid, &c);
                 assert_true(c.plate_by_plate >= 0.0);
@@ -219,12 +224,13 @@ static void the_screen_takes_over_as_the_plate_swings_low(void **state) {
     (void)state;
     for (int which = 0; which < TEST_PENTODES; which++) {
         const plw_law law = pentode_law(which);
-        plw_currents high, low;
+        plw_currents high, low = {0};
         plw_law_evaluate(&law, 250.0, 250.0, -1.3, &high);
         /* A little plate field reaches the cathode, so far above the knee the screen follows the plate up by a trace;
          * from the knee down it must rise all the way. */
         double last = high.screen_amps;
-        for (double plate = 40.0; plate >= 0.5; plate *= 0.9) {
+        for (int step = 0; step < 42; step++) {
+            const double plate = 40.0 * pow(0.9, step);
             plw_law_evaluate(&law, plate, 250.0, -1.3, &low);
             assert_true(low.screen_amps > last || plate > 36.0);
             last = low.screen_amps;

@@ -171,8 +171,8 @@ static void check_limit(int number, const plw_stage *stage, const plw_quiescent 
 }
 
 static void check_stage(int number, const plw_stage *stage) {
-    plw_quiescent q;
-    plw_signal s;
+    plw_quiescent q = {0};
+    plw_signal s = {0};
     plw_error error = {0};
     if (plw_quiescent_solve(stage, &q, &error) != PLW_OK || plw_signal_solve(stage, &q, &s, &error) != PLW_OK) {
         fail_stage(number, stage, error.text, 0.0, 0.0);
