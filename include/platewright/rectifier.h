@@ -122,6 +122,10 @@ PLW_API plw_diode plw_diode_vacuum(double volts, double amps);
  * Ret:  PLW_OK, or PLW_E_USAGE naming the first part that is not, and what would be right */
 PLW_API plw_status plw_rectifier_validate(const plw_rectifier *supply, plw_error *error) PLW_MUST_USE;
 
+/* The same supply at another mains voltage.
+ * In:   mains_percent: of nominal, > 0 (90, 110) */
+PLW_API plw_rectifier plw_rectifier_at_mains(const plw_rectifier *supply, double mains_percent);
+
 /* The periodic steady state, found directly: one mains period (half of one, when both halves are alike) is mapped onto
  * the next with its derivative, and Newton's method finds the state that comes back to itself.  With silicon the
  * network is integrated exactly from one switching to the next; with a vacuum rectifier the network is exact and the
@@ -129,11 +133,13 @@ PLW_API plw_status plw_rectifier_validate(const plw_rectifier *supply, plw_error
  * Out:  *state; not written unless PLW_OK
  * Ret:  PLW_OK; PLW_E_USAGE: outside the domain; PLW_E_NO_POINT: the supply cannot deliver that current;
  *       PLW_E_NO_CONVERGENCE; PLW_E_NO_MEMORY
- * Accuracy: silicon about 1e-9 of the voltage, vacuum about 1e-6; of RMS currents 1e-5.  Checked against closed forms
- *       and against a general stiff ODE solver in tests/published/test_rectifier_*.c.
+ * Accuracy: of volts, silicon about 1e-9, vacuum 1e-7 (choke input 5e-6); of RMS and peak currents 1e-5; of peak
+ *       inverse volts 1e-4.  Ripple and capacitor currents suffer where a section's time constant is below a degree of
+ * the mains.  Checked against closed forms and against a general stiff ODE solver in
+ *       tests/published/test_rectifier_*.c.
  * Sources: T. J. Aprille and T. N. Trick, "Steady-state analysis of nonlinear circuits with periodic inputs", Proc.
- * IEEE 60, 1972 (Newton on the period map); E. Hairer and G. Wanner, "Solving Ordinary Differential Equations II", 1991
- * (Radau IIA); both from memory. */
+ *       IEEE 60, 1972 (Newton on the period map); E. Hairer and G. Wanner, "Solving Ordinary Differential Equations
+ * II", 1991 (Radau IIA); both from memory. */
 PLW_API plw_status plw_rectifier_steady(const plw_rectifier *supply, plw_dc_load load, plw_rectifier_state *state,
                                         plw_error *error) PLW_MUST_USE;
 

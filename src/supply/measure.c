@@ -125,22 +125,22 @@ static void path_amps(const plw_engine *engine, const plw_piece *piece, const cu
     }
 }
 
-/* Reverse voltage on the diode that does not conduct. */
-static void note_inverse(const plw_engine *engine, const plw_piece *piece, const double *state, double angle,
-                         tally *sum) {
+/* Reverse voltage on the diode that does not conduct, at a place of the piece. */
+static double inverse_volts(const plw_engine *engine, const plw_piece *piece, double t) {
     const plw_rectifier_law *law = &engine->network.law;
+    const double angle = piece->angle[0] + t * (piece->angle[1] - piece->angle[0]);
     const double emf = plw_engine_emf(engine, angle);
-    double out = state[0];
+    const cubic first = piece_state(piece, 0);
+    double out = cubic_at(&first, t);
     if (engine->network.choke_input) {
-        out = plw_engine_input(engine, piece->mode, angle, state);
+        const cubic beyond = piece_state(piece, 1);
+        const double states[2] = {out, cubic_at(&beyond, t)};
+        out = plw_engine_input(engine, piece->mode, angle, states);
     }
-    double inverse = out + emf;
     if (law->bridge) {
-        inverse = out + law->drop_volts / 2;
-    } else if (law->half_wave) {
-        inverse = out - emf;
+        return out + law->drop_volts / 2;
     }
-    sum->inverse = fmax(sum->inverse, inverse);
+    return law->half_wave ? out - emf : out + emf;
 }
 
 /* ---- tally ------------------------------------------------------------------------------------------------------- */
@@ -233,7 +233,9 @@ static void see(void *context, const plw_engine *engine, const plw_piece *piece)
         tally_node(engine, piece, k, sum);
     }
     tally_currents(engine, piece, &amps, &first_state, sum);
-    note_inverse(engine, piece, piece->state[1], piece->angle[1], sum);
+    for (int quarter = 1; quarter <= 4; quarter++) {
+        sum->inverse = fmax(sum->inverse, inverse_volts(engine, piece, 0.25 * quarter));
+    }
     if (sum->instants != NULL) {
         write_instants(engine, piece, &amps, &first_state, sum);
     }

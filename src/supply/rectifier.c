@@ -119,6 +119,12 @@ plw_status plw_rectifier_validate(const plw_rectifier *supply, plw_error *error)
     return status == PLW_OK ? check_drawn(supply, error) : status;
 }
 
+plw_rectifier plw_rectifier_at_mains(const plw_rectifier *supply, double mains_percent) {
+    plw_rectifier at = *supply;
+    at.winding_rms_volts *= mains_percent / 100;
+    return at;
+}
+
 double plw_rectifier_peak_volts(const plw_rectifier *supply) {
     const plw_rectifier_law law = plw_rectifier_law_of(supply);
     return law.peak_volts - law.drop_volts;

@@ -59,6 +59,8 @@ static void boundless_reservoir(plw_rectifier_connection connection, double n) {
         assert_near_relative(got.diode_peak_amps, peak, 1e-5, source);
         assert_near_relative(got.diode_rms_amps, rms, 1e-5, source);
         assert_near(got.conduction_degrees, 2 * th * 180 / PI, 1e-3, source);
+        const double inverse = connection == PLW_BRIDGE ? c : c + 1; /* output and opposite crest */
+        assert_near(got.peak_inverse_volts, inverse, 1e-4, source);
     }
 }
 

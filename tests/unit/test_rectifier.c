@@ -91,6 +91,8 @@ static void volts_scale_with_volts(void **state) {
     supply.diode = (plw_diode){PLW_DIODE_SILICON, 0, 0.5, 0};
     larger.diode = supply.diode;
     larger.winding_rms_volts *= 1.437;
+    const plw_rectifier at_mains = plw_rectifier_at_mains(&supply, 143.7);
+    assert_near(at_mains.winding_rms_volts, larger.winding_rms_volts, 1e-10, "volts go with the mains");
     const plw_rectifier_state one = solved(&supply, 0.041, 0), other = solved(&larger, 0.041 * 1.437, 0);
     assert_near_relative(other.volts, 1.437 * one.volts, 1e-9, "linear between switchings");
     assert_near_relative(other.winding_rms_amps, 1.437 * one.winding_rms_amps, 1e-9, "linear between switchings");
