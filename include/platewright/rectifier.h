@@ -135,11 +135,11 @@ PLW_API plw_rectifier plw_rectifier_at_mains(const plw_rectifier *supply, double
  *       PLW_E_NO_CONVERGENCE; PLW_E_NO_MEMORY
  * Accuracy: of volts, silicon about 1e-9, vacuum 1e-7 (choke input 5e-6); of RMS and peak currents 1e-5; of peak
  *       inverse volts 1e-4.  Ripple and capacitor currents suffer where a section's time constant is below a degree of
- * the mains.  Checked against closed forms and against a general stiff ODE solver in
+ *       the mains.  Checked against closed forms and against a general stiff ODE solver in
  *       tests/published/test_rectifier_*.c.
  * Sources: T. J. Aprille and T. N. Trick, "Steady-state analysis of nonlinear circuits with periodic inputs", Proc.
  *       IEEE 60, 1972 (Newton on the period map); E. Hairer and G. Wanner, "Solving Ordinary Differential Equations
- * II", 1991 (Radau IIA); both from memory. */
+ *       II", 1991 (Radau IIA); both from memory. */
 PLW_API plw_status plw_rectifier_steady(const plw_rectifier *supply, plw_dc_load load, plw_rectifier_state *state,
                                         plw_error *error) PLW_MUST_USE;
 
