@@ -12,6 +12,9 @@
 /* Below this own share the rounding of numeric derivatives hides what a coordinate does apart from the others. */
 #define OWN_SHARE_LEAST 1e-7
 
+/* A residual where there is none: any place inside the domain is better, and its square does not overflow. */
+#define OUTSIDE 1e100
+
 typedef struct {
     const plw_least_squares *problem;
     double *place;    /* p, for the callback */
@@ -26,7 +29,7 @@ static int evaluate(const gsl_vector *place, void *context, gsl_vector *out) {
     }
     b->problem->residuals(b->place, b->problem->context, b->residual);
     for (size_t index = 0; index < b->problem->n; index++) {
-        gsl_vector_set(out, index, b->residual[index]);
+        gsl_vector_set(out, index, isfinite(b->residual[index]) ? b->residual[index] : OUTSIDE);
     }
     return GSL_SUCCESS;
 }
@@ -162,6 +165,10 @@ static plw_status search(const plw_least_squares *problem, const double *starts,
         parameters.h_df = problem->difference_step;
     }
     parameters.fdtype = problem->central ? GSL_MULTIFIT_NLINEAR_CTRDIFF : GSL_MULTIFIT_NLINEAR_FWDIFF;
+    if (problem->careful) {
+        parameters.trs = gsl_multifit_nlinear_trs_lmaccel;
+        parameters.scale = gsl_multifit_nlinear_scale_levenberg;
+    }
     gsl_multifit_nlinear_workspace *work =
         gsl_multifit_nlinear_alloc(gsl_multifit_nlinear_trust, &parameters, problem->n, problem->p);
     if (work == NULL) {

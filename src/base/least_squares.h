@@ -19,6 +19,8 @@ typedef struct {
     size_t n, p;            /* residuals, coordinates; n >= p >= 1 */
     double difference_step; /* of the numeric derivative, relative to the coordinate; 0: the square root of rounding */
     bool central;           /* differences to both sides: twice the work, far smaller error */
+    bool careful; /* steps that follow the curvature, all coordinates scaled alike: slower, but from poor starts it
+                     comes home where the plain way runs off to a plateau */
     size_t iterations_most;
     double tol_step, tol_gradient; /* relative; > 0 */
 } plw_least_squares;
@@ -47,6 +49,9 @@ typedef struct {
  *       of a coordinate that no residual depends on are NaN.  Nothing is written unless PLW_OK
  * Ret:  PLW_OK; PLW_E_USAGE: fewer residuals than coordinates, no start, tolerances not above 0;
  *       PLW_E_NO_CONVERGENCE: no start lies inside the domain or came to an end; PLW_E_NO_MEMORY
+ * Source of the careful way: M. K. Transtrum and J. P. Sethna, "Improvements to the Levenberg-Marquardt algorithm for
+ *         nonlinear least-squares minimization", arXiv:1201.5885 (2012): geodesic acceleration.  Both ways are checked
+ *         against certified problems in tests/published/test_nist_regression.c.
  * GSL calls its error handler, which ends the program unless the caller turned it off, for arguments out of range and
  * for lack of memory.  The arguments are checked here first; memory is tried for before GSL asks for it. */
 plw_status plw_least_squares_solve(const plw_least_squares *problem, const double *starts, size_t count, double *place,
