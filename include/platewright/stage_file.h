@@ -62,7 +62,7 @@ PLW_API plw_status plw_stage_file_read_memory(const char *name, const char *text
  * bias that of a cathode resistor, a supply that of readings, a load that of a ratio, and the reverse.
  * In:   name of an entry; text as it would stand in a file
  * Ret:  PLW_OK; PLW_E_USAGE: no such entry, said twice already, a text that is empty, longer than 60 characters or
- *       holds control characters; PLW_E_NO_MEMORY */
+ *       holds control characters, a switch that is neither yes nor no; PLW_E_NO_MEMORY */
 PLW_API plw_status plw_stage_describe(plw_stage_description *description, const char *name, const char *text,
                                       plw_error *error) PLW_MUST_USE;
 

@@ -160,6 +160,9 @@ plw_status plw_stage_describe(plw_stage_description *description, const char *na
                         "instance %s",
                         name, type->example);
     }
+    if (type->kind == PLW_ENTRY_SWITCH && strcmp(text, "yes") != 0 && strcmp(text, "no") != 0) {
+        return plw_fail(error, PLW_E_USAGE, "--%s: write yes or no", name);
+    }
     remove_displaced(description, name, text);
     if (!type->repeatable && plw_stage_entry_first(description, name) != NULL) {
         return plw_fail(error, PLW_E_USAGE, "--%s: is given twice; keep one", name);
