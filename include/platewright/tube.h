@@ -70,6 +70,8 @@ typedef struct {
     double load_ohms, power_watts;
     bool undistorted; /* the power is printed for less than full drive ("undistorted output"): an upper bound only */
     double thd_percent, h2_percent, h3_percent;
+    double
+        uncertainty_percent; /* stated: standard deviation of the plate current; NaN or 0: as printed tables have it */
     plw_provenance provenance;
 } plw_row;
 
@@ -88,6 +90,7 @@ typedef struct {
     double plate_volts, screen_volts, grid_volts;
     double plate_amps, screen_amps;
     double plate_resistance_ohms, gm_siemens, mu;
+    double uncertainty_percent; /* as in plw_row */
     plw_provenance provenance;
 } plw_point;
 

@@ -26,6 +26,7 @@
 #define CUT_OFF_FLOOR_AMPS 1e-5
 #define CURVE_DEVIATION 0.05         /* of the current */
 #define CURVE_READING_DEVIATION 0.02 /* of the largest current on the curves: reading off a chart */
+#define CURVE_LEAST_DEVIATION 0.002  /* the same where the uncertainty is stated: no meter is better over its range */
 
 static const char *const names[PLW_SEEN_COUNT] = {"plate current",
                                                   "screen current",
@@ -87,6 +88,24 @@ static void add_constants(plw_observations *all, bool is_row, size_t index, bool
     }
 }
 
+/* A line that states its uncertainty gives that of its plate current; its other figures are believed in proportion. */
+static double weight_of(double uncertainty_percent) {
+    return uncertainty_percent > 0.0 ? 0.01 * uncertainty_percent / PLATE_CURRENT_DEVIATION : 1.0;
+}
+
+static void weigh(plw_observations *all, size_t from, double factor) {
+    for (size_t index = from; index < all->count; index++) {
+        all->observation[index].deviation *= factor;
+    }
+}
+
+static double curve_deviation(const plw_point *point, double largest_curve_amps) {
+    if (point->uncertainty_percent > 0.0) {
+        return 0.01 * point->uncertainty_percent * point->plate_amps + CURVE_LEAST_DEVIATION * largest_curve_amps;
+    }
+    return CURVE_DEVIATION * point->plate_amps + CURVE_READING_DEVIATION * largest_curve_amps;
+}
+
 static void add_row(plw_observations *all, size_t index) {
     const plw_row *r = &all->tube->rows[index];
     const bool as_triode = !all->screened || r->connection == PLW_CONNECTION_TRIODE;
@@ -120,12 +139,13 @@ static void add_point(plw_observations *all, size_t index, double largest_curve_
         }
         break;
     case PLW_POINT_CUT_OFF:
-        add(all, (plw_observation){PLW_SEEN_PLATE_CURRENT, false, index, p->plate_amps, true, CUT_OFF_DEVIATION,
+        add(all, (plw_observation){PLW_SEEN_PLATE_CURRENT, false, index, p->plate_amps, true,
+                                   p->uncertainty_percent > 0.0 ? 0.01 * p->uncertainty_percent : CUT_OFF_DEVIATION,
                                    CUT_OFF_FLOOR_AMPS});
         break;
     case PLW_POINT_CURVE:
         add_difference(all, false, index, PLW_SEEN_PLATE_CURRENT, p->plate_amps,
-                       CURVE_DEVIATION * p->plate_amps + CURVE_READING_DEVIATION * largest_curve_amps);
+                       curve_deviation(p, largest_curve_amps));
         break;
     case PLW_POINT_CHARACTERISTICS:
         add_ratio(all, false, index, PLW_SEEN_PLATE_CURRENT, p->plate_amps, PLATE_CURRENT_DEVIATION);
@@ -155,14 +175,20 @@ void plw_observations_collect(const plw_tube *tube, size_t without_row, bool wit
         const plw_row *r = &tube->rows[index];
         const bool left_out = all->screened && without_triode_connection && r->connection == PLW_CONNECTION_TRIODE;
         if (index != without_row && plw_row_is_fitted(r) && !left_out) {
+            const size_t from = all->count;
             add_row(all, index);
+            weigh(all, from, weight_of(r->uncertainty_percent));
         }
     }
     for (size_t index = 0; index < tube->points_count; index++) {
         const plw_point *p = &tube->points[index];
         const bool left_out = all->screened && without_triode_connection && p->connection == PLW_CONNECTION_TRIODE;
         if (plw_point_is_fitted(p) && !left_out) {
+            const size_t from = all->count;
             add_point(all, index, largest);
+            if (p->kind == PLW_POINT_CHARACTERISTICS || p->kind == PLW_POINT_INNER_MU) {
+                weigh(all, from, weight_of(p->uncertainty_percent));
+            }
         }
     }
 }

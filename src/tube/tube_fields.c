@@ -21,6 +21,7 @@
 #define LIMIT_VOLTS PLW_FIELD_VOLTS, 1, 10000
 #define CURRENT PLW_FIELD_MILLIAMPERES, 0, 5
 #define RESISTANCE PLW_FIELD_OHMS, 1, 1e8
+#define UNCERTAINTY PLW_FIELD_PERCENT, 0, 100
 
 const plw_tube_field plw_heater_fields[] = {FIELD(plw_tube, heater_volts, "volts", PLW_FIELD_VOLTS, 0.5, 150),
                                             FIELD(plw_tube, heater_amps, "current", PLW_FIELD_AMPERES, 0.01, 50), END};
@@ -59,6 +60,7 @@ const plw_tube_field plw_row_fields[] = {FIELD(plw_row, plate_volts, "plate", LI
                                          FIELD(plw_row, thd_percent, "thd", PLW_FIELD_PERCENT, 0, 100),
                                          FIELD(plw_row, h2_percent, "h2", PLW_FIELD_PERCENT, 0, 100),
                                          FIELD(plw_row, h3_percent, "h3", PLW_FIELD_PERCENT, 0, 100),
+                                         FIELD(plw_row, uncertainty_percent, "uncertainty", UNCERTAINTY),
                                          END};
 
 const plw_tube_field plw_point_fields[] = {FIELD(plw_point, plate_volts, "plate", PLATE_VOLTS),
@@ -69,6 +71,7 @@ const plw_tube_field plw_point_fields[] = {FIELD(plw_point, plate_volts, "plate"
                                            FIELD(plw_point, plate_resistance_ohms, "plate-resistance", RESISTANCE),
                                            FIELD(plw_point, gm_siemens, "gm", PLW_FIELD_MICROMHOS, 1e-6, 1),
                                            FIELD(plw_point, mu, "mu", PLW_FIELD_NUMBER, 0.5, 1e5),
+                                           FIELD(plw_point, uncertainty_percent, "uncertainty", UNCERTAINTY),
                                            END};
 
 const plw_tube_field plw_model_errors_fields[] = {
