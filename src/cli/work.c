@@ -168,7 +168,7 @@ plw_status cli_work_answer(const cli_work *work, const plw_answer *answer, plw_e
 }
 
 plw_status cli_put(const char *text, const char *path, plw_error *error) {
-    if (path != NULL) {
+    if (path != NULL && strcmp(path, "-") != 0) {
         return plw_text_write(path, text, error);
     }
     if (fputs(text, stdout) == EOF || fflush(stdout) != 0) {

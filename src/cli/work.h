@@ -38,7 +38,7 @@ plw_status cli_work_answer(const cli_work *work, const plw_answer *answer, plw_e
 /* Name the option or the line in the file where the library names a quantity only.  Ret: the status in error */
 plw_status cli_work_place(const cli_work *work, plw_error *error);
 
-/* Put a text on the standard output, or in a file when path is not NULL. */
+/* Put a text on the standard output, or in a file when path is neither NULL nor "-". */
 plw_status cli_put(const char *text, const char *path, plw_error *error) PLW_MUST_USE;
 
 /* Say what went wrong, line by line, and where help is.
