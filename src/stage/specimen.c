@@ -52,39 +52,51 @@ static void move_supply(plw_supply *supply, double volts) {
     }
 }
 
-/* The tube's own currents by its share of the cathode current, at the voltages read or, where none was read, those that
- * the circuit leaves at these currents.  The share hardly depends on them: a few rounds settle it. */
+/* Currents at a share of the screen assumed, and with them the voltages read or, where none was read, those that the
+ * circuit leaves.
+ * Ret:  the share that the law gives at those voltages */
+static double currents_at_share(const plw_stage *stage, const plw_circuit *circuit, const plw_meter_readings *r,
+                                double share, plw_specimen *s) {
+    s->screen_amps = share * s->cathode_amps;
+    s->plate_amps = s->cathode_amps - s->screen_amps;
+    const double amps[PLW_FLOWS] = {s->plate_amps, s->screen_amps};
+    double ohms;
+    plw_supply_at(&stage->supply, plw_circuit_supply_amps(circuit, amps), &s->supply_volts, &ohms);
+    if (s->supply_read) {
+        s->supply_volts = r->supply_volts;
+    }
+    const double through = s->plate_amps + circuit->tap * s->screen_amps;
+    s->plate_to_ground_volts = s->plate_read ? r->plate_volts : s->supply_volts - circuit->primary_ohms * through;
+    double screen_source = isfinite(stage->screen_supply_volts) ? stage->screen_supply_volts : s->supply_volts;
+    if (circuit->screen_on_primary && through > 0.0) {
+        /* The copper up to the tap carries both currents, the rest the plate's alone. */
+        screen_source += circuit->tap * (s->plate_to_ground_volts - s->supply_volts) * s->cathode_amps / through;
+    }
+    s->screen_to_ground_volts =
+        s->screen_read ? r->screen_volts : screen_source - stage->screen_resistor_ohms * s->screen_amps;
+    s->plate_volts = s->plate_to_ground_volts - s->cathode_volts;
+    s->screen_volts = s->screen_to_ground_volts - s->cathode_volts;
+    plw_currents c;
+    plw_law_evaluate(&stage->tube->model.law, s->plate_volts, s->screen_volts, s->grid_volts, &c);
+    s->model_cathode_amps = c.plate_amps + c.screen_amps;
+    return s->model_cathode_amps > 0.0 ? c.screen_amps / s->model_cathode_amps : 0.0;
+}
+
+/* The tube's own currents by its share of the cathode current.  A larger share assumed leaves more volts at the plate
+ * and less at the screen, so the law's share falls: halving finds where both agree. */
 static void settle_currents(const plw_stage *stage, const plw_circuit *circuit, const plw_meter_readings *r,
                             plw_specimen *s) {
-    double share = 0.1;
-    if (!circuit->has_screen) {
-        share = 0.0;
-    }
-    for (int round = 0; round < 20; round++) {
-        s->screen_amps = share * s->cathode_amps;
-        s->plate_amps = s->cathode_amps - s->screen_amps;
-        const double amps[PLW_FLOWS] = {s->plate_amps, s->screen_amps};
-        double ohms;
-        plw_supply_at(&stage->supply, plw_circuit_supply_amps(circuit, amps), &s->supply_volts, &ohms);
-        if (s->supply_read) {
-            s->supply_volts = r->supply_volts;
+    double low = 0.0;
+    double high = circuit->has_screen ? 1.0 : 0.0;
+    for (int halving = 0; halving < 50 && high > low; halving++) {
+        const double middle = 0.5 * (low + high);
+        if (currents_at_share(stage, circuit, r, middle, s) > middle) {
+            low = middle;
+        } else {
+            high = middle;
         }
-        const double tapped = circuit->screen_on_primary ? circuit->tap * s->screen_amps : 0.0;
-        s->plate_to_ground_volts =
-            s->plate_read ? r->plate_volts : s->supply_volts - circuit->primary_ohms * (s->plate_amps + tapped);
-        double screen_source = isfinite(stage->screen_supply_volts) ? stage->screen_supply_volts : s->supply_volts;
-        if (circuit->screen_on_primary) {
-            screen_source += circuit->tap * (s->plate_to_ground_volts - s->supply_volts);
-        }
-        s->screen_to_ground_volts =
-            s->screen_read ? r->screen_volts : screen_source - stage->screen_resistor_ohms * s->screen_amps;
-        s->plate_volts = s->plate_to_ground_volts - s->cathode_volts;
-        s->screen_volts = s->screen_to_ground_volts - s->cathode_volts;
-        plw_currents c;
-        plw_law_evaluate(&stage->tube->model.law, s->plate_volts, s->screen_volts, s->grid_volts, &c);
-        s->model_cathode_amps = c.plate_amps + c.screen_amps;
-        share = s->model_cathode_amps > 0.0 ? c.screen_amps / s->model_cathode_amps : 0.0;
     }
+    (void)currents_at_share(stage, circuit, r, 0.5 * (low + high), s);
 }
 
 /* The stage as it is on the bench: supply, copper and tube as read. */

@@ -305,6 +305,15 @@ static void check_best(const plw_stage *stage, plw_series series) {
     plw_bias_option exact;
     assert_int_equal(plw_bias_option_solve(stage, c.exact_ohms, &exact, NULL), PLW_OK);
     assert_true(exact.within_ratings && exact.signal.speaker_watts >= best);
+    /* No resistance between the neighbours gives noticeably more. */
+    for (int part = 0; part < 300; part++) {
+        plw_bias_option option_between;
+        const double low = plw_preferred_step(best_ohms, -1, series), high = plw_preferred_step(best_ohms, 1, series);
+        if (plw_bias_option_solve(stage, low * pow(high / low, part / 300.0), &option_between, NULL) == PLW_OK &&
+            option_between.within_ratings) {
+            assert_true(option_between.signal.speaker_watts <= 1.003 * exact.signal.speaker_watts);
+        }
+    }
 }
 
 static void most_power_is_the_best_of_all_values(void **state) {

@@ -43,8 +43,8 @@ static void check_instants(int number, const plw_stage *stage, const plw_signal 
             fabs(c.plate_amps - s->path_plate_amps[index]) + fabs(c.screen_amps - s->path_screen_amps[index]);
         /* 1e-9 A at the instant, and as much of the averages, which move the instant by loop gains below 10. */
         check(number, stage, "an instant misses the law by (A)", missed, 0.0, 2e-8);
-        check(number, stage, "plate volts", s->path_plate_volts[index], v.plate - v.cathode, 1e-4);
-        check(number, stage, "grid volts", s->path_grid_volts[index], v.grid - v.cathode, 1e-5);
+        check(number, stage, "plate volts", s->path_plate_volts[index], v.plate - v.cathode, 1e-8);
+        check(number, stage, "grid volts", s->path_grid_volts[index], v.grid - v.cathode, 1e-9);
     }
 }
 
@@ -64,7 +64,7 @@ static void check_extremes(int number, const plw_stage *stage, const plw_signal 
     check(number, stage, "least plate amps", s->plate_amps_least, least_amps, 0.0);
     check(number, stage, "most plate amps", s->plate_amps_most, most_amps, 0.0);
     check(number, stage, "most screen amps", s->screen_amps_most, most_screen, 0.0);
-    check(number, stage, "most plate volts to ground", s->plate_to_ground_volts_most, most_to_ground, 1e-4);
+    check(number, stage, "most plate volts to ground", s->plate_to_ground_volts_most, most_to_ground, 1e-8);
 }
 
 static void check_averages(int number, const plw_stage *stage, const plw_signal *s) {
@@ -143,6 +143,31 @@ static void check_power(int number, const plw_stage *stage, const plw_signal *s)
     }
 }
 
+/* Harmonics of the load current over the path, their sum, and the efficiency. */
+static void check_distortion(int number, const plw_stage *stage, const plw_signal *s) {
+    const double turns = screen_turns(stage);
+    double peak = 0.0, squares = 0.0;
+    for (int order = 1; order <= PLW_HARMONICS_MOST; order++) {
+        double sum = 0.0;
+        for (int index = 0; index <= STEPS; index++) {
+            sum += 2.0 * weight(index) * (s->path_plate_amps[index] + turns * s->path_screen_amps[index]) *
+                   cos(PI * order * index / STEPS);
+        }
+        if (order == 1) {
+            peak = sum;
+            if (!(peak > 1e-9)) {
+                return;
+            }
+        } else {
+            check(number, stage, "a harmonic", s->harmonic_percent[order], 100.0 * sum / peak, 1e-10 / peak);
+            squares += sum * sum;
+        }
+    }
+    check(number, stage, "distortion", s->thd_percent, 100.0 * sqrt(squares) / peak, 1e-10 / peak);
+    const double input = (s->supply_volts - s->cathode_volts) * s->plate_amps * stage->parallel;
+    check(number, stage, "efficiency", s->efficiency_percent, 100.0 * s->power_watts / input, 1e-9);
+}
+
 /* ---- the end of the drive ---------------------------------------------------------------------------------------- */
 
 static void check_limit(int number, const plw_stage *stage, const plw_quiescent *q, const plw_signal *s) {
@@ -182,6 +207,7 @@ static void check_stage(int number, const plw_stage *stage) {
     check_averages(number, stage, &s);
     check_energy(number, stage, &s);
     check_power(number, stage, &s);
+    check_distortion(number, stage, &s);
     check_limit(number, stage, &q, &s);
 }
 

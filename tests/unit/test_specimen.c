@@ -121,6 +121,11 @@ static void connections_and_parallel_tubes_are_read_alike(void **state) {
         const plw_quiescent q = measure_strength(&stage, 1.2, &readings, &s);
         assert_near(s.off_percent, 20.0, 1e-4, "strength 1.2");
         assert_near_relative(s.plate_amps, q.plate_amps, 1e-6, "one tube's current");
+        assert_near(s.primary_ohms, stage.primary_ohms, 1e-4 + 1e-6 * stage.primary_ohms, "drop over current");
+        /* The cathode alone tells as much where the circuit is as described. */
+        const plw_meter_readings cathode_only = {UNKNOWN, UNKNOWN, UNKNOWN, readings.cathode_volts};
+        assert_int_equal(plw_specimen_measure(&stage, &q, &cathode_only, usual_aim, PLW_E24, &s, NULL), PLW_OK);
+        assert_near(s.off_percent, 20.0, 1e-3, "strength 1.2");
         measured++;
     }
     assert_true(measured > 200);
@@ -161,6 +166,26 @@ static void the_supply_is_taken_as_read(void **state) {
     plw_quiescent again;
     assert_int_equal(plw_quiescent_solve(&s.stage, &again, NULL), PLW_OK);
     assert_near(again.supply_volts, 301.0, 1e-6, "as read");
+}
+
+/* A primary of more copper than described: as read, the stage follows. */
+static void the_copper_is_taken_as_read(void **state) {
+    (void)state;
+    test_tube tube;
+    make_rated(&tube, pentode_law(TEST_BEAM_SMALL));
+    plw_stage stage = pentode_stage(&tube);
+    stage.parallel = 2;
+    stage.cathode_resistor_ohms = 135.0;
+    stage.primary_ohms = 238.5;
+    plw_quiescent q, again;
+    const plw_meter_readings readings = readings_of(&stage, &q);
+    plw_stage described = stage;
+    described.primary_ohms = 100.0;
+    plw_specimen s;
+    assert_int_equal(plw_specimen_measure(&described, &q, &readings, usual_aim, PLW_E24, &s, NULL), PLW_OK);
+    assert_near(s.primary_ohms, 238.5, 1e-3, "drop over the current of both tubes");
+    assert_int_equal(plw_quiescent_solve(&s.stage, &again, NULL), PLW_OK);
+    assert_near(again.plate_to_ground_volts, readings.plate_volts, 1e-4, "as read");
 }
 
 /* The resistor that suits this very tube: the aim met with the scaled law. */
@@ -239,6 +264,7 @@ int main(void) {
         cmocka_unit_test(connections_and_parallel_tubes_are_read_alike),
         cmocka_unit_test(missing_readings_are_filled_in_and_flagged),
         cmocka_unit_test(the_supply_is_taken_as_read),
+        cmocka_unit_test(the_copper_is_taken_as_read),
         cmocka_unit_test(the_resistor_found_suits_this_tube),
         cmocka_unit_test(readings_that_contradict_are_refused),
     };

@@ -61,6 +61,8 @@ static void a_load_that_contradicts_or_is_missing_is_refused(void **state) {
     plw_stage stage = with_load(5000.0, 22.0, 8.0);
     assert_int_equal(plw_stage_settle_load(&stage, &error), PLW_E_USAGE);
     assert_non_null(strstr(error.text, "contradicts"));
+    stage = with_load(3990.0, 22.0, 8.0); /* 3 % apart */
+    assert_int_equal(plw_stage_settle_load(&stage, NULL), PLW_E_USAGE);
     static const double none[][3] = {{UNKNOWN, UNKNOWN, UNKNOWN}, {UNKNOWN, 22.0, UNKNOWN}, {UNKNOWN, UNKNOWN, 8.0}};
     for (size_t index = 0; index < 3; index++) {
         stage = with_load(none[index][0], none[index][1], none[index][2]);
