@@ -47,13 +47,58 @@ typedef struct {
     double scaled; /* difference over its standard deviation */
 } plw_residual;
 
-enum { PLW_RESIDUALS_MOST = 600 };
+/* Two determined coefficients that the data can hardly tell apart: one may rise if the other makes up for it. */
+typedef struct {
+    size_t first, second; /* indices of coefficients */
+    double correlation;   /* -1..1 */
+} plw_fit_correlation;
+
+/* A row or point that the others speak against: without it the sum of squares falls by far, and what the others make of
+ * it is far off. */
+typedef struct {
+    bool is_row;
+    size_t index;
+    const char *quantity;      /* the figure that is farthest off, a constant */
+    double printed, predicted; /* predicted by the fit without it */
+    double scaled;             /* difference over its standard deviation */
+    double chi_squared_fall;
+} plw_fit_outlier;
+
+/* Two figures that cannot both be true. */
+typedef struct {
+    bool is_row[2];
+    size_t index[2];
+    const char *quantity; /* a constant */
+    double printed[2];
+    double apart;         /* difference over the standard deviation of the difference */
+    bool same_conditions; /* else the first has nowhere lower voltages and yet less current */
+} plw_fit_contradiction;
+
+enum {
+    PLW_RESIDUALS_MOST = 600,
+    PLW_FIT_CORRELATIONS_MOST = 24,
+    PLW_FIT_OUTLIERS_MOST = 8,
+    PLW_FIT_CONTRADICTIONS_MOST = 16
+};
+
+/* What counts as each of them. */
+#define PLW_FIT_CORRELATION_LEAST 0.95
+#define PLW_FIT_OUTLIER_FALL 25.0       /* of the sum of squares */
+#define PLW_FIT_OUTLIER_SCALED 4.0      /* standard deviations off */
+#define PLW_FIT_CONTRADICTION_LEAST 4.0 /* standard deviations apart */
 
 typedef struct {
     plw_model model;
     size_t residuals;
     plw_residual residual[PLW_RESIDUALS_MOST];
     double chi_squared; /* of the observations, without what is known beforehand of the coefficients */
+    /* Covariance of the coordinates the fit works in: of each coefficient the logarithm, but of kp that of kp/mu, and
+     * the contact volts themselves; rows of plw_law_coefficient_count() numbers. */
+    double covariance[PLW_LAW_COEFFICIENTS_MOST * PLW_LAW_COEFFICIENTS_MOST];
+    size_t correlations, outliers, contradictions;
+    plw_fit_correlation correlation[PLW_FIT_CORRELATIONS_MOST];
+    plw_fit_outlier outlier[PLW_FIT_OUTLIERS_MOST]; /* the grossest first; only looked for with leave_out */
+    plw_fit_contradiction contradiction[PLW_FIT_CONTRADICTIONS_MOST];
 } plw_fit;
 
 /* Fit the law of a tube to its rows and points of confidence high and medium.
@@ -63,6 +108,13 @@ typedef struct {
  * (NaN: not determined by the rows), errors in the fit and with each row left out in turn, region; not written unless
  * PLW_OK Ret:  PLW_OK; PLW_E_DATA: nothing to fit; PLW_E_NO_CONVERGENCE; PLW_E_NO_MEMORY */
 PLW_API plw_status plw_fit_tube(const plw_tube *tube, bool leave_out, plw_fit *fit, plw_error *error) PLW_MUST_USE;
+
+/* Predict a row by a fit, with the standard deviation that each figure has from the coefficients not being known better
+ * (the law's own error and the spread of tubes come on top).
+ * Out:  *prediction, *deviation: in the units of the figures, NaN where the figure is NaN
+ * Ret:  as plw_predict_row() */
+PLW_API plw_status plw_fit_predict_row(const plw_fit *fit, const plw_row *row, plw_prediction *prediction,
+                                       plw_prediction *deviation, plw_error *error) PLW_MUST_USE;
 
 /* The law fitted with one row left out (SIZE_MAX: none), and, if wanted, without any triode-connected row or point of a
  * screened tube.

@@ -7,6 +7,7 @@
 #include <string.h>
 
 #include "base/least_squares.h"
+#include "tube/fit_core.h"
 #include "tube/fit_data.h"
 #include "tube/fit_prior.h"
 
@@ -54,7 +55,8 @@ static void scale_start(const problem *p, plw_law *start) {
 
 /* Fit from the law near by, or from every start, and keep the best.
  * Out:  *law, covariance[coefficients * coefficients] of its coordinates (may be NULL) */
-static plw_status best_fit(problem *p, const plw_law *near, plw_law *law, double *covariance, plw_error *error) {
+static plw_status best_fit(problem *p, const plw_law *near, plw_law *law, double *covariance, double *sum_of_squares,
+                           plw_error *error) {
     const plw_least_squares core = {
         .residuals = residuals,
         .context = p,
@@ -79,16 +81,18 @@ static plw_status best_fit(problem *p, const plw_law *near, plw_law *law, double
     const plw_status status = plw_least_squares_solve(&core, starts, count, place, covariance, &end, error);
     if (status == PLW_OK) {
         *law = plw_law_at_coordinates(p->kind, place);
+        *sum_of_squares = end.sum_of_squares;
     }
     return status;
 }
 
 static plw_status fit_observations(const plw_observations *observations, const plw_law *near, plw_law *law,
                                    double *relative_error, double *covariance, plw_error *error) {
+    double sum_of_squares;
     const plw_prior prior = plw_prior_for(observations);
     const plw_law_kind kind = observations->screened ? PLW_LAW_PENTODE : PLW_LAW_TRIODE;
     problem p = {observations, &prior, kind, plw_law_coefficient_count(kind)};
-    const plw_status status = best_fit(&p, near, law, covariance, error);
+    const plw_status status = best_fit(&p, near, law, covariance, &sum_of_squares, error);
     if (status != PLW_OK || covariance == NULL) {
         return status;
     }
@@ -99,6 +103,14 @@ static plw_status fit_observations(const plw_observations *observations, const p
         relative_error[index] = determined ? plw_coordinate_error_relative(law, index, deviation) : (double)NAN;
     }
     return PLW_OK;
+}
+
+plw_status plw_fit_observations(const plw_observations *observations, const plw_law *near, plw_law *law,
+                                double *sum_of_squares, plw_error *error) {
+    const plw_prior prior = plw_prior_for(observations);
+    const plw_law_kind kind = observations->screened ? PLW_LAW_PENTODE : PLW_LAW_TRIODE;
+    problem p = {observations, &prior, kind, plw_law_coefficient_count(kind)};
+    return best_fit(&p, near, law, NULL, sum_of_squares, error);
 }
 
 plw_status plw_fit_without(const plw_tube *tube, size_t row, bool without_triode_connection, const plw_law *near,
@@ -166,9 +178,8 @@ plw_status plw_fit_tube(const plw_tube *tube, bool leave_out, plw_fit *fit, plw_
                         tube->type, observations.count);
     }
     memset(fit, 0, sizeof *fit);
-    double covariance[PLW_LAW_COEFFICIENTS_MOST * PLW_LAW_COEFFICIENTS_MOST];
     const plw_status status =
-        fit_observations(&observations, NULL, &fit->model.law, fit->model.relative_error, covariance, error);
+        fit_observations(&observations, NULL, &fit->model.law, fit->model.relative_error, fit->covariance, error);
     if (status != PLW_OK) {
         return status;
     }
@@ -178,6 +189,11 @@ plw_status plw_fit_tube(const plw_tube *tube, bool leave_out, plw_fit *fit, plw_
     }
     list_residuals(&observations, &fit->model.law, fit);
     plw_fit_errors(tube, leave_out, &fit->model);
+    plw_find_correlations(fit);
+    plw_find_contradictions(&observations, fit);
+    if (leave_out) {
+        plw_find_outliers(&observations, fit);
+    }
     round_errors(&fit->model.fit_error);
     round_errors(&fit->model.left_out_error);
     return PLW_OK;

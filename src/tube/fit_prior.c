@@ -29,6 +29,15 @@ plw_law plw_law_at_coordinates(plw_law_kind kind, const double coordinates[PLW_L
     return law;
 }
 
+void plw_covariance_of_coefficients(size_t count, double *covariance) {
+    for (size_t index = 0; index < count; index++) {
+        covariance[KP * count + index] += covariance[MU * count + index];
+    }
+    for (size_t index = 0; index < count; index++) {
+        covariance[index * count + KP] += covariance[index * count + MU];
+    }
+}
+
 double plw_coordinate_error_relative(const plw_law *law, size_t index, double coordinate_error) {
     if (index == plw_law_signed_coefficient(law->kind)) {
         const double volts = fabs(law->coefficient[index]);

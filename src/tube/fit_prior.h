@@ -27,6 +27,10 @@ plw_law plw_law_at_coordinates(plw_law_kind kind, const double coordinates[PLW_L
 /* Standard error of a coordinate as a relative error of the coefficient. */
 double plw_coordinate_error_relative(const plw_law *law, size_t index, double coordinate_error);
 
+/* Turn a covariance of coordinates, count * count numbers, into that of the logarithms of the coefficients (of the
+ * contact potential: itself). */
+void plw_covariance_of_coefficients(size_t count, double *covariance);
+
 /* Normal in each coordinate. */
 typedef struct {
     double expected[PLW_LAW_COEFFICIENTS_MOST];
