@@ -7,6 +7,7 @@
 #include <stddef.h>
 
 #include "platewright/catalogue.h"
+#include "platewright/plate_supply.h"
 #include "platewright/quantity.h"
 #include "platewright/stage.h"
 
@@ -31,6 +32,7 @@ typedef struct {
     plw_unit unit;
     double least, most; /* in the base unit, both allowed */
     bool repeatable;
+    bool in_filter; /* of the filter of the supply, whose parts follow each other in the order told */
     const char *example;
     const char *const *choices; /* NULL-terminated; PLW_ENTRY_CHOICE */
 } plw_entry_type;
@@ -90,6 +92,17 @@ PLW_API const char *plw_stage_note(const plw_stage_description *description);
  * twice what the tube may have at the plate even with its rated current drawn */
 PLW_API plw_status plw_stage_build(const plw_stage_description *description, plw_catalogue *catalogue, plw_stage *stage,
                                    plw_error *error) PLW_MUST_USE;
+
+/* The same, and the plate supply whose line is the stage's.
+ * Out:  *supply, when not NULL */
+PLW_API plw_status plw_stage_build_supplied(const plw_stage_description *description, plw_catalogue *catalogue,
+                                            plw_stage *stage, plw_plate_supply *supply, plw_error *error) PLW_MUST_USE;
+
+/* Make the plate supply alone; entries of the stage are not looked at.
+ * In:   most_amps > 0: how far its line is to reach at least
+ * Ret:  as plw_stage_build() */
+PLW_API plw_status plw_plate_supply_build(const plw_stage_description *description, plw_catalogue *catalogue,
+                                          double most_amps, plw_plate_supply *supply, plw_error *error) PLW_MUST_USE;
 
 /* The description as the text of a stage file: the same entries always give the same bytes, and read again the same
  * entries.

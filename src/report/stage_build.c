@@ -5,33 +5,32 @@
 #include <stdlib.h>
 #include <string.h>
 
-#include "report/stage_entries.h"
+#include "report/stage_builder.h"
 
 enum { PLACE_SIZE = 512, SHOWN_SIZE = 32 };
 
-/* The description at work, and the faults found in it. */
-typedef struct {
-    const plw_stage_description *description;
-    plw_error faults;
-} builder;
+/* The line of a supply reaches this many times the current of rated dissipation at rated volts; of a tube that is not
+ * told, what a usual output tube draws. */
+#define BEYOND_RATING 3.0
+#define USUAL_AMPS 0.05
 
 /* ---- faults ------------------------------------------------------------------------------------------------------ */
 
 /* An option at fault is a matter of usage; a file at fault one of data, and that is the graver. */
-static void note_status(builder *work, bool in_file) {
+static void note_status(plw_builder *work, bool in_file) {
     if (work->faults.status != PLW_E_DATA) {
         work->faults.status = in_file ? PLW_E_DATA : PLW_E_USAGE;
     }
 }
 
-static void fault_entry(builder *work, const plw_stage_entry *entry, const char *text) {
+void plw_builder_fault(plw_builder *work, const plw_stage_entry *entry, const char *text) {
     char place[PLACE_SIZE];
     plw_stage_entry_place(work->description, entry, place, sizeof place);
     note_status(work, entry->line > 0);
     plw_error_add(&work->faults, "%s: %s", place, text);
 }
 
-static void fault_missing(builder *work, const char *text) {
+void plw_builder_missing(plw_builder *work, const char *text) {
     note_status(work, false);
     if (work->description->file != NULL) {
         plw_error_add(&work->faults, "%s: %s", work->description->file, text);
@@ -40,17 +39,17 @@ static void fault_missing(builder *work, const char *text) {
     }
 }
 
-static const plw_stage_entry *entry_of(const builder *work, const char *name) {
+const plw_stage_entry *plw_builder_entry(const plw_builder *work, const char *name) {
     return plw_stage_entry_first(work->description, name);
 }
 
 /* A fault that the stage itself found: "load: 3 ohm contradicts ...". */
-static void fault_named(builder *work, const char *text) {
+void plw_builder_fault_named(plw_builder *work, const char *text) {
     char name[PLACE_SIZE];
     snprintf(name, sizeof name, "%.*s", (int)strcspn(text, ":"), text);
-    const plw_stage_entry *entry = entry_of(work, name);
+    const plw_stage_entry *entry = plw_builder_entry(work, name);
     if (entry != NULL && strncmp(text + strlen(name), ": ", 2) == 0) {
-        fault_entry(work, entry, text + strlen(name) + 2);
+        plw_builder_fault(work, entry, text + strlen(name) + 2);
     } else {
         note_status(work, work->description->file != NULL);
         plw_error_add(&work->faults, "%s%s", plw_entry_type_find(name) == NULL ? "" : "--", text);
@@ -58,22 +57,22 @@ static void fault_named(builder *work, const char *text) {
 }
 
 /* Two entries that cannot both be: the fault stands at the first. */
-static void exclude(builder *work, const char *name, const char *other, const char *remedy) {
-    const plw_stage_entry *entry = entry_of(work, name);
-    const plw_stage_entry *second = entry_of(work, other);
+void plw_builder_exclude(plw_builder *work, const char *name, const char *other, const char *remedy) {
+    const plw_stage_entry *entry = plw_builder_entry(work, name);
+    const plw_stage_entry *second = plw_builder_entry(work, other);
     if (entry != NULL && second != NULL && !(second->type->kind == PLW_ENTRY_SWITCH && second->text[0] == 'n')) {
         char place[PLACE_SIZE];
         char text[2 * PLACE_SIZE];
         plw_stage_entry_place(work->description, second, place, sizeof place);
         snprintf(text, sizeof text, "cannot stand together with %s; %s", place, remedy);
-        fault_entry(work, entry, text);
+        plw_builder_fault(work, entry, text);
     }
 }
 
 /* ---- values ------------------------------------------------------------------------------------------------------ */
 
 /* The limits as they are written, e.g. "1 ohm to 1 Mohm". */
-static void fault_range(builder *work, const plw_stage_entry *entry, double least, double most) {
+void plw_builder_fault_range(plw_builder *work, const plw_stage_entry *entry, double least, double most) {
     char low[SHOWN_SIZE];
     char high[SHOWN_SIZE];
     char text[PLACE_SIZE];
@@ -87,19 +86,19 @@ static void fault_range(builder *work, const plw_stage_entry *entry, double leas
     }
     snprintf(text, sizeof text, "%s is out of range; give %s to %s, e.g. %s", entry->text, low, high,
              entry->type->example);
-    fault_entry(work, entry, text);
+    plw_builder_fault(work, entry, text);
 }
 
 /* Ret: whether the value is good. */
-static bool read_quantity(builder *work, const plw_stage_entry *entry, double *value) {
+bool plw_builder_quantity(plw_builder *work, const plw_stage_entry *entry, double *value) {
     plw_error error = {.status = PLW_OK};
     double read = (double)NAN;
     if (plw_quantity_parse(entry->text, entry->type->unit, &read, &error) != PLW_OK) {
-        fault_entry(work, entry, error.text);
+        plw_builder_fault(work, entry, error.text);
         return false;
     }
     if (!(read >= entry->type->least && read <= entry->type->most)) {
-        fault_range(work, entry, entry->type->least, entry->type->most);
+        plw_builder_fault_range(work, entry, entry->type->least, entry->type->most);
         return false;
     }
     *value = read;
@@ -107,36 +106,36 @@ static bool read_quantity(builder *work, const plw_stage_entry *entry, double *v
 }
 
 /* The value of an entry, left as it is when the entry is absent or at fault. */
-static void take_quantity(builder *work, const char *name, double *value) {
-    const plw_stage_entry *entry = entry_of(work, name);
+void plw_builder_take(plw_builder *work, const char *name, double *value) {
+    const plw_stage_entry *entry = plw_builder_entry(work, name);
     if (entry != NULL) {
-        (void)read_quantity(work, entry, value);
+        (void)plw_builder_quantity(work, entry, value);
     }
 }
 
 /* The schema and plw_stage_describe() have seen to it that it is yes or no. */
-static void take_switch(builder *work, const char *name, bool *value) {
-    const plw_stage_entry *entry = entry_of(work, name);
+static void take_switch(plw_builder *work, const char *name, bool *value) {
+    const plw_stage_entry *entry = plw_builder_entry(work, name);
     if (entry != NULL) {
         *value = entry->text[0] == 'y';
     }
 }
 
-static void take_parallel(builder *work, plw_stage *stage) {
-    const plw_stage_entry *entry = entry_of(work, "parallel");
+static void take_parallel(plw_builder *work, plw_stage *stage) {
+    const plw_stage_entry *entry = plw_builder_entry(work, "parallel");
     if (entry == NULL) {
         return;
     }
     char *end = NULL;
     const long count = entry->text[0] >= '0' && entry->text[0] <= '9' ? strtol(entry->text, &end, 10) : 0;
     if (end == NULL || *end != '\0' || count < 1 || count > PLW_PARALLEL_MOST) {
-        fault_entry(work, entry, "is no whole number from 1 to 16; write for instance 2");
+        plw_builder_fault(work, entry, "is no whole number from 1 to 16; write for instance 2");
     } else {
         stage->parallel = (unsigned)count;
     }
 }
 
-static void fault_choice(builder *work, const plw_stage_entry *entry) {
+void plw_builder_fault_choice(plw_builder *work, const plw_stage_entry *entry) {
     size_t count = 0;
     while (entry->type->choices[count] != NULL) {
         count++;
@@ -153,15 +152,15 @@ static void fault_choice(builder *work, const plw_stage_entry *entry) {
             snprintf(text + used, sizeof text - used, "%s %s", i == 0 ? "" : joint, entry->type->choices[i]);
         }
     }
-    fault_entry(work, entry, text);
+    plw_builder_fault(work, entry, text);
 }
 
 /* ---- tube and its connection ------------------------------------------------------------------------------------- */
 
-static void take_tube(builder *work, plw_catalogue *catalogue, plw_stage *stage) {
-    const plw_stage_entry *entry = entry_of(work, "tube");
+static void take_tube(plw_builder *work, plw_catalogue *catalogue, plw_stage *stage) {
+    const plw_stage_entry *entry = plw_builder_entry(work, "tube");
     if (entry == NULL) {
-        fault_missing(work, "--tube: is missing; name the output tube, e.g. --tube 6V6GT");
+        plw_builder_missing(work, "--tube: is missing; name the output tube, e.g. --tube 6V6GT");
         return;
     }
     if (catalogue == NULL) {
@@ -172,14 +171,15 @@ static void take_tube(builder *work, plw_catalogue *catalogue, plw_stage *stage)
     int variant = -1;
     const plw_status status = plw_catalogue_find(catalogue, entry->text, &tube, &variant, &error);
     if (status == PLW_E_NOT_FOUND) {
-        fault_entry(work, entry, error.text);
+        plw_builder_fault(work, entry, error.text);
     } else if (status != PLW_OK) { /* the tube's own file is at fault: it has its place in it */
         plw_error_add(&work->faults, "%s", error.text);
         work->faults.status = status;
     } else if (tube->kind == PLW_KIND_RECTIFIER) {
-        fault_entry(work, entry, "is a rectifier; name an output tube");
+        plw_builder_fault(work, entry, "is a rectifier; name an output tube");
     } else if (!tube->has_model) {
-        fault_entry(work, entry, "has no coefficients in its tube file yet; fit them first, or choose another type");
+        plw_builder_fault(work, entry,
+                          "has no coefficients in its tube file yet; fit them first, or choose another type");
     } else {
         stage->tube = tube;
         stage->variant = variant;
@@ -190,10 +190,10 @@ static bool has_screen(const plw_tube *tube) {
     return tube->kind == PLW_KIND_PENTODE || tube->kind == PLW_KIND_BEAM;
 }
 
-static void take_connection(builder *work, plw_stage *stage) {
+static void take_connection(plw_builder *work, plw_stage *stage) {
     const bool screen = stage->tube == NULL || has_screen(stage->tube);
     stage->connection = screen ? PLW_CONNECTION_PENTODE : PLW_CONNECTION_TRIODE;
-    const plw_stage_entry *entry = entry_of(work, "connection");
+    const plw_stage_entry *entry = plw_builder_entry(work, "connection");
     if (entry == NULL) {
         return;
     }
@@ -201,148 +201,59 @@ static void take_connection(builder *work, plw_stage *stage) {
         if (strcmp(entry->text, plw_connection_name((plw_connection)i)) == 0) {
             stage->connection = (plw_connection)i;
             if (!screen && stage->connection != PLW_CONNECTION_TRIODE) {
-                fault_entry(work, entry, "the tube has no screen; leave this out");
+                plw_builder_fault(work, entry, "the tube has no screen; leave this out");
             }
             return;
         }
     }
-    fault_choice(work, entry);
+    plw_builder_fault_choice(work, entry);
 }
 
-static void refuse_all(builder *work, const char *const *names, size_t count, const char *why) {
+static void refuse_all(plw_builder *work, const char *const *names, size_t count, const char *why) {
     for (size_t i = 0; i < count; i++) {
-        const plw_stage_entry *entry = entry_of(work, names[i]);
+        const plw_stage_entry *entry = plw_builder_entry(work, names[i]);
         if (entry != NULL && !(entry->type->kind == PLW_ENTRY_SWITCH && entry->text[0] == 'n')) {
-            fault_entry(work, entry, why);
+            plw_builder_fault(work, entry, why);
         }
     }
 }
 
-static void take_screen(builder *work, plw_stage *stage) {
+static void take_screen(plw_builder *work, plw_stage *stage) {
     static const char *const screen_names[] = {"screen-supply", "screen-resistor", "screen-bypassed"};
     double tap_percent = 0;
-    take_quantity(work, "tap", &tap_percent);
+    plw_builder_take(work, "tap", &tap_percent);
     stage->tap = tap_percent / 100.0;
-    take_quantity(work, "screen-supply", &stage->screen_supply_volts);
-    take_quantity(work, "screen-resistor", &stage->screen_resistor_ohms);
+    plw_builder_take(work, "screen-supply", &stage->screen_supply_volts);
+    plw_builder_take(work, "screen-resistor", &stage->screen_resistor_ohms);
     take_switch(work, "screen-bypassed", &stage->screen_bypassed);
-    const plw_stage_entry *tap = entry_of(work, "tap");
+    const plw_stage_entry *tap = plw_builder_entry(work, "tap");
     if (tap != NULL && stage->connection != PLW_CONNECTION_ULTRALINEAR) {
-        fault_entry(work, tap,
-                    "a tap belongs to the ultralinear connection; add --connection ultralinear or leave it "
-                    "out");
+        plw_builder_fault(work, tap,
+                          "a tap belongs to the ultralinear connection; add --connection ultralinear or leave it "
+                          "out");
     }
-    if (tap == NULL && stage->connection == PLW_CONNECTION_ULTRALINEAR && entry_of(work, "connection") != NULL) {
-        fault_entry(work, entry_of(work, "connection"), "the tap is missing; add it, e.g. --tap 43%");
+    if (tap == NULL && stage->connection == PLW_CONNECTION_ULTRALINEAR &&
+        plw_builder_entry(work, "connection") != NULL) {
+        plw_builder_fault(work, plw_builder_entry(work, "connection"), "the tap is missing; add it, e.g. --tap 43%");
     }
     if (stage->tube != NULL && !has_screen(stage->tube)) {
         refuse_all(work, screen_names, 3, "the tube has no screen; leave this out");
     } else if (stage->connection != PLW_CONNECTION_PENTODE) {
         refuse_all(work, screen_names, 1, "the screen hangs on the plate winding in this connection; leave this out");
     }
-    if (stage->screen_bypassed && entry_of(work, "screen-resistor") == NULL) {
-        fault_entry(work, entry_of(work, "screen-bypassed"),
-                    "there is no screen resistor; add it, e.g. "
-                    "--screen-resistor 1k");
+    if (stage->screen_bypassed && plw_builder_entry(work, "screen-resistor") == NULL) {
+        plw_builder_fault(work, plw_builder_entry(work, "screen-bypassed"),
+                          "there is no screen resistor; add it, e.g. "
+                          "--screen-resistor 1k");
     }
 }
 
 /* ---- supply ------------------------------------------------------------------------------------------------------ */
 
-/* 305V, 258V@10k, 271V@18mA.  Ret: whether it is good. */
-static bool read_reading(builder *work, const plw_stage_entry *entry, plw_reading *reading) {
-    char volts_text[PLACE_SIZE];
-    snprintf(volts_text, sizeof volts_text, "%s", entry->text);
-    char *at = strchr(volts_text, '@');
-    if (at != NULL) {
-        *at = '\0';
-    }
-    plw_error error = {.status = PLW_OK};
-    if (plw_quantity_parse(volts_text, PLW_UNIT_VOLT, &reading->volts, &error) != PLW_OK) {
-        fault_entry(work, entry, error.text);
-        return false;
-    }
-    if (!(reading->volts >= entry->type->least && reading->volts <= entry->type->most)) {
-        fault_range(work, entry, entry->type->least, entry->type->most);
-        return false;
-    }
-    reading->amps = 0;
-    if (at == NULL) {
-        return true;
-    }
-    double ohms = (double)NAN;
-    if (plw_quantity_parse(at + 1, PLW_UNIT_AMPERE, &reading->amps, NULL) != PLW_OK || strpbrk(at + 1, "aA") == NULL) {
-        reading->amps = (double)NAN;
-        if (plw_quantity_parse(at + 1, PLW_UNIT_OHM, &ohms, NULL) == PLW_OK && ohms > 0) {
-            reading->amps = reading->volts / ohms;
-        }
-    }
-    if (!(reading->amps >= 0 && reading->amps <= 10)) {
-        fault_entry(work, entry,
-                    "behind the @ stands the resistor or the current of the reading, up to 10 A; write for "
-                    "instance 258V@10k or 271V@18mA");
-        return false;
-    }
-    return true;
-}
-
-static void take_readings(builder *work, plw_stage *stage) {
-    plw_reading readings[PLW_READINGS_MOST];
-    size_t count = 0;
-    const plw_stage_entry *last = entry_of(work, "reading");
-    bool good = last != NULL;
-    for (size_t i = 0; i < work->description->count; i++) {
-        const plw_stage_entry *entry = &work->description->entry[i];
-        if (entry->type->kind != PLW_ENTRY_READING) {
-            continue;
-        }
-        last = entry;
-        if (count == PLW_READINGS_MOST) {
-            fault_entry(work, entry, "is one reading too many; keep 16");
-            return;
-        }
-        good = read_reading(work, entry, &readings[count]) && good;
-        count++;
-    }
-    plw_error error = {.status = PLW_OK};
-    if (good && plw_supply_readings(readings, count, &stage->supply, &error) != PLW_OK) {
-        fault_entry(work, last, error.text);
-    }
-}
-
-static void take_supply(builder *work, plw_stage *stage) {
-    exclude(work, "supply", "reading", "give the voltage or the readings");
-    exclude(work, "source-ohms", "reading", "the readings tell the resistance of the supply");
-    const plw_stage_entry *supply = entry_of(work, "supply");
-    const plw_stage_entry *source = entry_of(work, "source-ohms");
-    double volts = (double)NAN;
-    double ohms = 0;
-    take_quantity(work, "source-ohms", &ohms);
-    if (supply == NULL) {
-        if (entry_of(work, "reading") != NULL) {
-            take_readings(work, stage);
-        } else if (source != NULL) {
-            fault_entry(work, source, "the off-load voltage is missing; add it, e.g. --supply 305V");
-        } else {
-            fault_missing(work, "--supply: is missing; give the loaded supply voltage, e.g. --supply 285V, or bench "
-                                "readings, e.g. --reading 305V --reading 271V@18mA");
-        }
-        return;
-    }
-    plw_error error = {.status = PLW_OK};
-    if (read_quantity(work, supply, &volts)) {
-        const plw_status status = ohms > 0 ? plw_supply_source(volts, ohms, &stage->supply, &error)
-                                           : plw_supply_stiff(volts, &stage->supply, &error);
-        if (status != PLW_OK) {
-            fault_entry(work, supply, error.text);
-        }
-    }
-}
-
 /* A voltage above twice the rating is a slip of the pen: no choice of resistor brings it back. */
-static void check_voltage(builder *work, const char *name, const plw_stage *stage, double volts, double rating,
+static void check_voltage(plw_builder *work, const char *name, const plw_stage *stage, double volts, double rating,
                           const char *electrode) {
-    const plw_stage_entry *entry = entry_of(work, name);
+    const plw_stage_entry *entry = plw_builder_entry(work, name);
     if (entry != NULL && volts > 2.0 * rating) {
         char volts_shown[SHOWN_SIZE];
         char rating_shown[SHOWN_SIZE];
@@ -352,11 +263,11 @@ static void check_voltage(builder *work, const char *name, const plw_stage *stag
         snprintf(text, sizeof text,
                  "%s is more than twice what the %s of %s is rated for (%s); lower it or choose another tube",
                  volts_shown, electrode, stage->tube->type, rating_shown);
-        fault_entry(work, entry, text);
+        plw_builder_fault(work, entry, text);
     }
 }
 
-static void check_ratings(builder *work, const plw_stage *stage) {
+static void check_ratings(plw_builder *work, const plw_stage *stage) {
     const plw_ratings *ratings = plw_tube_ratings(stage->tube, stage->variant, stage->connection);
     /* The current that brings the plate to its rated dissipation at its rated voltage. */
     const double amps = isfinite(ratings->plate_watts / ratings->plate_volts)
@@ -365,67 +276,109 @@ static void check_ratings(builder *work, const plw_stage *stage) {
     double volts = 0;
     double ohms = 0;
     plw_supply_at(&stage->supply, amps + stage->other_amps, &volts, &ohms);
-    check_voltage(work, entry_of(work, "supply") == NULL ? "reading" : "supply", stage, volts, ratings->plate_volts,
-                  "plate");
+    static const char *const names[] = {"supply", "winding", "reading"};
+    size_t name = 0;
+    while (name < 2 && plw_builder_entry(work, names[name]) == NULL) {
+        name++;
+    }
+    check_voltage(work, names[name], stage, volts, ratings->plate_volts, "plate");
     check_voltage(work, "screen-supply", stage, stage->screen_supply_volts, ratings->screen_volts, "screen");
 }
 
 /* ---- load and bias ----------------------------------------------------------------------------------------------- */
 
-static void take_load(builder *work, plw_stage *stage) {
+static void take_load(plw_builder *work, plw_stage *stage) {
     const size_t faults_before = strlen(work->faults.text);
-    take_quantity(work, "load", &stage->load_ohms);
-    take_quantity(work, "ratio", &stage->ratio);
-    take_quantity(work, "speaker", &stage->speaker_ohms);
-    take_quantity(work, "primary-ohms", &stage->primary_ohms);
-    take_quantity(work, "secondary-ohms", &stage->secondary_ohms);
-    const plw_stage_entry *load = entry_of(work, "load");
-    const plw_stage_entry *ratio = entry_of(work, "ratio");
-    const plw_stage_entry *speaker = entry_of(work, "speaker");
+    plw_builder_take(work, "load", &stage->load_ohms);
+    plw_builder_take(work, "ratio", &stage->ratio);
+    plw_builder_take(work, "speaker", &stage->speaker_ohms);
+    plw_builder_take(work, "primary-ohms", &stage->primary_ohms);
+    plw_builder_take(work, "secondary-ohms", &stage->secondary_ohms);
+    const plw_stage_entry *load = plw_builder_entry(work, "load");
+    const plw_stage_entry *ratio = plw_builder_entry(work, "ratio");
+    const plw_stage_entry *speaker = plw_builder_entry(work, "speaker");
     if (load == NULL && (ratio == NULL || speaker == NULL)) {
-        fault_missing(work, "--load: is missing; give the reflected load, e.g. --load 5k, or ratio and speaker, e.g. "
+        plw_builder_missing(work,
+                            "--load: is missing; give the reflected load, e.g. --load 5k, or ratio and speaker, e.g. "
                             "--ratio 25 --speaker 8");
         return;
     }
     plw_error error = {.status = PLW_OK};
     if (strlen(work->faults.text) == faults_before && plw_stage_settle_load(stage, &error) != PLW_OK) {
-        fault_named(work, error.text);
+        plw_builder_fault_named(work, error.text);
     }
 }
 
-static void take_bias(builder *work, plw_stage *stage) {
-    exclude(work, "fixed-bias", "cathode-resistor", "give one of them");
-    exclude(work, "fixed-bias", "resistor-each", "with fixed bias there is no cathode resistor");
-    exclude(work, "fixed-bias", "unbypassed", "with fixed bias there is no cathode resistor");
-    take_quantity(work, "cathode-resistor", &stage->cathode_resistor_ohms);
-    take_quantity(work, "fixed-bias", &stage->fixed_bias_volts);
+static void take_bias(plw_builder *work, plw_stage *stage) {
+    plw_builder_exclude(work, "fixed-bias", "cathode-resistor", "give one of them");
+    plw_builder_exclude(work, "fixed-bias", "resistor-each", "with fixed bias there is no cathode resistor");
+    plw_builder_exclude(work, "fixed-bias", "unbypassed", "with fixed bias there is no cathode resistor");
+    plw_builder_take(work, "cathode-resistor", &stage->cathode_resistor_ohms);
+    plw_builder_take(work, "fixed-bias", &stage->fixed_bias_volts);
     take_switch(work, "resistor-each", &stage->resistor_each);
     take_switch(work, "unbypassed", &stage->unbypassed);
 }
 
-plw_status plw_stage_build(const plw_stage_description *description, plw_catalogue *catalogue, plw_stage *stage,
-                           plw_error *error) {
-    builder work = {.description = description, .faults = {.status = PLW_OK}};
+/* How far the line of a supply is to reach: what the tubes draw when run well beyond their rating. */
+static double most_amps(const plw_stage *stage) {
+    const plw_ratings *ratings =
+        stage->tube == NULL ? NULL : plw_tube_ratings(stage->tube, stage->variant, stage->connection);
+    double amps = USUAL_AMPS;
+    if (ratings != NULL && isfinite(ratings->plate_watts / ratings->plate_volts)) {
+        amps = ratings->plate_watts / ratings->plate_volts;
+    }
+    return BEYOND_RATING * amps * (double)stage->parallel + stage->other_amps;
+}
+
+static plw_status verdict(const plw_builder *work, plw_error *error) {
+    return work->faults.status == PLW_OK ? PLW_OK : plw_fail(error, work->faults.status, "%s", work->faults.text);
+}
+
+plw_status plw_plate_supply_build(const plw_stage_description *description, plw_catalogue *catalogue,
+                                  double most_amps_wanted, plw_plate_supply *supply, plw_error *error) {
+    plw_builder work = {.description = description, .faults = {.status = PLW_OK}};
+    plw_plate_supply made;
+    plw_builder_take_supply(&work, catalogue, most_amps_wanted, &made);
+    const plw_status status = verdict(&work, error);
+    if (status == PLW_OK) {
+        *supply = made;
+    }
+    return status;
+}
+
+plw_status plw_stage_build_supplied(const plw_stage_description *description, plw_catalogue *catalogue,
+                                    plw_stage *stage, plw_plate_supply *supply, plw_error *error) {
+    plw_builder work = {.description = description, .faults = {.status = PLW_OK}};
     plw_stage made = plw_stage_ideal();
+    plw_plate_supply plate_supply;
     take_tube(&work, catalogue, &made);
     take_parallel(&work, &made);
     take_connection(&work, &made);
     take_screen(&work, &made);
-    take_supply(&work, &made);
-    take_quantity(&work, "other-current", &made.other_amps);
+    plw_builder_take(&work, "other-current", &made.other_amps);
+    plw_builder_take_supply(&work, catalogue, most_amps(&made), &plate_supply);
+    made.supply = plate_supply.line;
     take_load(&work, &made);
     take_bias(&work, &made);
-    take_quantity(&work, "drive", &made.drive_peak_volts);
+    plw_builder_take(&work, "drive", &made.drive_peak_volts);
     if (work.faults.status == PLW_OK && made.tube != NULL) {
         check_ratings(&work, &made);
     }
     plw_error fault = {.status = PLW_OK};
     if (work.faults.status == PLW_OK && made.tube != NULL && plw_stage_validate(&made, false, &fault) != PLW_OK) {
-        fault_named(&work, fault.text);
+        plw_builder_fault_named(&work, fault.text);
     }
-    if (work.faults.status != PLW_OK) {
-        return plw_fail(error, work.faults.status, "%s", work.faults.text);
+    const plw_status status = verdict(&work, error);
+    if (status == PLW_OK) {
+        *stage = made;
+        if (supply != NULL) {
+            *supply = plate_supply;
+        }
     }
-    *stage = made;
-    return PLW_OK;
+    return status;
+}
+
+plw_status plw_stage_build(const plw_stage_description *description, plw_catalogue *catalogue, plw_stage *stage,
+                           plw_error *error) {
+    return plw_stage_build_supplied(description, catalogue, stage, NULL, error);
 }

@@ -5,11 +5,17 @@
 #include <string.h>
 
 static const char *const connections[] = {"pentode", "triode", "ultralinear", NULL};
+static const char *const rectifiers[] = {"full-wave", "bridge", "half-wave", NULL};
 
 #define QUANTITY(entry_name, entry_unit, entry_least, entry_most, entry_example)                                       \
     {                                                                                                                  \
         .name = (entry_name), .kind = PLW_ENTRY_QUANTITY, .unit = (entry_unit), .least = (entry_least),                \
         .most = (entry_most), .example = (entry_example)                                                               \
+    }
+#define PART(entry_name, entry_unit, entry_least, entry_most, entry_example)                                           \
+    {                                                                                                                  \
+        .name = (entry_name), .kind = PLW_ENTRY_QUANTITY, .unit = (entry_unit), .least = (entry_least),                \
+        .most = (entry_most), .example = (entry_example), .repeatable = true, .in_filter = true                        \
     }
 #define SWITCH(entry_name)                                                                                             \
     { .name = (entry_name), .kind = PLW_ENTRY_SWITCH, .example = "yes" }
@@ -29,6 +35,17 @@ static const plw_entry_type types[] = {
      .most = 5000,
      .repeatable = true,
      .example = "258V@10k"},
+    QUANTITY("winding", PLW_UNIT_VOLT, 5, 5000, "230V"),
+    {.name = "rectifier", .kind = PLW_ENTRY_CHOICE, .choices = rectifiers, .example = "full-wave"},
+    {.name = "diode", .kind = PLW_ENTRY_TUBE, .example = "GZ34"},
+    QUANTITY("reservoir", PLW_UNIT_FARAD, 1e-7, 0.1, "47uF"),
+    QUANTITY("winding-ohms", PLW_UNIT_OHM, 0, 1e5, "95"),
+    QUANTITY("mains", PLW_UNIT_HERTZ, 10, 1000, "50Hz"),
+    PART("dropper", PLW_UNIT_OHM, 0.1, 1e6, "470"),
+    PART("choke", PLW_UNIT_HENRY, 0.01, 1000, "8H"),
+    PART("choke-ohms", PLW_UNIT_OHM, 0, 1e5, "180"),
+    PART("smoothing", PLW_UNIT_FARAD, 1e-7, 0.1, "47uF"),
+    QUANTITY("bleeder", PLW_UNIT_OHM, 100, 1e8, "220k"),
     QUANTITY("other-current", PLW_UNIT_AMPERE, 0, 10, "3mA"),
     QUANTITY("load", PLW_UNIT_OHM, 1, 1e6, "5k"),
     QUANTITY("ratio", PLW_UNIT_NONE, 0.1, 1000, "25"),

@@ -92,10 +92,11 @@ static void remove_displaced(plw_stage_description *description, const char *nam
     static const struct {
         const char *name, *displaced;
     } pairs[] = {
-        {"supply", "reading"},
-        {"supply", "source-ohms"},
         {"reading", "supply"},
         {"reading", "source-ohms"},
+        {"reading", "winding-ohms"},
+        {"winding", "supply"},
+        {"winding", "source-ohms"},
         {"load", "ratio"},
         {"ratio", "load"},
         {"cathode-resistor", "fixed-bias"},
@@ -103,10 +104,24 @@ static void remove_displaced(plw_stage_description *description, const char *nam
         {"fixed-bias", "resistor-each"},
         {"fixed-bias", "unbypassed"},
     };
+    /* All that a loaded voltage makes needless. */
+    static const char *const supply_parts[] = {"reading", "source-ohms", "winding", "winding-ohms", "rectifier",
+                                               "diode",   "reservoir",   "mains",   "bleeder"};
+    const plw_entry_type *type = plw_entry_type_find(name);
     remove_entries(description, name, true);
     for (size_t i = 0; i < sizeof pairs / sizeof pairs[0]; i++) {
         if (strcmp(pairs[i].name, name) == 0) {
             remove_entries(description, pairs[i].displaced, true);
+        }
+    }
+    const bool voltage = strcmp(name, "supply") == 0;
+    for (size_t i = 0; voltage && i < sizeof supply_parts / sizeof supply_parts[0]; i++) {
+        remove_entries(description, supply_parts[i], true);
+    }
+    /* A filter is told anew as a whole. */
+    for (size_t i = 0; (voltage || type->in_filter) && plw_entry_type_at(i) != NULL; i++) {
+        if (plw_entry_type_at(i)->in_filter) {
+            remove_entries(description, plw_entry_type_at(i)->name, true);
         }
     }
     if (strcmp(name, "connection") == 0) {
@@ -313,15 +328,27 @@ static void put_attribute(FILE *out, const char *text) {
     }
 }
 
+static void put_entry(FILE *out, const plw_stage_entry *entry) {
+    fprintf(out, "  <%s value=\"", entry->type->name);
+    put_attribute(out, entry->text);
+    fputs("\"/>\n", out);
+}
+
+/* In the order of the table, but for the filter, whose order says how it is wired. */
 static void put_entries(FILE *out, const plw_stage_description *description) {
+    bool filter_put = false;
     for (size_t index = 0; plw_entry_type_at(index) != NULL; index++) {
+        const plw_entry_type *type = plw_entry_type_at(index);
+        if (type->in_filter && filter_put) {
+            continue;
+        }
         for (size_t i = 0; i < description->count; i++) {
-            if (description->entry[i].type == plw_entry_type_at(index)) {
-                fprintf(out, "  <%s value=\"", description->entry[i].type->name);
-                put_attribute(out, description->entry[i].text);
-                fputs("\"/>\n", out);
+            const plw_stage_entry *entry = &description->entry[i];
+            if (type->in_filter ? entry->type->in_filter : entry->type == type) {
+                put_entry(out, entry);
             }
         }
+        filter_put = filter_put || type->in_filter;
     }
 }
 
