@@ -5,6 +5,7 @@
 #   make install     PREFIX=/usr/local, DESTDIR= are obeyed
 #   make refit       recompute every tube's coefficients from its printed rows
 #   make accuracy    the law against every printed row, in the fit and left out of it
+#   make laws        the laws that were compared for pentodes and beam tubes, one table (tests/laws/README.md)
 #   make bench       speed, as ratios within one run
 #   make strict      format, static analysis, clang, sanitizers, valgrind, replay of the fuzzing corpus
 #   make fuzz        coverage-guided fuzzing of the parsers (FUZZ_SECONDS=60)

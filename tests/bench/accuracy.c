@@ -5,7 +5,8 @@
  *
  * --screened      pentodes and beam tubes only
  * --summary       the totals alone, a line each, fields parted by tabs: name, set, figure, median, 90 %, count
- * --coefficients  the fitted coefficients alone: name, kind of tube, type, coefficient, its place, value
+ * --coefficients  the fitted coefficients alone: name, kind of tube, type, family (the type
+ *                 where it has none), coefficient, its place, value
  * SPDX-License-Identifier: GPL-3.0-or-later */
 #include <math.h>
 #include <stdint.h>
@@ -218,8 +219,9 @@ static void compare_as_triode(comparison *all, const plw_tube *tube) {
 
 static void print_coefficients(const comparison *all, const plw_tube *tube, const plw_law *law) {
     for (size_t index = 0; index < plw_law_coefficient_count(law->kind); index++) {
-        printf("%s\t%s\t%s\t%s\t%zu\t%.6g\n", all->name, plw_tube_kind_name(tube->kind), tube->type,
-               plw_law_coefficient_name(law->kind, index), index, law->coefficient[index]);
+        printf("%s\t%s\t%s\t%s\t%s\t%zu\t%.6g\n", all->name, plw_tube_kind_name(tube->kind), tube->type,
+               tube->family != NULL ? tube->family : tube->type, plw_law_coefficient_name(law->kind, index), index,
+               law->coefficient[index]);
     }
 }
 
