@@ -9,7 +9,7 @@
 #define FIVE_POINT "5 selected ordinates, RCA Receiving Tube Manual; RDH4 ch. 13"
 #define ESPLEY "D. C. Espley, Proc. IRE 21, October 1933, p. 1439"
 #define CHAFFEE "E. L. Chaffee, Rev. Sci. Instr. 7, 1936"
-#define ROUNDING 1e-11 /* mA of about a hundred: the last digits of sums of ten or forty terms */
+#define ROUNDING 1e-11 /* mA of about a hundred: the last digits of sums of some tens of terms */
 
 /* Plate current in mA at a share x of the grid's peak. */
 typedef double (*characteristic)(double x);
@@ -108,8 +108,8 @@ static void few_ordinates_alias_and_the_series_does_not(void **state) {
     compare(eleven, series, 11, CHAFFEE);
 }
 
-/* Up to the (2 x 20 - 10)th harmonic nothing is folded back into the ten: a pure 29th leaves them empty, a 33rd comes
- * back as the 7th. */
+/* Up to the (2 STEPS - 10)th harmonic nothing is folded back into the ten; the (2 STEPS - 7)th comes back as the 7th.
+ */
 static void aliasing_begins_where_the_header_says(void **state) {
     (void)state;
     double sample[PLW_CYCLE_INSTANTS], harmonic[PLW_HARMONICS + 1];
@@ -119,14 +119,14 @@ static void aliasing_begins_where_the_header_says(void **state) {
         }
         plw_cosine_series(sample, harmonic);
         for (int order = 0; order <= PLW_HARMONICS; order++) {
-            assert_near(harmonic[order], 0.0, ROUNDING, "orthogonality of cosines at 2 x 20 phases");
+            assert_near(harmonic[order], 0.0, ROUNDING, "orthogonality of cosines at 2 STEPS phases");
         }
     }
     for (int index = 0; index < PLW_CYCLE_INSTANTS; index++) {
-        sample[index] = 2.385 * cos(33.0 * PI * index / PLW_CYCLE_STEPS);
+        sample[index] = 2.385 * cos((2 * PLW_CYCLE_STEPS - 7) * PI * index / PLW_CYCLE_STEPS);
     }
     plw_cosine_series(sample, harmonic);
-    assert_near(harmonic[7], 2.385, ROUNDING, "40 - 33 = 7");
+    assert_near(harmonic[7], 2.385, ROUNDING, "2 STEPS - (2 STEPS - 7) = 7");
 }
 
 static void each_harmonic_comes_back_alone(void **state) {
