@@ -298,6 +298,42 @@ static void zero_bias_leaves_no_drive(void **state) {
     assert_true(isnan(s.voltage_gain) && isnan(s.thd_percent));
 }
 
+/* Behind the driver's resistance each instant's grid stands below the open signal by the fall of its own current. */
+static void check_driver(int number, const plw_stage *stage, const plw_signal *s) {
+    for (int index = 0; index <= STEPS; index++) {
+        const node_volts v = volts_at(stage, s, index);
+        const double grid = s->path_grid_volts[index];
+        plw_currents c;
+        plw_law_evaluate(&stage->tube->model.law, v.plate - v.cathode, v.screen - v.cathode, grid, &c);
+        const double fall = stage->driver_ohms * stage->parallel * c.grid_amps;
+        if (v.grid - v.cathode > -1.9) { /* from where on the driver's load is counted */
+            check(number, stage, "grid behind the driver", grid, v.grid - v.cathode - fall, 1e-6);
+        }
+        const double missed =
+            fabs(c.plate_amps - s->path_plate_amps[index]) + fabs(c.screen_amps - s->path_screen_amps[index]);
+        check(number, stage, "an instant misses the law by (A)", missed, 0.0, 2e-8);
+    }
+}
+
+static void grid_current_loads_the_driver(void **state) {
+    (void)state;
+    random_source r = {20250220};
+    for (int number = 0; number < 2000; number++) {
+        test_tube tube;
+        plw_stage stage;
+        random_stage(&r, &tube, &stage);
+        stage.driver_ohms = random_ratio(&r, 100.0, 47e3);
+        plw_quiescent q = {0};
+        plw_signal s = {0};
+        plw_error error = {0};
+        if (plw_quiescent_solve(&stage, &q, &error) != PLW_OK || plw_signal_solve(&stage, &q, &s, &error) != PLW_OK) {
+            fail_stage(number, &stage, error.text, 0.0, 0.0);
+        }
+        check_driver(number, &stage, &s);
+        check_averages(number, &stage, &s);
+    }
+}
+
 static void impossible_drives_are_refused(void **state) {
     (void)state;
     test_tube tube;
@@ -341,6 +377,7 @@ int main(void) {
         cmocka_unit_test(small_signals_follow_the_equivalent_circuit),
         cmocka_unit_test(a_drive_beyond_shows_grid_current_and_cut_off),
         cmocka_unit_test(zero_bias_leaves_no_drive),
+        cmocka_unit_test(grid_current_loads_the_driver),
         cmocka_unit_test(impossible_drives_are_refused),
         cmocka_unit_test(an_unbypassed_cathode_feeds_back),
     };
