@@ -4,9 +4,9 @@
  *   accuracy [--screened] [--summary NAME | --coefficients NAME] [FOLDER]
  *
  * --screened      pentodes and beam tubes only
- * --summary       the totals alone, a line each, fields parted by tabs: name, set, figure, median, 90 %, count
- * --coefficients  the fitted coefficients alone: name, kind of tube, type, family (the type
- *                 where it has none), coefficient, its place, value
+ * --summary       for programs, with tabs between: NAME, basis, figure, then either "row", type, place, error (a point
+ *                 has its place negative, -1 the first) or "total", median, 90 %, count
+ * --coefficients  for programs: NAME, kind of tube, type, family (or type), coefficient, its place, value
  * SPDX-License-Identifier: GPL-3.0-or-later */
 #include <math.h>
 #include <stdint.h>
@@ -165,10 +165,21 @@ static void print_errors(const compared *c, const double errors[FIGURES]) {
     }
 }
 
+static void list_errors(const comparison *all, const compared *c, const double errors[FIGURES]) {
+    for (size_t f = 0; f < FIGURES; f++) {
+        if (isfinite(errors[f])) {
+            printf("%s\t%s\t%s\trow\t%s\t%td\t%.3f\n", all->name, set_names[c->set], figure_names[f], c->tube->type,
+                   c->row != NULL ? c->row - c->tube->rows : -1 - (c->point - c->tube->points), errors[f]);
+        }
+    }
+}
+
 static void note_errors(comparison *all, const compared *c, const double errors[FIGURES]) {
     tally(&all->tables[c->set], errors);
     if (all->output == WHOLE) {
         print_errors(c, errors);
+    } else {
+        list_errors(all, c, errors);
     }
 }
 
@@ -267,7 +278,7 @@ static void print_summary(comparison *all) {
         table *t = &all->tables[set];
         for (size_t f = 0; f < FIGURES; f++) {
             if (t->count[f] > 0) {
-                printf("%s\t%s\t%s\t%.3f\t%.3f\t%zu\n", all->name, set_names[set], figure_names[f],
+                printf("%s\t%s\t%s\ttotal\t%.3f\t%.3f\t%zu\n", all->name, set_names[set], figure_names[f],
                        quantile(t->value[f], t->count[f], 0.5), quantile(t->value[f], t->count[f], 0.9), t->count[f]);
             }
         }

@@ -1,5 +1,6 @@
-/* The functions of the law for a candidate: triodes and grid current as shipped, pentodes and
- * beam tubes by the candidate. SPDX-License-Identifier: GPL-3.0-or-later */
+/* The functions of the law for a candidate: triodes and grid current as shipped, pentodes and beam tubes by the
+ * candidate.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
 #include "candidate.h"
 
 #include <math.h>

@@ -30,5 +30,6 @@ $(B)/laws/shipped.totals: $(B)/tests/bench/accuracy $(B)/laws/tubedata
 .PHONY: laws laws-expectations
 laws: $(LAW_CANDIDATES:%=$(B)/laws/%.totals) $(B)/laws/shipped.totals
 	@awk -f tests/laws/table.awk $^
+	@awk -f tests/laws/pairs.awk $(B)/laws/moving_knee.totals $(filter-out %/moving_knee.totals %/shipped.totals,$^)
 laws-expectations: $(LAW_CANDIDATES:%=$(B)/laws/%.coefficients)
 	@for law in $^; do awk -v summary=1 -f tests/laws/expectations.awk $$law; done

@@ -5,10 +5,10 @@ BEGIN {
     sets[1] = "fit"; sets[2] = "left out"; sets[3] = "as triode"
     titles[1] = "in the fit"; titles[2] = "row not in the fit"; titles[3] = "as triode, from pentode rows"
 }
-{
+$4 == "total" {
     if (!($1 in law_seen)) { law_seen[$1] = 1; law[++laws] = $1 }
     if (!($3 in figure_seen)) { figure_seen[$3] = 1; figure[++figures] = $3 }
-    cell[$1, $2, $3] = sprintf("%5.2f /%6.2f (%2d)", $4, $5, $6)
+    cell[$1, $2, $3] = sprintf("%5.2f /%6.2f (%2d)", $5, $6, $7)
 }
 END {
     for (s = 1; s <= 3; s++) {
