@@ -94,7 +94,7 @@ typedef struct {
  * Source: Kirchhoff's laws with the tube's law; checked against a general-purpose root finder in the tests. */
 PLW_API plw_status plw_quiescent_solve(const plw_stage *stage, plw_quiescent *quiescent, plw_error *error) PLW_MUST_USE;
 
-enum { PLW_HARMONICS_MOST = 10, PLW_PATH_POINTS = 21 };
+enum { PLW_HARMONICS_MOST = 10, PLW_PATH_POINTS = 17 };
 
 /* What ends the drive. */
 typedef enum { PLW_DRIVE_GIVEN, PLW_DRIVE_GRID_CURRENT, PLW_DRIVE_CUT_OFF } plw_drive_limit;

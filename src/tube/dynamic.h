@@ -13,7 +13,7 @@ enum { PLW_OF_PLATE, PLW_OF_SCREEN, PLW_FLOWS };
 
 /* Half a cycle is solved at STEPS + 1 instants, equal in phase: the current of a resistive stage is the same on the way
  * up and on the way down.  Harmonics to the 10th come out free of aliasing up to the (2 STEPS - 10)th. */
-enum { PLW_CYCLE_STEPS = 20, PLW_CYCLE_INSTANTS = PLW_CYCLE_STEPS + 1, PLW_HARMONICS = 10 };
+enum { PLW_CYCLE_STEPS = 16, PLW_CYCLE_INSTANTS = PLW_CYCLE_STEPS + 1, PLW_HARMONICS = 10 };
 
 /* What feeds the tube.  At each instant
  *     electrode volts = average_volts(averages) - ohms * currents          (and the signal at the grid)
@@ -68,7 +68,7 @@ plw_status plw_dynamic_cycle(const plw_law *law, const plw_feed *feed, const plw
 #define PLW_CUT_OFF_FRACTION 0.02
 
 /* Cosine series of samples over half a cycle: peak of harmonic h from f(cos) at PLW_CYCLE_INSTANTS equal phases.
- * Source: E. L. Chaffee, "A simplified harmonic analysis", Rev. Sci. Instr. 7, 1936; here with 2 x 20 ordinates. */
+ * Source: E. L. Chaffee, "A simplified harmonic analysis", Rev. Sci. Instr. 7, 1936; here with 2 x 16 ordinates. */
 void plw_cosine_series(const double sample[PLW_CYCLE_INSTANTS], double harmonic[PLW_HARMONICS + 1]);
 
 #endif

@@ -93,7 +93,7 @@ typedef struct {
     double volts, by_electrode, by_grid;
 } effective;
 
-static effective effective_volts(double mu, double kp, double soft_squared, double volts, double grid_volts) {
+static inline effective effective_volts(double mu, double kp, double soft_squared, double volts, double grid_volts) {
     const double root = sqrt(soft_squared + volts * volts);
     const double drive = grid_volts / root;
     const double argument = kp * (1.0 / mu + drive);
