@@ -299,7 +299,7 @@ static void the_resistor_line_meets_the_cathode_current(void **state) {
     plw_error error = {0};
     static plw_bias_option option;
     assert_int_equal(plw_bias_option_solve(&s.stage, (double)NAN, &option, &error), PLW_OK);
-    const plw_answer check = {&s.stage, NULL, &option, NULL, PLW_E24};
+    const plw_answer check = {.stage = &s.stage, .option = &option, .series = PLW_E24};
     script = script_of(&check, PLW_PLOT_TRANSFER, PLW_PLOT_SVG, "x.svg");
     line_of(script, "bias", bias);
     assert_near_relative(bias[0][0], -9.385, WRITTEN, "fixed");
