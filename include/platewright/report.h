@@ -5,6 +5,10 @@
 #define PLATEWRIGHT_REPORT_H
 
 #include "platewright/bias.h"
+#include "platewright/dummy_meaning.h"
+#include "platewright/hum.h"
+#include "platewright/mains.h"
+#include "platewright/plate_supply.h"
 #include "platewright/specimen.h"
 #include "platewright/uncertainty.h"
 
@@ -19,6 +23,9 @@ typedef struct {
     const plw_bias_option *option; /* what the stage does: the chosen option, or the stage as built */
     const plw_specimen *specimen;  /* check with meter readings */
     const plw_uncertainty *uncertainty;
+    const plw_mains *mains;          /* the mains low and high */
+    const plw_supply_answer *supply; /* the plate supply at the current of the stage at rest */
+    const plw_hum *hum;              /* its ripple at the speaker */
     plw_series series;
 } plw_answer;
 
@@ -32,6 +39,28 @@ PLW_API plw_status plw_report_json(const plw_answer *answer, char **text, plw_er
 
 /* The same as CSV: one header line with units in the column names, one line for each option. */
 PLW_API plw_status plw_report_csv(const plw_answer *answer, char **text, plw_error *error) PLW_MUST_USE;
+
+/* ---- the plate supply -------------------------------------------------------------------------------------------- */
+
+/* All that `supply` found out.  Pointers are borrowed; NULL where there is nothing. */
+typedef struct {
+    const plw_supply_answer *supply;
+    const plw_stage *stage; /* that draws the current, bias included */
+    const plw_bias_option *option;
+    const plw_bias_choice *choice; /* its resistor was chosen */
+    size_t meanings;
+    plw_dummy_meaning meaning[PLW_DUMMY_MEANINGS];
+    const plw_hum *hum;
+    const plw_mains *mains;
+} plw_supply_finding;
+
+PLW_API plw_status plw_report_supply_text(const plw_supply_finding *finding, char **text,
+                                          plw_error *error) PLW_MUST_USE;
+PLW_API plw_status plw_report_supply_json(const plw_supply_finding *finding, char **text,
+                                          plw_error *error) PLW_MUST_USE;
+
+/* The regulation line as CSV: one line a point. */
+PLW_API plw_status plw_report_supply_csv(const plw_supply_finding *finding, char **text, plw_error *error) PLW_MUST_USE;
 
 PLW_API void plw_text_free(char *text);
 

@@ -31,15 +31,8 @@
 /* A screen that runs at this share of its rating under drive is worth a word. */
 #define SCREEN_NEAR 0.8
 
-typedef struct {
-    char (*lines)[PLW_CAUTION_SIZE];
-    size_t most, count;
-} list;
-
-static void say(list *l, const char *format, ...) PLW_PRINTF(2, 3);
-
 /* A line that is cut is cut before a character that does not fit whole. */
-static void say(list *l, const char *format, ...) {
+void plw_caution_say(plw_caution_list *l, const char *format, ...) {
     if (l->count >= l->most) {
         return;
     }
@@ -69,7 +62,7 @@ static const char *written(double value, plw_unit unit, char text[TEXT_SIZE]) {
     return plw_quantity_format(value, unit, 3, text, TEXT_SIZE);
 }
 
-static void of_ratings(list *l, const plw_bias_option *option) {
+static void of_ratings(plw_caution_list *l, const plw_bias_option *option) {
     for (size_t i = 0; i < option->ratings_count; i++) {
         const plw_rating_check *check = &option->ratings[i];
         char value[TEXT_SIZE];
@@ -78,18 +71,39 @@ static void of_ratings(list *l, const plw_bias_option *option) {
         written(check->limit, check->unit, limit);
         const char *when = check->when == PLW_AT_IDLE ? "idle" : "full drive";
         if (!check->ok) {
-            say(l, "Rating exceeded at %s: %s is %s, the limit %s (%.0f %%). %s", when, check->name, value, limit,
-                check->share_percent,
-                check->when == PLW_AT_IDLE ? "Do not build it so."
-                                           : "Speech and music heat less than this steady tone.");
+            plw_caution_say(l, "Rating exceeded at %s: %s is %s, the limit %s (%.0f %%). %s", when, check->name, value,
+                            limit, check->share_percent,
+                            check->when == PLW_AT_IDLE ? "Do not build it so."
+                                                       : "Speech and music heat less than this steady tone.");
         } else if (check->share_percent >= NEAR_PERCENT) {
-            say(l, "At %s the %s is %s of a rated %s: nothing is left for high mains or a strong tube.", when,
-                check->name, value, limit);
+            plw_caution_say(l, "At %s the %s is %s of a rated %s: nothing is left for high mains or a strong tube.",
+                            when, check->name, value, limit);
         }
     }
 }
 
-static void of_drive(list *l, const plw_answer *answer) {
+/* Where the rating system leaves the mains to the builder, each rating broken there that is kept at nominal mains. */
+static void of_mains(plw_caution_list *l, const plw_answer *answer) {
+    const plw_mains *mains = answer->mains;
+    if (mains == NULL || !mains->counted || !mains->high.solved || !answer->option->within_ratings) {
+        return;
+    }
+    for (size_t i = 0; i < mains->high.ratings_count; i++) {
+        const plw_rating_check *check = &mains->high.ratings[i];
+        if (!check->ok) {
+            char value[TEXT_SIZE];
+            char limit[TEXT_SIZE];
+            plw_caution_say(l,
+                            "With the mains 10 %% up the %s is %s, the limit %s (%.0f %%): a %s rating must hold there "
+                            "too. A higher resistor or a lower aim cures it.",
+                            check->name, written(check->value, check->unit, value),
+                            written(check->limit, check->unit, limit), check->share_percent,
+                            plw_rating_system_name(mains->system));
+        }
+    }
+}
+
+static void of_drive(plw_caution_list *l, const plw_answer *answer) {
     const plw_signal *signal = &answer->option->signal;
     char drive[TEXT_SIZE];
     if (!isfinite(signal->drive_peak_volts)) {
@@ -97,25 +111,28 @@ static void of_drive(list *l, const plw_answer *answer) {
     }
     written(signal->drive_peak_volts, PLW_UNIT_VOLT, drive);
     if (signal->limit == PLW_DRIVE_GRID_CURRENT) {
-        say(l, "Full drive is %s peak: beyond it the grid draws current, and a driver that cannot give it clips.",
+        plw_caution_say(
+            l, "Full drive is %s peak: beyond it the grid draws current, and a driver that cannot give it clips.",
             drive);
     } else if (signal->limit == PLW_DRIVE_CUT_OFF) {
-        say(l, "Full drive is %s peak: beyond it the tube is cut off during part of the cycle.", drive);
+        plw_caution_say(l, "Full drive is %s peak: beyond it the tube is cut off during part of the cycle.", drive);
     } else {
         if (signal->grid_current) {
-            say(l,
+            plw_caution_say(
+                l,
                 "At the %s peak given the grid goes positive and draws current: the driver and the coupling capacitor, "
                 "which are not part of this reckoning, will change what comes out.",
                 drive);
         }
         if (signal->cut_off) {
-            say(l, "At the %s peak given the tube is cut off during part of the cycle: this is no longer class A.",
+            plw_caution_say(
+                l, "At the %s peak given the tube is cut off during part of the cycle: this is no longer class A.",
                 drive);
         }
     }
 }
 
-static void of_screen(list *l, const plw_answer *answer) {
+static void of_screen(plw_caution_list *l, const plw_answer *answer) {
     const plw_stage *stage = answer->stage;
     const plw_bias_option *option = answer->option;
     const plw_ratings *ratings = plw_tube_ratings(stage->tube, stage->variant, stage->connection);
@@ -129,31 +146,35 @@ static void of_screen(list *l, const plw_answer *answer) {
         if (driven > SCREEN_NEAR * limit && driven > option->quiescent.screen_watts) {
             char idle_text[TEXT_SIZE];
             char driven_text[TEXT_SIZE];
-            say(l,
+            plw_caution_say(
+                l,
                 "Screen dissipation rises from %s idle to %s at full drive: a resistor in the screen lead spares it.",
                 written(option->quiescent.screen_watts, PLW_UNIT_WATT, idle_text),
                 written(driven, PLW_UNIT_WATT, driven_text));
         }
     }
-    say(l, "Never drive the stage without its speaker or a dummy load: plate volts then swing far above the supply and "
+    plw_caution_say(
+        l, "Never drive the stage without its speaker or a dummy load: plate volts then swing far above the supply and "
            "the screen overheats.");
 }
 
-static void of_bias(list *l, const plw_answer *answer) {
+static void of_bias(plw_caution_list *l, const plw_answer *answer) {
     const plw_stage *stage = answer->stage;
     if (isfinite(stage->fixed_bias_volts)) {
-        say(l, "With fixed bias nothing but the bias supply holds the current: let it come up first, watch the cathode "
+        plw_caution_say(
+            l, "With fixed bias nothing but the bias supply holds the current: let it come up first, watch the cathode "
                "current, and fuse the cathode.");
     } else if (stage->parallel > 1 && !stage->resistor_each) {
-        say(l,
+        plw_caution_say(
+            l,
             "%u tubes share one cathode resistor: one of them may take more than its part and the common voltage "
             "will not show it. A resistor for each tells them apart.",
             stage->parallel);
     }
     if (isfinite(stage->cathode_resistor_ohms) && !stage->unbypassed) {
         char value[TEXT_SIZE];
-        say(l, "Rate the cathode bypass capacitor for twice the bias, %s at least.",
-            written(2.0 * answer->option->quiescent.cathode_volts, PLW_UNIT_VOLT, value));
+        plw_caution_say(l, "Rate the cathode bypass capacitor for twice the bias, %s at least.",
+                        written(2.0 * answer->option->quiescent.cathode_volts, PLW_UNIT_VOLT, value));
     }
 }
 
@@ -162,7 +183,7 @@ static bool outside(double value, double least, double most) {
     return value < REGION_LEAST * least || value > REGION_MOST * most; /* false: bounds not known */
 }
 
-static void of_region(list *l, const plw_answer *answer) {
+static void of_region(plw_caution_list *l, const plw_answer *answer) {
     const plw_stage *stage = answer->stage;
     const plw_quiescent *rest = &answer->option->quiescent;
     const plw_region *region = &stage->tube->model.region;
@@ -191,7 +212,7 @@ static void of_region(list *l, const plw_answer *answer) {
         }
     }
     if (text[0] != '\0') {
-        say(l, "Extrapolated beyond the printed data of the tube, at rest: %s.", text);
+        plw_caution_say(l, "Extrapolated beyond the printed data of the tube, at rest: %s.", text);
     }
 }
 
@@ -200,7 +221,7 @@ static double told(double left_out, double fitted) {
     return isfinite(left_out) ? left_out : fitted;
 }
 
-static void of_model(list *l, const plw_answer *answer) {
+static void of_model(plw_caution_list *l, const plw_answer *answer) {
     const plw_stage *stage = answer->stage;
     const plw_model_errors *out = &stage->tube->model.left_out_error;
     const plw_model_errors *in = &stage->tube->model.fit_error;
@@ -210,70 +231,83 @@ static void of_model(list *l, const plw_answer *answer) {
     const double power = told(out->power_percent, in->power_percent);
     const double distortion = told(out->distortion_points, in->distortion_points);
     if (!isfinite(current)) {
-        say(l, "No printed row tells how far the law of the %.60s may be off: trust the meter.", type);
+        plw_caution_say(l, "No printed row tells how far the law of the %.60s may be off: trust the meter.", type);
     }
     if (current > LARGE_CURRENT_MISS) {
-        say(l, "The law of the %.60s misses printed plate currents by %.1f %% (median): trim on the bench.", type,
-            current);
+        plw_caution_say(l, "The law of the %.60s misses printed plate currents by %.1f %% (median): trim on the bench.",
+                        type, current);
     }
     if (screen > LARGE_SCREEN_MISS && !plw_stage_is_triode(stage)) {
-        say(l, "The law of the %.60s misses printed screen currents by %.0f %% (median): measure the screen.", type,
-            screen);
+        plw_caution_say(l,
+                        "The law of the %.60s misses printed screen currents by %.0f %% (median): measure the screen.",
+                        type, screen);
     }
     if (power > LARGE_POWER_MISS || distortion > LARGE_DISTORTION_MISS) {
-        say(l,
+        plw_caution_say(
+            l,
             "Power and distortion of the %.60s are known only roughly: printed figures are missed by %.0f %% and "
             "%.1f points (median).",
             type, power, distortion);
     }
     const plw_ratings *ratings = plw_tube_ratings(stage->tube, stage->variant, stage->connection);
     if (ratings != NULL && ratings->provenance.how == PLW_HOW_MEMORY) {
-        say(l,
+        plw_caution_say(
+            l,
             "The ratings of the %.60s were written down from memory of the maker's sheet: compare them with the sheet.",
             type);
     }
     if (ratings != NULL && ratings->plate_watts_unpublished) {
-        say(l, "The maker prints no plate dissipation for the %.60s: it is not checked.", type);
+        plw_caution_say(l, "The maker prints no plate dissipation for the %.60s: it is not checked.", type);
     }
 }
 
-static void of_voltages(list *l, const plw_answer *answer) {
+static void of_voltages(plw_caution_list *l, const plw_answer *answer) {
     const plw_supply *supply = &answer->stage->supply;
     const plw_signal *signal = &answer->option->signal;
     char high[TEXT_SIZE];
-    if (supply->kind != PLW_SUPPLY_STIFF && isfinite(supply->volts)) {
+    if (answer->supply != NULL) {
+        plw_cautions_of_supply(l, answer->supply);
+    }
+    const double off_load_volts = answer->supply != NULL ? answer->supply->off_load_volts : supply->volts;
+    if (supply->kind != PLW_SUPPLY_STIFF && isfinite(off_load_volts)) {
         char off_load[TEXT_SIZE];
-        say(l,
+        plw_caution_say(
+            l,
             "Rate capacitors and windings for the unloaded supply at high mains: %s off load, %s with the mains 10 %% "
             "up. With cold tubes it stands there at every switching on.",
-            written(supply->volts, PLW_UNIT_VOLT, off_load), written(HIGH_MAINS * supply->volts, PLW_UNIT_VOLT, high));
+            written(off_load_volts, PLW_UNIT_VOLT, off_load),
+            written(HIGH_MAINS * off_load_volts, PLW_UNIT_VOLT, high));
     } else {
-        say(l,
+        plw_caution_say(
+            l,
             "Rate capacitors and windings for the unloaded supply at high mains, which is not known here: it is well "
             "above the loaded voltage, and with cold tubes it stands there at every switching on.");
     }
     if (isfinite(signal->plate_to_ground_volts_most)) {
-        say(l, "The plate swings to %s above the chassis at full drive: sockets and leads must stand it.",
-            written(signal->plate_to_ground_volts_most, PLW_UNIT_VOLT, high));
+        plw_caution_say(l, "The plate swings to %s above the chassis at full drive: sockets and leads must stand it.",
+                        written(signal->plate_to_ground_volts_most, PLW_UNIT_VOLT, high));
     }
 }
 
-static void standing(list *l) {
-    say(l, "These voltages kill. Unplug, let the capacitors discharge through a resistor, and verify with a meter that "
+void plw_cautions_standing(plw_caution_list *l) {
+    plw_caution_say(
+        l, "These voltages kill. Unplug, let the capacitors discharge through a resistor, and verify with a meter that "
            "each is below 60 V before touching anything.");
-    say(l,
+    plw_caution_say(
+        l,
         "Do no work on a live chassis. Clip the meter on with the power off; where a live reading cannot be avoided, "
         "one hand only, insulated leads, and never alone.");
-    say(l, "Fuse the mains and earth the chassis.");
-    say(l, "Local codes and the judgement of a licensed practitioner go before anything said here.");
+    plw_caution_say(l, "Fuse the mains and earth the chassis.");
+    plw_caution_say(l, "Local codes and the judgement of a licensed practitioner go before anything said here.");
 }
 
 size_t plw_report_cautions(const plw_answer *answer, char (*lines)[PLW_CAUTION_SIZE], size_t most, size_t *own) {
-    list l = {lines, most, 0};
+    plw_caution_list l = {lines, most, 0};
     if (answer->choice != NULL && !answer->choice->aim_reached && answer->choice->obstacle[0] != '\0') {
-        say(&l, "The aim is not reached: %s", answer->choice->obstacle);
+        plw_caution_say(&l, "The aim is not reached: %s", answer->choice->obstacle);
     }
     of_ratings(&l, answer->option);
+    of_mains(&l, answer);
     of_drive(&l, answer);
     of_screen(&l, answer);
     of_bias(&l, answer);
@@ -283,6 +317,6 @@ size_t plw_report_cautions(const plw_answer *answer, char (*lines)[PLW_CAUTION_S
     if (own != NULL) {
         *own = l.count;
     }
-    standing(&l);
+    plw_cautions_standing(&l);
     return l.count;
 }

@@ -15,4 +15,22 @@ enum { PLW_CAUTION_SIZE = 512, PLW_CAUTIONS_MOST = 40 };
  * Ret:  how many were written */
 size_t plw_report_cautions(const plw_answer *answer, char (*lines)[PLW_CAUTION_SIZE], size_t most, size_t *own);
 
+/* The same for a plate supply. */
+size_t plw_supply_cautions(const plw_supply_finding *finding, char (*lines)[PLW_CAUTION_SIZE], size_t most,
+                           size_t *own);
+
+/* Lines being written. */
+typedef struct {
+    char (*lines)[PLW_CAUTION_SIZE];
+    size_t most, count;
+} plw_caution_list;
+
+void plw_caution_say(plw_caution_list *list, const char *format, ...) PLW_PRINTF(2, 3);
+
+/* Those of every chassis. */
+void plw_cautions_standing(plw_caution_list *list);
+
+/* Of the plate supply: a rating of its parts exceeded, parts that were not told. */
+void plw_cautions_of_supply(plw_caution_list *list, const plw_supply_answer *supply);
+
 #endif

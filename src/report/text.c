@@ -7,69 +7,9 @@
 #include "platewright/quantity.h"
 #include "platewright/report.h"
 #include "report/cautions.h"
+#include "report/layout.h"
+#include "report/supply_report.h"
 #include "report/text_buffer.h"
-
-enum { CELL = 32, WIDTH = 78 };
-
-/* One quantity as text; each use in a call needs a cell of its own. */
-typedef struct {
-    char text[CELL];
-} cell;
-
-static cell quantity(double value, plw_unit unit, int digits) {
-    cell c;
-    plw_quantity_format(value, unit, digits, c.text, sizeof c.text);
-    return c;
-}
-
-static cell volts(double value) {
-    return quantity(value, PLW_UNIT_VOLT, 3);
-}
-
-static cell amps(double value) {
-    return quantity(value, PLW_UNIT_AMPERE, 3);
-}
-
-static cell watts(double value) {
-    return quantity(value, PLW_UNIT_WATT, value >= 9.95 ? 3 : 2);
-}
-
-static cell ohms(double value) {
-    return quantity(value, PLW_UNIT_OHM, 3);
-}
-
-/* Print a text into a field of `width` columns, right-aligned; UTF-8 letters count once. */
-static void right(FILE *out, const char *text, int width) {
-    int letters = 0;
-    for (const char *at = text; *at != '\0'; at++) {
-        letters += ((unsigned char)*at & 0xC0U) != 0x80U;
-    }
-    fprintf(out, "%*s%s", width > letters ? width - letters : 0, "", text);
-}
-
-/* Print a paragraph broken at spaces, with a mark before its first line. */
-static void paragraph(FILE *out, const char *mark, const char *text) {
-    const int indent = (int)strlen(mark);
-    int column = fprintf(out, "%s", mark);
-    bool first = true;
-    while (*text != '\0') {
-        const size_t length = strcspn(text, " ");
-        int letters = 0;
-        for (size_t index = 0; index < length; index++) {
-            letters += ((unsigned char)text[index] & 0xC0U) != 0x80U;
-        }
-        if (!first && column + 1 + letters > WIDTH) {
-            fprintf(out, "\n%*s", indent, "");
-            column = indent;
-            first = true;
-        }
-        column += fprintf(out, "%s%.*s", first ? "" : " ", (int)length, text) - ((int)length - letters);
-        first = false;
-        text += length;
-        text += strspn(text, " ");
-    }
-    fputc('\n', out);
-}
 
 static const char *tube_name(const plw_stage *stage) {
     return stage->variant >= 0 ? stage->tube->variants[stage->variant].type : stage->tube->type;
@@ -87,14 +27,15 @@ static void title(FILE *out, const plw_answer *a) {
             fprintf(out, " at %.3g %%", 100.0 * stage->tap);
         }
     }
-    fprintf(out, ", on %s, into %s\n\n", volts(a->option->quiescent.supply_volts).text, ohms(stage->load_ohms).text);
+    fprintf(out, ", on %s, into %s\n\n", plw_cell_volts(a->option->quiescent.supply_volts).text,
+            plw_cell_ohms(stage->load_ohms).text);
 }
 
 static void aim_words(FILE *out, const plw_aim *aim) {
     if (aim->kind == PLW_AIM_DISSIPATION) {
         fprintf(out, "%.3g %% of the rated plate dissipation", aim->value);
     } else if (aim->kind == PLW_AIM_CURRENT) {
-        fprintf(out, "a plate current of %s", amps(aim->value).text);
+        fprintf(out, "a plate current of %s", plw_cell_amps(aim->value).text);
     } else {
         fputs("the most power within the ratings", out);
     }
@@ -104,11 +45,12 @@ static void bias_lines(FILE *out, const plw_answer *a) {
     const plw_stage *stage = a->stage;
     const plw_bias_option *o = a->option;
     if (!isfinite(o->ohms)) {
-        fprintf(out, "FIXED BIAS        %s at the grid, to chassis\n", volts(stage->fixed_bias_volts).text);
+        fprintf(out, "FIXED BIAS        %s at the grid, to chassis\n", plw_cell_volts(stage->fixed_bias_volts).text);
         return;
     }
-    char code[CELL];
-    fprintf(out, "CATHODE RESISTOR  %s (%s)", ohms(o->ohms).text, plw_resistor_code(o->ohms, code, sizeof code));
+    char code[PLW_CELL_SIZE];
+    fprintf(out, "CATHODE RESISTOR  %s (%s)", plw_cell_ohms(o->ohms).text,
+            plw_resistor_code(o->ohms, code, sizeof code));
     if (a->choice != NULL) {
         fprintf(out, ", E%d", (int)a->series);
     }
@@ -117,7 +59,7 @@ static void bias_lines(FILE *out, const plw_answer *a) {
     } else {
         fputs(", larger than any usual size", out);
     }
-    fprintf(out, " (it turns %s into heat)\n", watts(o->watts).text);
+    fprintf(out, " (it turns %s into heat)\n", plw_cell_watts(o->watts).text);
     if (stage->parallel > 1) {
         fprintf(out, "                  %s\n",
                 stage->resistor_each ? "one for each tube" : "one for all tubes together");
@@ -128,18 +70,18 @@ static void bias_lines(FILE *out, const plw_answer *a) {
     if (a->choice != NULL) {
         fputs("                  aimed at ", out);
         aim_words(out, &a->choice->aim);
-        fprintf(out, "; exact %s\n", quantity(a->choice->exact_ohms, PLW_UNIT_OHM, 4).text);
+        fprintf(out, "; exact %s\n", plw_cell_quantity(a->choice->exact_ohms, PLW_UNIT_OHM, 4).text);
         if (!a->choice->aim_reached) {
-            paragraph(out, "                  NOT REACHED: ", a->choice->obstacle);
+            plw_put_paragraph(out, "                  NOT REACHED: ", a->choice->obstacle);
         }
     }
 }
 
 static void meter_line(FILE *out, const char *name, double rest, double driven) {
     fprintf(out, "  %-11s", name);
-    right(out, volts(rest).text, 12);
+    plw_put_right(out, plw_cell_volts(rest).text, 12);
     if (isfinite(driven)) {
-        right(out, volts(driven).text, 16);
+        plw_put_right(out, plw_cell_volts(driven).text, 16);
     }
     fputc('\n', out);
 }
@@ -163,17 +105,18 @@ static void tube_lines(FILE *out, const plw_answer *a) {
     const plw_quiescent *q = &a->option->quiescent;
     const char *each = a->stage->parallel > 1 ? " (each tube)" : "";
     fprintf(out, "\nTHE TUBE AT REST%s\n", each);
-    fprintf(out, "  to its cathode     plate %s", volts(q->plate_volts).text);
+    fprintf(out, "  to its cathode     plate %s", plw_cell_volts(q->plate_volts).text);
     if (isfinite(q->screen_volts)) {
-        fprintf(out, ", screen %s", volts(q->screen_volts).text);
+        fprintf(out, ", screen %s", plw_cell_volts(q->screen_volts).text);
     }
-    fprintf(out, ", grid %s\n", volts(q->grid_volts).text);
-    fprintf(out, "  current            plate %s", amps(q->plate_amps).text);
+    fprintf(out, ", grid %s\n", plw_cell_volts(q->grid_volts).text);
+    fprintf(out, "  current            plate %s", plw_cell_amps(q->plate_amps).text);
     if (isfinite(q->screen_volts)) {
-        fprintf(out, ", screen %s, cathode %s", amps(q->screen_amps).text, amps(q->cathode_amps).text);
+        fprintf(out, ", screen %s, cathode %s", plw_cell_amps(q->screen_amps).text,
+                plw_cell_amps(q->cathode_amps).text);
     }
     fprintf(out, "\n  small signal       gm %.3g mA/V, plate resistance %s, mu %.3g\n", 1e3 * q->gm_siemens,
-            quantity(q->plate_resistance_ohms, PLW_UNIT_OHM, 2).text, q->mu);
+            plw_cell_quantity(q->plate_resistance_ohms, PLW_UNIT_OHM, 2).text, q->mu);
 }
 
 static const plw_rating_check *partner(const plw_bias_option *o, const plw_rating_check *check) {
@@ -187,11 +130,12 @@ static const plw_rating_check *partner(const plw_bias_option *o, const plw_ratin
 
 static void rating_cell(FILE *out, const plw_rating_check *check) {
     if (check == NULL) {
-        right(out, "", 20);
+        plw_put_right(out, "", 20);
         return;
     }
-    const cell value = check->unit == PLW_UNIT_WATT ? watts(check->value) : quantity(check->value, check->unit, 3);
-    right(out, value.text, 10);
+    const plw_cell value =
+        check->unit == PLW_UNIT_WATT ? plw_cell_watts(check->value) : plw_cell_quantity(check->value, check->unit, 3);
+    plw_put_right(out, value.text, 10);
     fprintf(out, " %4.0f %%%s", check->share_percent, check->ok ? "   " : " !!");
 }
 
@@ -210,35 +154,63 @@ static void rating_lines(FILE *out, const plw_answer *a) {
         rating_cell(out, check);
         rating_cell(out, driven);
         const double limit = driven != NULL ? driven->limit : check->limit;
-        right(out, quantity(limit, check->unit, 3).text, 9);
+        plw_put_right(out, plw_cell_quantity(limit, check->unit, 3).text, 9);
         if (driven != NULL && driven->limit != check->limit) {
-            fprintf(out, " (at rest %s)", quantity(check->limit, check->unit, 3).text);
+            fprintf(out, " (at rest %s)", plw_cell_quantity(check->limit, check->unit, 3).text);
         }
         fputc('\n', out);
     }
     fprintf(out, "  %s, %s\n", plw_rating_system_name(ratings->system), ratings->provenance.source);
 }
 
+/* What is known of the plate supply beyond its voltage; platewright supply says all. */
+static void supply_lines(FILE *out, const plw_answer *a) {
+    const plw_supply_answer *s = a->supply;
+    if (s == NULL || !s->supply->has_winding) {
+        return;
+    }
+    fprintf(out, "\nPLATE SUPPLY      %s in the conducting path; off load %s, at high mains %s\n",
+            plw_cell_ohms(s->supply->parts.path_ohms).text, plw_cell_volts(s->off_load_volts).text,
+            plw_cell_volts(s->off_load_high_volts).text);
+    if (isfinite(s->volts_error)) {
+        fprintf(out, "                  loaded %s +/- %s by the readings\n", plw_cell_volts(s->volts).text,
+                plw_cell_quantity(s->volts_error, PLW_UNIT_VOLT, 2).text);
+    }
+    if (!s->supply->reservoir_assumed) {
+        fprintf(out, "                  ripple %s peak to peak",
+                plw_cell_quantity(s->state.node[s->state.nodes - 1].ripple_peak_to_peak_volts, PLW_UNIT_VOLT, 2).text);
+        if (a->hum != NULL && isfinite(a->hum->speaker_rms_volts)) {
+            fprintf(out, "; hum at the speaker %s,",
+                    plw_cell_quantity(a->hum->speaker_rms_volts, PLW_UNIT_VOLT, 2).text);
+        }
+        if (a->hum != NULL) {
+            fprintf(out, " %.0f dB below full power", a->hum->decibels_below_full_power);
+        }
+        fputc('\n', out);
+    }
+    plw_put_supply_ratings(out, s);
+}
+
 static void power_lines(FILE *out, const plw_answer *a) {
     const plw_signal *s = &a->option->signal;
     const bool copper = s->power_watts > 1.0005 * s->speaker_watts;
-    fprintf(out, "\nFULL DRIVE        %s at the speaker", watts(s->speaker_watts).text);
+    fprintf(out, "\nFULL DRIVE        %s at the speaker", plw_cell_watts(s->speaker_watts).text);
     if (copper) {
-        fprintf(out, " (%s at the plate, the rest heats the copper)", watts(s->power_watts).text);
+        fprintf(out, " (%s at the plate, the rest heats the copper)", plw_cell_watts(s->power_watts).text);
     }
     fprintf(out, "\n                  distortion %.1f %% (2nd %.1f, 3rd %.1f, 4th %.1f, 5th %.1f)\n", s->thd_percent,
             fabs(s->harmonic_percent[2]), fabs(s->harmonic_percent[3]), fabs(s->harmonic_percent[4]),
             fabs(s->harmonic_percent[5]));
-    fprintf(out, "                  drive %s peak at the grid (%s RMS)", volts(s->drive_peak_volts).text,
-            volts(s->drive_peak_volts / sqrt(2.0)).text);
+    fprintf(out, "                  drive %s peak at the grid (%s RMS)", plw_cell_volts(s->drive_peak_volts).text,
+            plw_cell_volts(s->drive_peak_volts / sqrt(2.0)).text);
     if (s->limit == PLW_DRIVE_GIVEN) {
         fputs(", as given\n", out);
     } else {
         fprintf(out, ", where %s begins\n", s->limit == PLW_DRIVE_GRID_CURRENT ? "grid current" : "cut-off");
     }
     fprintf(out, "                  the plate swings %s to %s to its cathode, %s to %s\n",
-            volts(s->plate_volts_least).text, volts(s->plate_volts_most).text, amps(s->plate_amps_least).text,
-            amps(s->plate_amps_most).text);
+            plw_cell_volts(s->plate_volts_least).text, plw_cell_volts(s->plate_volts_most).text,
+            plw_cell_amps(s->plate_amps_least).text, plw_cell_amps(s->plate_amps_most).text);
 }
 
 static void neighbour_lines(FILE *out, const plw_answer *a) {
@@ -250,11 +222,11 @@ static void neighbour_lines(FILE *out, const plw_answer *a) {
     for (size_t index = 0; index < choice->options; index++) {
         const plw_bias_option *o = &choice->option[index];
         fputs(index == choice->chosen ? "  > " : "    ", out);
-        right(out, ohms(o->ohms).text, 9);
-        right(out, volts(o->quiescent.cathode_volts).text, 14);
-        right(out, amps(o->quiescent.plate_amps).text, 10);
-        right(out, watts(o->quiescent.plate_watts).text, 14);
-        right(out, watts(o->signal.speaker_watts).text, 13);
+        plw_put_right(out, plw_cell_ohms(o->ohms).text, 9);
+        plw_put_right(out, plw_cell_volts(o->quiescent.cathode_volts).text, 14);
+        plw_put_right(out, plw_cell_amps(o->quiescent.plate_amps).text, 10);
+        plw_put_right(out, plw_cell_watts(o->quiescent.plate_watts).text, 14);
+        plw_put_right(out, plw_cell_watts(o->signal.speaker_watts).text, 13);
         fprintf(out, "%9.1f %%%s\n", o->signal.thd_percent, o->within_ratings ? "" : "  over a rating");
     }
 }
@@ -265,19 +237,21 @@ static void specimen_lines(FILE *out, const plw_answer *a) {
         return;
     }
     fputs("\nTHIS TUBE, BY THE METER\n", out);
-    fprintf(out, "  cathode %s: cathode current %s", volts(s->cathode_volts).text, amps(s->cathode_amps).text);
+    fprintf(out, "  cathode %s: cathode current %s", plw_cell_volts(s->cathode_volts).text,
+            plw_cell_amps(s->cathode_amps).text);
     if (isfinite(s->screen_volts)) {
-        fprintf(out, ", of which screen %s (by the model's share),\n  plate %s", amps(s->screen_amps).text,
-                amps(s->plate_amps).text);
+        fprintf(out, ", of which screen %s (by the model's share),\n  plate %s", plw_cell_amps(s->screen_amps).text,
+                plw_cell_amps(s->plate_amps).text);
     }
-    fprintf(out, "; plate to cathode %s, plate %s", volts(s->plate_volts).text, watts(s->plate_watts).text);
+    fprintf(out, "; plate to cathode %s, plate %s", plw_cell_volts(s->plate_volts).text,
+            plw_cell_watts(s->plate_watts).text);
     if (isfinite(s->screen_watts)) {
-        fprintf(out, ", screen %s", watts(s->screen_watts).text);
+        fprintf(out, ", screen %s", plw_cell_watts(s->screen_watts).text);
     }
     fprintf(out, "\n  it draws %.0f %% %s than the model's tube at these voltages (%s)\n", fabs(s->off_percent),
-            s->off_percent < 0.0 ? "less" : "more", amps(s->model_cathode_amps).text);
+            s->off_percent < 0.0 ? "less" : "more", plw_cell_amps(s->model_cathode_amps).text);
     if (isfinite(s->primary_ohms)) {
-        fprintf(out, "  between supply and plate lie %s\n", ohms(s->primary_ohms).text);
+        fprintf(out, "  between supply and plate lie %s\n", plw_cell_ohms(s->primary_ohms).text);
     }
     if (!s->plate_read || !s->supply_read) {
         fprintf(out, "  not read, so taken from the model:%s%s\n", s->supply_read ? "" : " supply",
@@ -285,12 +259,12 @@ static void specimen_lines(FILE *out, const plw_answer *a) {
     }
     if (s->resistor_found) {
         const plw_bias_option *o = &s->choice.option[s->choice.chosen];
-        fprintf(out, "  for this very tube: %s, for ", ohms(o->ohms).text);
+        fprintf(out, "  for this very tube: %s, for ", plw_cell_ohms(o->ohms).text);
         aim_words(out, &s->choice.aim);
-        fprintf(out, ";\n  then cathode %s, plate %s, %s\n", volts(o->quiescent.cathode_volts).text,
-                amps(o->quiescent.plate_amps).text, watts(o->quiescent.plate_watts).text);
+        fprintf(out, ";\n  then cathode %s, plate %s, %s\n", plw_cell_volts(o->quiescent.cathode_volts).text,
+                plw_cell_amps(o->quiescent.plate_amps).text, plw_cell_watts(o->quiescent.plate_watts).text);
     } else {
-        paragraph(out, "  no resistor suits this tube: ", s->resistor_obstacle);
+        plw_put_paragraph(out, "  no resistor suits this tube: ", s->resistor_obstacle);
     }
 }
 
@@ -304,10 +278,10 @@ static void ideal_line(FILE *out, const plw_answer *a) {
              isfinite(stage->cathode_resistor_ohms) && !stage->unbypassed ? " the cathode fully bypassed," : "",
              " a resistive speaker at mid-band");
     fputc('\n', out);
-    paragraph(out, "", text);
+    plw_put_paragraph(out, "", text);
 }
 
-static const char *deviation_text(double value, plw_unit unit, cell *c) {
+static const char *deviation_text(double value, plw_unit unit, plw_cell *c) {
     plw_quantity_format(value, unit, 2, c->text, sizeof c->text);
     return c->text;
 }
@@ -318,11 +292,11 @@ static void trust_lines(FILE *out, const plw_answer *a) {
     const plw_uncertainty *u = a->uncertainty;
     char text[512];
     if (u != NULL) {
-        cell current;
-        cell heat;
-        cell power;
-        cell by_tubes;
-        cell by_model;
+        plw_cell current;
+        plw_cell heat;
+        plw_cell power;
+        plw_cell by_tubes;
+        plw_cell by_model;
         snprintf(
             text, sizeof text,
             "How sure: plate current +/- %s (tubes of one type %s, model %s), plate dissipation +/- %s, power +/- %s: "
@@ -333,7 +307,7 @@ static void trust_lines(FILE *out, const plw_answer *a) {
             deviation_text(u->plate_watts.both, PLW_UNIT_WATT, &heat),
             deviation_text(u->speaker_watts.both, PLW_UNIT_WATT, &power),
             u->model_dominates ? "model" : "spread of tubes");
-        paragraph(out, "", text);
+        plw_put_paragraph(out, "", text);
     }
     if (isfinite(m->fit_error.plate_current_percent)) {
         int used = snprintf(text, sizeof text, "Model: within %.1f %% of the printed plate currents it was fitted to",
@@ -343,7 +317,7 @@ static void trust_lines(FILE *out, const plw_answer *a) {
                              m->left_out_error.plate_current_percent);
         }
         snprintf(text + used, sizeof text - (size_t)used, " (medians).");
-        paragraph(out, "", text);
+        plw_put_paragraph(out, "", text);
     }
 }
 
@@ -355,7 +329,7 @@ static void caution_lines(FILE *out, const plw_answer *a) {
         if (index == 0 || index == own) {
             fputs(index < own ? "\nWARNINGS\n" : "\nCAUTIONS\n", out);
         }
-        paragraph(out, index < own ? "  ! " : "  - ", lines[index]);
+        plw_put_paragraph(out, index < own ? "  ! " : "  - ", lines[index]);
     }
 }
 
@@ -371,6 +345,10 @@ plw_status plw_report_text(const plw_answer *answer, char **text, plw_error *err
     meter_lines(out, answer);
     tube_lines(out, answer);
     rating_lines(out, answer);
+    if (answer->mains != NULL) {
+        plw_put_mains(out, answer->mains, &answer->option->quiescent);
+    }
+    supply_lines(out, answer);
     power_lines(out, answer);
     neighbour_lines(out, answer);
     specimen_lines(out, answer);

@@ -1,0 +1,48 @@
+/* The stage with the mains low and high.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
+#ifndef PLATEWRIGHT_MAINS_H
+#define PLATEWRIGHT_MAINS_H
+
+#include "platewright/limits.h"
+#include "platewright/stage.h"
+
+#ifdef __cplusplus
+extern "C" {
+#endif
+
+/* How far mains voltage strays, in percent of nominal (EN 50160: +-10 %; RS-239-A, EIA, 1963, says the same of the
+ * lines that design-center ratings allow for; both from memory). */
+#define PLW_MAINS_LOW_PERCENT 90.0
+#define PLW_MAINS_HIGH_PERCENT 110.0
+
+/* The stage at rest at one mains voltage. */
+typedef struct {
+    double mains_percent;
+    bool solved; /* else the supply's readings do not reach there, or the tube is cut off: nothing below holds */
+    plw_quiescent quiescent;
+    plw_rating_check ratings[PLW_RATING_CHECKS_MOST];
+    size_t ratings_count;
+    bool within_ratings;
+} plw_mains_corner;
+
+typedef struct {
+    plw_mains_corner low, high;
+    plw_rating_system system;
+    bool counted;        /* the rating system leaves mains to the builder: design-maximum and absolute */
+    bool within_ratings; /* kept at both corners, or not counted */
+} plw_mains;
+
+/* Solve the stage with every supply taken from the mains low and high: plate, screen and fixed bias together.  The
+ * heaters are left aside: the emission of a sound cathode hardly limits the current.
+ * In:   a valid stage with bias
+ * Out:  *mains; not written unless PLW_OK
+ * Ret:  PLW_OK, also when a corner has no point (see solved); as plw_stage_validate()
+ * Source of `counted`: RS-239-A (EIA, 1963) and JEDEC publication 37 (1962), definitions of the rating systems, from
+ * memory: the maker of the tube answers for supply variation in design-center ratings, the maker of the equipment in
+ * the others. */
+PLW_API plw_status plw_mains_solve(const plw_stage *stage, plw_mains *mains, plw_error *error) PLW_MUST_USE;
+
+#ifdef __cplusplus
+}
+#endif
+#endif

@@ -1,0 +1,63 @@
+/* Quantities, columns and paragraphs of the answers in words.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
+#include "report/layout.h"
+
+#include <stdbool.h>
+#include <string.h>
+
+enum { WIDTH = 78 };
+
+plw_cell plw_cell_quantity(double value, plw_unit unit, int digits) {
+    plw_cell c;
+    plw_quantity_format(value, unit, digits, c.text, sizeof c.text);
+    return c;
+}
+
+plw_cell plw_cell_volts(double value) {
+    return plw_cell_quantity(value, PLW_UNIT_VOLT, 3);
+}
+
+plw_cell plw_cell_amps(double value) {
+    return plw_cell_quantity(value, PLW_UNIT_AMPERE, 3);
+}
+
+plw_cell plw_cell_watts(double value) {
+    return plw_cell_quantity(value, PLW_UNIT_WATT, value >= 9.95 ? 3 : 2);
+}
+
+plw_cell plw_cell_ohms(double value) {
+    return plw_cell_quantity(value, PLW_UNIT_OHM, 3);
+}
+
+/* Print a text into a field of `width` columns, right-aligned; UTF-8 letters count once. */
+void plw_put_right(FILE *out, const char *text, int width) {
+    int letters = 0;
+    for (const char *at = text; *at != '\0'; at++) {
+        letters += ((unsigned char)*at & 0xC0U) != 0x80U;
+    }
+    fprintf(out, "%*s%s", width > letters ? width - letters : 0, "", text);
+}
+
+/* Print a paragraph broken at spaces, with a mark before its first line. */
+void plw_put_paragraph(FILE *out, const char *mark, const char *text) {
+    const int indent = (int)strlen(mark);
+    int column = fprintf(out, "%s", mark);
+    bool first = true;
+    while (*text != '\0') {
+        const size_t length = strcspn(text, " ");
+        int letters = 0;
+        for (size_t index = 0; index < length; index++) {
+            letters += ((unsigned char)text[index] & 0xC0U) != 0x80U;
+        }
+        if (!first && column + 1 + letters > WIDTH) {
+            fprintf(out, "\n%*s", indent, "");
+            column = indent;
+            first = true;
+        }
+        column += fprintf(out, "%s%.*s", first ? "" : " ", (int)length, text) - ((int)length - letters);
+        first = false;
+        text += length;
+        text += strspn(text, " ");
+    }
+    fputc('\n', out);
+}
