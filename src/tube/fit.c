@@ -177,6 +177,10 @@ plw_status plw_fit_tube(const plw_tube *tube, bool leave_out, plw_fit *fit, plw_
                         "least",
                         tube->type, observations.count);
     }
+    if (observations.count >= PLW_RESIDUALS_MOST) {
+        return plw_fail(error, PLW_E_DATA, "%s: %d figures or more; thin the curves out", tube->type,
+                        (int)PLW_RESIDUALS_MOST);
+    }
     memset(fit, 0, sizeof *fit);
     const plw_status status =
         fit_observations(&observations, NULL, &fit->model.law, fit->model.relative_error, fit->covariance, error);

@@ -7,8 +7,6 @@
 #include <stdlib.h>
 #include <string.h>
 
-#include "platewright/quantity.h"
-
 #define FIELD(type, member, attribute, ...)                                                                            \
     { attribute, offsetof(type, member), __VA_ARGS__ }
 #define END                                                                                                            \
@@ -132,6 +130,10 @@ static const style_facts STYLES[] = {
     [PLW_FIELD_PERCENT] = {"%", PLW_UNIT_PERCENT, 0},
     [PLW_FIELD_NUMBER] = {"", PLW_UNIT_NONE, 0},
 };
+
+plw_unit plw_field_unit(const plw_tube_field *field) {
+    return STYLES[field->style].unit;
+}
 
 void plw_fields_clear(const plw_tube_field *fields, void *structure) {
     for (; fields->attribute != NULL; fields++) {

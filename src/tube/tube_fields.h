@@ -6,6 +6,7 @@
 #include <stddef.h>
 
 #include "base/xml_file.h"
+#include "platewright/quantity.h"
 #include "platewright/tube.h"
 
 /* The unit of a field and the prefix it is written with. */
@@ -44,6 +45,9 @@ extern const plw_tube_field plw_coefficient_field, plw_coefficient_error_field;
 
 /* Set every field of a structure to NaN: not known. */
 void plw_fields_clear(const plw_tube_field *fields, void *structure);
+
+/* The unit of a field. */
+plw_unit plw_field_unit(const plw_tube_field *field);
 
 /* Read the text of one field.
  * Ret:  PLW_OK; PLW_E_DATA with a text that names the attribute and says what would be right; *value untouched then */
