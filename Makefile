@@ -62,10 +62,25 @@ FUZZERS := $(patsubst %.c,$(B)/%,$(sort $(wildcard tests/fuzz/fuzz_*.c)))
 .PHONY: all
 all: $(STATIC) $(SHARED) $(PROGRAM) $(B)/platewright.pc
 
+# A line a file; V=1 shows whole commands.
+ifeq ($(V),1)
+  say = $(1)
+else
+  say = @echo '  $(2)'; $(1)
+endif
+
+# `make -j deps demo` must install before it compiles.
+ifneq ($(filter deps,$(MAKECMDGOALS)),)
+.NOTPARALLEL:
+endif
+
+$(B)/src/cli/%.o: CPPFLAGS += -DPLW_VERSION='"$(VERSION)"' -DPLW_DATA_DIR='"$(PREFIX)/share/platewright/tubedata"'
+
 $(B)/src/%.o: src/%.c
 	@mkdir -p $(@D)
-	$(CC) $(ALL_CFLAGS) $(PACKAGE_CFLAGS) -c $< -o $@
+	$(call say,$(CC) $(ALL_CFLAGS) $(PACKAGE_CFLAGS) -c $< -o $@,cc $<)
 
+.SECONDARY: $(SCHEMAS:tubedata/%.xsd=$(B)/generated/schema_%.c)
 # A schema becomes a constant string in the library, so that the program works wherever it is copied.
 $(B)/generated/schema_%.c: tubedata/%.xsd
 	@mkdir -p $(@D)
@@ -75,19 +90,21 @@ $(B)/generated/schema_%.c: tubedata/%.xsd
 	   sed -e 's/\\/\\\\/g' -e 's/"/\\"/g' -e 's/^/    "/' -e 's/$$/\\n"/' $<; echo ';'; } > $@
 
 $(B)/generated/%.o: $(B)/generated/%.c
-	$(CC) $(ALL_CFLAGS) -Wno-overlength-strings -c $< -o $@
+	$(call say,$(CC) $(ALL_CFLAGS) -Wno-overlength-strings -c $< -o $@,cc $<)
 
 $(STATIC): $(LIBRARY_OBJECTS)
 	@rm -f $@
-	$(AR) rcs $@ $^
+	$(call say,$(AR) rcs $@ $^,archive $@)
 
 $(SHARED): $(LIBRARY_OBJECTS)
-	$(LINK) $(SHARED_FLAGS) $^ $(PACKAGE_LIBS) -lm -o $@
+	$(call say,$(LINK) $(SHARED_FLAGS) $^ $(PACKAGE_LIBS) -lm -o $@,link $@)
 
 $(PROGRAM): $(CLI_OBJECTS) $(STATIC)
-	$(LINK) $^ $(PACKAGE_LIBS) -lm -o $@
+	$(call say,$(LINK) $^ $(PACKAGE_LIBS) -lm -o $@,link $@)
 
-$(B)/platewright.pc: Makefile
+# Always written: PREFIX may be another than at the last call.
+.PHONY: $(B)/platewright.pc
+$(B)/platewright.pc:
 	@mkdir -p $(@D)
 	@{ echo 'prefix=$(PREFIX)'; echo 'Name: platewright'; \
 	   echo 'Description: operating point of single-ended tube output stages'; \
@@ -96,20 +113,20 @@ $(B)/platewright.pc: Makefile
 	   echo 'Cflags: -I$${prefix}/include'; } > $@
 
 # ---- tests -------------------------------------------------------------------------------------------------------
+TEST_PLACES := -DTUBEDATA='"$(CURDIR)/tubedata"' -DTESTDATA='"$(CURDIR)/tests"' -DPROGRAM='"$(CURDIR)/$(PROGRAM)"'
 $(B)/tests/%.o: tests/%.c
 	@mkdir -p $(@D)
-	$(CC) $(ALL_CFLAGS) -Itests -DTUBEDATA='"$(CURDIR)/tubedata"' -DTESTDATA='"$(CURDIR)/tests"' \
-	    -DPROGRAM='"$(CURDIR)/$(PROGRAM)"' $(PACKAGE_CFLAGS) -c $< -o $@
+	$(call say,$(CC) $(ALL_CFLAGS) -Itests $(TEST_PLACES) $(PACKAGE_CFLAGS) -c $< -o $@,cc $<)
 
 TEST_LIBS := -lcmocka
 $(B)/tests/unit/test_%: $(B)/tests/unit/test_%.o $(STATIC)
-	$(LINK) $^ $(TEST_LIBS) $(PACKAGE_LIBS) -lm -o $@
+	$(call say,$(LINK) $^ $(TEST_LIBS) $(PACKAGE_LIBS) -lm -o $@,link $@)
 $(B)/tests/published/test_%: $(B)/tests/published/test_%.o $(STATIC)
-	$(LINK) $^ $(TEST_LIBS) $(PACKAGE_LIBS) -lm -o $@
+	$(call say,$(LINK) $^ $(TEST_LIBS) $(PACKAGE_LIBS) -lm -o $@,link $@)
 $(B)/tests/failure/test_%: $(B)/tests/failure/test_%.o $(STATIC)
-	$(LINK) $^ $(TEST_LIBS) $(PACKAGE_LIBS) -lm -o $@
+	$(call say,$(LINK) $^ $(TEST_LIBS) $(PACKAGE_LIBS) -lm -o $@,link $@)
 $(B)/tests/bench/%: $(B)/tests/bench/%.o $(STATIC)
-	$(LINK) $^ $(PACKAGE_LIBS) -lm -o $@
+	$(call say,$(LINK) $^ $(PACKAGE_LIBS) -lm -o $@,link $@)
 
 # A test that needs a library of its own says so beside it.
 include $(wildcard tests/*/*.mk)
@@ -204,7 +221,7 @@ fuzz: $(patsubst tests/fuzz/%.c,$(B)/fuzz/%,$(wildcard tests/fuzz/fuzz_*.c))
 
 # Every file of the corpus once through each parser, with the ordinary compiler.
 $(B)/tests/fuzz/%: $(B)/tests/fuzz/%.o $(B)/tests/fuzz/replay.o $(STATIC)
-	$(LINK) $^ $(PACKAGE_LIBS) -lm -o $@
+	$(call say,$(LINK) $^ $(PACKAGE_LIBS) -lm -o $@,link $@)
 fuzz-replay: $(FUZZERS)
 	@for fuzzer in $(FUZZERS); do $$fuzzer tubedata/* tests/bad_data/* plots/* || exit 1; done
 
@@ -224,6 +241,8 @@ install: all
 	install -m 644 $(B)/platewright.pc $(DESTDIR)$(PREFIX)/lib/pkgconfig/
 	install -m 644 include/platewright/*.h $(DESTDIR)$(PREFIX)/include/platewright/
 	install -m 644 tubedata/*.xml tubedata/*.xsd $(DESTDIR)$(PREFIX)/share/platewright/tubedata/
+	$(PROGRAM) --man > $(DESTDIR)$(PREFIX)/share/man/man1/platewright.1
+	$(PROGRAM) --completion > $(DESTDIR)$(PREFIX)/share/bash-completion/completions/platewright
 
 .PHONY: help
 help:
