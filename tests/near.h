@@ -21,7 +21,7 @@
     } while (0)
 
 /* The same with a tolerance relative to the wanted value. */
-#define assert_near_relative(got, want, relative, source)                                                             \
+#define assert_near_relative(got, want, relative, source)                                                              \
     assert_near(got, want, fabs((double)(want)) * (relative), source)
 
 #endif

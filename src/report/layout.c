@@ -8,7 +8,7 @@
 enum { WIDTH = 78 };
 
 plw_cell plw_cell_quantity(double value, plw_unit unit, int digits) {
-    plw_cell c;
+    plw_cell c = {""};
     plw_quantity_format(value, unit, digits, c.text, sizeof c.text);
     return c;
 }

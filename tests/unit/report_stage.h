@@ -117,10 +117,8 @@ static inline void stage_solve(solved_stage *s) {
         fail_msg("%s", error.text);
     }
     s->stage.cathode_resistor_ohms = s->choice.option[s->choice.chosen].ohms;
-    s->answer = (plw_answer){.stage = &s->stage,
-                             .choice = &s->choice,
-                             .option = &s->choice.option[s->choice.chosen],
-                             .series = PLW_E24};
+    s->answer = (plw_answer){
+        .stage = &s->stage, .choice = &s->choice, .option = &s->choice.option[s->choice.chosen], .series = PLW_E24};
 }
 
 #endif
