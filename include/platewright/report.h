@@ -65,7 +65,7 @@ PLW_API plw_status plw_report_supply_csv(const plw_supply_finding *finding, char
 PLW_API void plw_text_free(char *text);
 
 /* Gnuplot scripts: self-contained, no path or machine in them. */
-typedef enum { PLW_PLOT_LOAD_LINE, PLW_PLOT_TRANSFER, PLW_PLOT_COUNT } plw_plot_kind;
+typedef enum { PLW_PLOT_LOAD_LINE, PLW_PLOT_TRANSFER, PLW_PLOT_SUPPLY, PLW_PLOT_COUNT } plw_plot_kind;
 typedef enum { PLW_PLOT_SVG, PLW_PLOT_PNG, PLW_PLOT_PDF } plw_plot_format;
 
 /* In:   answer; output: the file name that the script is to draw into (its last part only is kept)
@@ -77,7 +77,7 @@ PLW_API plw_status plw_plot_script(const plw_answer *answer, plw_plot_kind kind,
 PLW_API plw_status plw_plot_family(const plw_tube *tube, plw_connection connection, plw_plot_format format,
                                    const char *output, char **text, plw_error *error) PLW_MUST_USE;
 
-PLW_API const char *plw_plot_name(plw_plot_kind kind); /* "load-line", "transfer" */
+PLW_API const char *plw_plot_name(plw_plot_kind kind); /* "load-line", "transfer", "supply" */
 
 #ifdef __cplusplus
 }

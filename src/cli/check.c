@@ -113,8 +113,10 @@ static plw_status check(cli_work *work, const plw_meter_readings *readings, plw_
     if (status != PLW_OK) {
         return status;
     }
-    const plw_answer answer = {.stage = &work->stage, .option = &option, .specimen = specimen, .series = work->series};
+    cli_extras extras;
+    plw_answer answer = {.stage = &work->stage, .option = &option, .specimen = specimen, .series = work->series};
     *kept = option.within_ratings && (specimen == NULL || specimen_keeps_ratings(specimen));
+    cli_work_complete(work, &answer, &extras, kept);
     status = cli_work_save(work, error);
     return status == PLW_OK ? cli_work_answer(work, &answer, error) : status;
 }

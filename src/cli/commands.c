@@ -34,10 +34,25 @@ static const cli_command commands[] = {
                   {"The meter says 12.9 V at the cathode and 282 V at the supply",
                    "platewright check as-built.xml --measured cathode=12.9V,supply=282V"}},
      .run = cli_run_check},
+    {.name = "supply",
+     .bit = CLI_SUPPLY,
+     .positional = "[STAGE.xml]",
+     .summary = "what the plate supply delivers under load; dummy load, bleeder, transformer",
+     .description = "Says what the supply gives at the current of the stage, or at --current, by its readings or by "
+                    "its transformer, rectifier and filter: volts, ripple, what its parts must stand; which resistor "
+                    "makes it see the stage on the bench, what the meter then reads, and what another reading means.",
+     .examples = {{"A winding of 215 V each half, and one reading on the bench",
+                   "platewright supply --winding 215V --rectifier full-wave --reading 258V@10k --current 45mA"},
+                  {"The supply of the radio, from its parts",
+                   "platewright supply --tube 6V6GT --load 5k --winding 230V --rectifier full-wave --winding-ohms 180 "
+                   "--reservoir 47uF --choke 8H --choke-ohms 180 --smoothing 47uF"},
+                  {"Which transformer gives 285 V at 50 mA, of 15 % regulation",
+                   "platewright supply --supply 285V --current 50mA --regulation 15%"}},
+     .run = cli_run_supply},
     {.name = "plot",
      .bit = CLI_PLOT,
      .positional = "[STAGE.xml]",
-     .summary = "draw the load line, or the transfer curve with the resistor's line",
+     .summary = "draw the load line, the transfer curve with the resistor's line, or the supply",
      .description = "Writes a gnuplot script, complete in itself, and has gnuplot draw it. Without a bias it chooses "
                     "the cathode resistor as design does.",
      .examples = {{"The load line of the radio, as a drawing and a script",

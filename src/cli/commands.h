@@ -37,6 +37,7 @@ const char *cli_command_nearest(const char *name);
 
 int cli_run_design(const cli_arguments *arguments);
 int cli_run_check(const cli_arguments *arguments);
+int cli_run_supply(const cli_arguments *arguments);
 int cli_run_plot(const cli_arguments *arguments);
 int cli_run_tubes(const cli_arguments *arguments);
 int cli_run_fit(const cli_arguments *arguments);

@@ -37,8 +37,10 @@ static plw_status design(cli_work *work, bool *kept, plw_error *error) {
         return status;
     }
     const plw_bias_option *option = &choice.option[choice.chosen];
-    const plw_answer answer = {.stage = &work->stage, .choice = &choice, .option = option, .series = work->series};
+    cli_extras extras;
+    plw_answer answer = {.stage = &work->stage, .choice = &choice, .option = option, .series = work->series};
     *kept = choice.aim_reached && option->within_ratings;
+    cli_work_complete(work, &answer, &extras, kept);
     status = cli_work_save(work, error);
     return status == PLW_OK ? cli_work_answer(work, &answer, error) : status;
 }

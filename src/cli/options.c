@@ -9,7 +9,8 @@
 static const char *const connections[] = {"pentode", "triode", "ultralinear", NULL};
 static const char *const series[] = {"E6", "E12", "E24", "E48", "E96", "E192", NULL};
 static const char *const formats[] = {"text", "json", "csv", NULL};
-static const char *const kinds[] = {"load-line", "transfer", NULL};
+static const char *const kinds[] = {"load-line", "transfer", "supply", NULL};
+static const char *const rectifiers[] = {"full-wave", "bridge", "half-wave", NULL};
 
 #define WHY_NOT_IN_DESIGN "design chooses the resistor itself; platewright check solves a stage whose bias is given"
 
@@ -21,8 +22,7 @@ static const char *const kinds[] = {"load-line", "transfer", NULL};
     .name = (option_name), .value = CLI_VALUE_SWITCH, .group = (option_group), .commands = CLI_STAGE, .stage = true,   \
     .help = (option_help)
 
-/* Only what works stands here.  A supply built from winding, rectifier and filter gets its options in CLI_GROUP_SUPPLY
- * behind other-current. */
+/* Only what works stands here. */
 static const cli_option options[] = {
     {STAGE_OPTION("tube", CLI_GROUP_TUBE, CLI_STAGE, "TYPE",
                   "output tube, e.g. 6V6GT; any spelling, and equivalents (6BQ5 is EL84)")},
@@ -42,6 +42,31 @@ static const cli_option options[] = {
                   "what the supply read on the bench, once for each reading: 305V off load, 258V@10k into a resistor, "
                   "271V@18mA at a current"),
      .repeatable = true},
+    {STAGE_OPTION("winding", CLI_GROUP_SUPPLY, CLI_STAGE, "VOLTS",
+                  "RMS volts of the high-voltage winding off load, of each half when centre-tapped, e.g. 230V; with "
+                  "--reading the source resistance is found through the rectifier")},
+    {STAGE_OPTION("rectifier", CLI_GROUP_SUPPLY, CLI_STAGE, "HOW",
+                  "how it is rectified: full-wave (two diodes, centre-tapped winding), bridge or half-wave"),
+     .choices = rectifiers},
+    {STAGE_OPTION("diode", CLI_GROUP_SUPPLY, CLI_STAGE, "TYPE", "silicon (default) or a rectifier tube, e.g. GZ34")},
+    {STAGE_OPTION("reservoir", CLI_GROUP_SUPPLY, CLI_STAGE, "FARADS",
+                  "first capacitor behind the rectifier, e.g. 47uF; else so large that no ripple is left")},
+    {STAGE_OPTION("winding-ohms", CLI_GROUP_SUPPLY, CLI_STAGE, "OHMS",
+                  "copper of a conducting path: half or whole secondary with the primary reflected, e.g. 95")},
+    {STAGE_OPTION("mains", CLI_GROUP_SUPPLY, CLI_STAGE, "HERTZ", "mains frequency, 50Hz (default) or 60Hz")},
+    {STAGE_OPTION("dropper", CLI_GROUP_SUPPLY, CLI_STAGE, "OHMS",
+                  "resistor in the filter, e.g. 470, with --smoothing behind it; parts in the order they are wired"),
+     .repeatable = true},
+    {STAGE_OPTION("choke", CLI_GROUP_SUPPLY, CLI_STAGE, "HENRIES",
+                  "choke in the filter, e.g. 8H, with --smoothing behind it; first and without --reservoir: choke "
+                  "input"),
+     .repeatable = true},
+    {STAGE_OPTION("choke-ohms", CLI_GROUP_SUPPLY, CLI_STAGE, "OHMS", "copper of the choke before it, e.g. 180"),
+     .repeatable = true},
+    {STAGE_OPTION("smoothing", CLI_GROUP_SUPPLY, CLI_STAGE, "FARADS",
+                  "capacitor behind the dropper or choke before it, e.g. 47uF"),
+     .repeatable = true},
+    {STAGE_OPTION("bleeder", CLI_GROUP_SUPPLY, CLI_STAGE, "OHMS", "resistor across the output, e.g. 220k")},
     {STAGE_OPTION("other-current", CLI_GROUP_SUPPLY, CLI_STAGE, "AMPS",
                   "what the rest of the set draws from this supply, e.g. 3mA")},
 
@@ -52,10 +77,10 @@ static const cli_option options[] = {
     {STAGE_OPTION("primary-ohms", CLI_GROUP_TRANSFORMER, CLI_STAGE, "OHMS", "copper of the primary, e.g. 280")},
     {STAGE_OPTION("secondary-ohms", CLI_GROUP_TRANSFORMER, CLI_STAGE, "OHMS", "copper of the secondary, e.g. 0.5")},
 
-    {STAGE_OPTION("cathode-resistor", CLI_GROUP_BIAS, CLI_CHECK | CLI_PLOT, "OHMS",
+    {STAGE_OPTION("cathode-resistor", CLI_GROUP_BIAS, CLI_CHECK | CLI_PLOT | CLI_SUPPLY, "OHMS",
                   "cathode resistor as fitted, e.g. 270"),
      .elsewhere = WHY_NOT_IN_DESIGN},
-    {STAGE_OPTION("fixed-bias", CLI_GROUP_BIAS, CLI_CHECK | CLI_PLOT, "VOLTS",
+    {STAGE_OPTION("fixed-bias", CLI_GROUP_BIAS, CLI_CHECK | CLI_PLOT | CLI_SUPPLY, "VOLTS",
                   "grid bias from a supply of its own, e.g. -12.5V"),
      .elsewhere = WHY_NOT_IN_DESIGN},
     {STAGE_SWITCH("resistor-each", CLI_GROUP_BIAS, "with --parallel: one cathode resistor a tube, not one for all")},
@@ -69,6 +94,37 @@ static const cli_option options[] = {
 
     {STAGE_OPTION("drive", CLI_GROUP_SIGNAL, CLI_STAGE, "VOLTS",
                   "peak signal at the grid, e.g. 12.5V; else up to grid current or cut-off, whichever comes first")},
+
+    {.name = "current",
+     .value = CLI_VALUE_TEXT,
+     .placeholder = "AMPS",
+     .group = CLI_GROUP_QUESTION,
+     .commands = CLI_SUPPLY,
+     .help = "what is drawn where no stage is described, e.g. 45mA"},
+    {.name = "regulation",
+     .value = CLI_VALUE_TEXT,
+     .placeholder = "PERCENT",
+     .group = CLI_GROUP_QUESTION,
+     .commands = CLI_SUPPLY,
+     .help = "work out the transformer wanted, of this regulation, e.g. 15%; with --supply it is always done"},
+    {.name = "capacitor-volts",
+     .value = CLI_VALUE_TEXT,
+     .placeholder = "VOLTS",
+     .group = CLI_GROUP_QUESTION,
+     .commands = CLI_SUPPLY,
+     .help = "what the capacitors are rated for, e.g. 350V"},
+    {.name = "winding-amps",
+     .value = CLI_VALUE_TEXT,
+     .placeholder = "AMPS",
+     .group = CLI_GROUP_QUESTION,
+     .commands = CLI_SUPPLY,
+     .help = "RMS current that the high-voltage winding is rated for, e.g. 80mA"},
+    {.name = "heater-winding",
+     .value = CLI_VALUE_TEXT,
+     .placeholder = "AMPS",
+     .group = CLI_GROUP_QUESTION,
+     .commands = CLI_SUPPLY,
+     .help = "current that the heater winding of the output tube is rated for, e.g. 2A"},
 
     {.name = "aim",
      .value = CLI_VALUE_TEXT,
@@ -100,12 +156,12 @@ static const cli_option options[] = {
      .group = CLI_GROUP_RESULT,
      .commands = CLI_PLOT,
      .choices = kinds,
-     .help = "what to draw: load-line (default) or transfer"},
+     .help = "what to draw: load-line (default), transfer or supply"},
     {.name = "format",
      .value = CLI_VALUE_CHOICE,
      .placeholder = "FORMAT",
      .group = CLI_GROUP_RESULT,
-     .commands = CLI_DESIGN | CLI_CHECK,
+     .commands = CLI_DESIGN | CLI_CHECK | CLI_SUPPLY,
      .choices = formats,
      .help = "text (default), json or csv"},
     {.name = "output",
@@ -113,7 +169,7 @@ static const cli_option options[] = {
      .value = CLI_VALUE_FILE,
      .placeholder = "FILE",
      .group = CLI_GROUP_RESULT,
-     .commands = CLI_DESIGN | CLI_CHECK,
+     .commands = CLI_DESIGN | CLI_CHECK | CLI_SUPPLY,
      .help = "write the result to a file instead of the screen"},
     {.name = "output",
      .letter = 'o',
@@ -195,6 +251,7 @@ const char *cli_group_title(cli_group group) {
         [CLI_GROUP_BIAS] = "The bias",
         [CLI_GROUP_SCREEN] = "The screen",
         [CLI_GROUP_SIGNAL] = "The signal",
+        [CLI_GROUP_QUESTION] = "What is asked of the supply",
         [CLI_GROUP_AIM] = "The choice of the cathode resistor",
         [CLI_GROUP_METER] = "On the bench",
         [CLI_GROUP_RESULT] = "The result",

@@ -156,6 +156,8 @@ static plw_status plot(cli_work *work, const plot_targets *targets, bool *kept, 
         *kept = true;
     }
     *kept = *kept && answer.option->within_ratings;
+    cli_extras extras;
+    cli_work_complete(work, &answer, &extras, kept);
     status = cli_work_save(work, error);
     if (status == PLW_OK) {
         status = put_plot(&answer, targets, error);

@@ -10,7 +10,7 @@
 #include "cli/folders.h"
 #include "platewright/text_file.h"
 
-enum { PLACE_SIZE = 512, NAME_SIZE = 64, VALUE_SIZE = 32 };
+enum { PLACE_SIZE = 512, NAME_SIZE = 64, VALUE_SIZE = 32, AIM_ROUNDS = 4 };
 
 /* ---- options ----------------------------------------------------------------------------------------------------- */
 
@@ -90,7 +90,9 @@ plw_status cli_work_open(const cli_arguments *arguments, cli_work *work, plw_err
 
 plw_status cli_work_build(cli_work *work, plw_error *error) {
     const plw_status status = cli_open_catalogue(cli_argument(work->arguments, "tubes"), &work->catalogue, error);
-    return status == PLW_OK ? plw_stage_build(work->description, work->catalogue, &work->stage, error) : status;
+    return status == PLW_OK
+               ? plw_stage_build_supplied(work->description, work->catalogue, &work->stage, &work->supply, error)
+               : status;
 }
 
 void cli_work_close(cli_work *work) {
@@ -117,8 +119,41 @@ plw_status cli_work_place(const cli_work *work, plw_error *error) {
 
 /* ---- result ------------------------------------------------------------------------------------------------------ */
 
-plw_status cli_work_choose(cli_work *work, plw_bias_choice *choice, plw_error *error) {
+/* By how much the worst rating of heat or current is passed with the mains high, where the maker leaves them to the
+ * builder; 1 or less: by nothing. */
+static double over_at_high_mains(const plw_stage *stage, double ohms) {
+    plw_stage trial = *stage;
+    plw_mains mains;
+    double worst = 0.0;
+    trial.cathode_resistor_ohms = ohms;
+    if (plw_mains_solve(&trial, &mains, NULL) != PLW_OK || !mains.counted || !mains.high.solved) {
+        return 0.0;
+    }
+    for (size_t i = 0; i < mains.high.ratings_count; i++) {
+        const plw_rating_check *check = &mains.high.ratings[i];
+        if (check->unit != PLW_UNIT_VOLT && check->share_percent > 100.0 * worst) {
+            worst = check->share_percent / 100.0;
+        }
+    }
+    return worst;
+}
+
+/* Unless an aim is told, it is lowered until ratings that must hold at high mains do. */
+static plw_status choose(cli_work *work, plw_bias_choice *choice, plw_error *error) {
     plw_status status = plw_bias_choose(&work->stage, work->aim, work->series, choice, error);
+    for (int round = 0; round < AIM_ROUNDS && status == PLW_OK; round++) {
+        const double over = over_at_high_mains(&work->stage, choice->option[choice->chosen].ohms);
+        if (cli_argument(work->arguments, "aim") != NULL || over <= 1.0) {
+            break;
+        }
+        work->aim.value *= 0.995 / over;
+        status = plw_bias_choose(&work->stage, work->aim, work->series, choice, error);
+    }
+    return status;
+}
+
+plw_status cli_work_choose(cli_work *work, plw_bias_choice *choice, plw_error *error) {
+    plw_status status = choose(work, choice, error);
     if (status == PLW_OK) {
         char value[VALUE_SIZE];
         work->stage.cathode_resistor_ohms = choice->option[choice->chosen].ohms;
@@ -142,27 +177,54 @@ plw_status cli_work_save(const cli_work *work, plw_error *error) {
     return status;
 }
 
+/* The plate supply at the current of the stage, and what its ripple does. */
+static void complete_supply(const cli_work *work, plw_answer *answer, cli_extras *extras, bool *kept) {
+    const plw_bias_option *option = answer->option;
+    const plw_supply_question question = plw_supply_question_usual(option->quiescent.supply_amps);
+    if (work->supply.line.kind == PLW_SUPPLY_STIFF ||
+        plw_plate_supply_ask(&work->supply, &question, &extras->supply, NULL) != PLW_OK) {
+        return;
+    }
+    const plw_supply_answer *supply = &extras->supply;
+    answer->supply = supply;
+    *kept = *kept && supply->within_ratings;
+    if (supply->has_state && !work->supply.reservoir_assumed &&
+        plw_hum_of(answer->stage, &option->quiescent, &option->signal,
+                   supply->state.node[supply->state.nodes - 1].ripple_rms_volts, &extras->hum, NULL) == PLW_OK) {
+        answer->hum = &extras->hum;
+    }
+}
+
+void cli_work_complete(const cli_work *work, plw_answer *answer, cli_extras *extras, bool *kept) {
+    const plw_bias_option *option = answer->option;
+    /* Without it the answer still stands: a stage at the edge of its supply's readings may not bear a stronger tube. */
+    if (plw_uncertainty_estimate(answer->stage, &option->quiescent, &option->signal, &extras->uncertainty, NULL) ==
+        PLW_OK) {
+        answer->uncertainty = &extras->uncertainty;
+    }
+    if (plw_mains_solve(answer->stage, &extras->mains, NULL) == PLW_OK) {
+        answer->mains = &extras->mains;
+        *kept = *kept && extras->mains.within_ratings;
+    }
+    complete_supply(work, answer, extras, kept);
+}
+
 plw_status cli_work_answer(const cli_work *work, const plw_answer *answer, plw_error *error) {
     const char *format = cli_argument(work->arguments, "format");
     char *text = NULL;
-    plw_uncertainty uncertainty;
-    plw_answer full = *answer;
-    /* Without it the answer still stands: a stage at the edge of its supply's readings may not bear a stronger tube. */
-    if (plw_uncertainty_estimate(answer->stage, &answer->option->quiescent, &answer->option->signal, &uncertainty,
-                                 NULL) == PLW_OK) {
-        full.uncertainty = &uncertainty;
-    }
     plw_status status = PLW_OK;
     if (format == NULL || strcmp(format, "text") == 0) {
-        status = plw_report_text(&full, &text, error);
+        status = plw_report_text(answer, &text, error);
     } else if (strcmp(format, "json") == 0) {
-        status = plw_report_json(&full, &text, error);
+        status = plw_report_json(answer, &text, error);
     } else {
-        status = plw_report_csv(&full, &text, error);
+        status = plw_report_csv(answer, &text, error);
     }
-    if (status == PLW_OK) {
-        status = cli_put(text, cli_argument(work->arguments, "output"), error);
-    }
+    return status == PLW_OK ? cli_work_put(work, text, error) : status;
+}
+
+plw_status cli_work_put(const cli_work *work, char *text, plw_error *error) {
+    const plw_status status = cli_put(text, cli_argument(work->arguments, "output"), error);
     plw_text_free(text);
     return status;
 }

@@ -14,15 +14,24 @@ typedef struct {
     plw_catalogue *catalogue;
     plw_stage_description *description;
     plw_stage stage;
+    plw_plate_supply supply; /* whose line is the stage's */
     plw_aim aim;
     plw_series series;
 } cli_work;
+
+/* What an answer holds beside the stage itself. */
+typedef struct {
+    plw_uncertainty uncertainty;
+    plw_mains mains;
+    plw_supply_answer supply;
+    plw_hum hum;
+} cli_extras;
 
 /* Read the stage file, if there is one, and lay the options over it; read aim and series.
  * Out:  *work, to be closed with cli_work_close(), also after an error */
 plw_status cli_work_open(const cli_arguments *arguments, cli_work *work, plw_error *error) PLW_MUST_USE;
 
-/* Make the circuit: work->stage. */
+/* Make the circuit: work->stage, work->supply. */
 plw_status cli_work_build(cli_work *work, plw_error *error) PLW_MUST_USE;
 void cli_work_close(cli_work *work);
 
@@ -32,8 +41,15 @@ plw_status cli_work_choose(cli_work *work, plw_bias_choice *choice, plw_error *e
 /* Write the stage file that --save asks for; nothing when it does not. */
 plw_status cli_work_save(const cli_work *work, plw_error *error) PLW_MUST_USE;
 
+/* Fill in what goes with the stage: how sure the answer is, mains, plate supply, hum.  What can't be had stays out.
+ * Out:  *extras, which answer then points into; *kept made false when a rating is broken there */
+void cli_work_complete(const cli_work *work, plw_answer *answer, cli_extras *extras, bool *kept);
+
 /* Render in the format that --format asks for, and put it where --output says. */
 plw_status cli_work_answer(const cli_work *work, const plw_answer *answer, plw_error *error) PLW_MUST_USE;
+
+/* The same for a text already rendered.  In: text, which is given up */
+plw_status cli_work_put(const cli_work *work, char *text, plw_error *error) PLW_MUST_USE;
 
 /* Name the option or the line in the file where the library names a quantity only.  Ret: the status in error */
 plw_status cli_work_place(const cli_work *work, plw_error *error);

@@ -124,6 +124,8 @@ const char *plw_plot_name(plw_plot_kind kind) {
         return "load-line";
     case PLW_PLOT_TRANSFER:
         return "transfer";
+    case PLW_PLOT_SUPPLY:
+        return "supply";
     case PLW_PLOT_COUNT:
         break;
     }
@@ -133,8 +135,8 @@ const char *plw_plot_name(plw_plot_kind kind) {
 plw_status plw_plot_script(const plw_answer *answer, plw_plot_kind kind, plw_plot_format format, const char *output,
                            char **text, plw_error *error) {
     if (plw_plot_name(kind) == NULL) {
-        return plw_fail(error, PLW_E_USAGE, "plot: there is no plot of number %d; load-line and transfer are known",
-                        (int)kind);
+        return plw_fail(error, PLW_E_USAGE,
+                        "plot: there is no plot of number %d; load-line, transfer and supply are known", (int)kind);
     }
     plw_text_buffer buffer;
     const plw_status status = plw_text_begin(&buffer, error);
@@ -144,8 +146,10 @@ plw_status plw_plot_script(const plw_answer *answer, plw_plot_kind kind, plw_plo
     plw_script_begin(buffer.file, format, output, plw_plot_name(kind));
     if (kind == PLW_PLOT_LOAD_LINE) {
         plw_plot_load_line(buffer.file, answer);
-    } else {
+    } else if (kind == PLW_PLOT_TRANSFER) {
         plw_plot_transfer(buffer.file, answer);
+    } else {
+        plw_plot_supply(buffer.file, answer);
     }
     plw_script_finish(buffer.file);
     return plw_text_end(&buffer, PLW_OK, text, error);

@@ -29,4 +29,7 @@ void plw_plot_mark(FILE *file, const char *block, int point_type, double size, c
 void plw_plot_load_line(FILE *file, const plw_answer *answer);
 void plw_plot_transfer(FILE *file, const plw_answer *answer);
 
+/* Out: nothing but the script; what can't be had (waveforms without parts) is left out. */
+void plw_plot_supply(FILE *file, const plw_answer *answer);
+
 #endif

@@ -101,16 +101,12 @@ static void ripple_lines(FILE *out, const plw_supply_answer *a) {
         fputs("RIPPLE            not known: tell the reservoir, e.g. --reservoir 47uF\n", out);
     } else {
         const plw_rectifier_node *output = &s->node[s->nodes - 1];
-        fprintf(out, "RIPPLE            %s peak to peak at the output (%s RMS)",
+        fprintf(out, "RIPPLE            %s peak to peak at the output (%s RMS)\n",
                 plw_cell_quantity(output->ripple_peak_to_peak_volts, PLW_UNIT_VOLT, 2).text,
                 plw_cell_quantity(output->ripple_rms_volts, PLW_UNIT_VOLT, 2).text);
-        if (s->nodes > 1) {
-            fprintf(out, ", %s at the first capacitor",
-                    plw_cell_quantity(s->node[0].ripple_peak_to_peak_volts, PLW_UNIT_VOLT, 2).text);
-        }
-        fputc('\n', out);
         for (size_t i = 0; i < s->nodes; i++) {
-            fprintf(out, INDENT "capacitor %zu carries %s RMS of ripple current\n", i + 1,
+            fprintf(out, INDENT "capacitor %zu: %s peak to peak, carries %s RMS\n", i + 1,
+                    plw_cell_quantity(s->node[i].ripple_peak_to_peak_volts, PLW_UNIT_VOLT, 2).text,
                     plw_cell_amps(s->node[i].capacitor_rms_amps).text);
         }
     }
