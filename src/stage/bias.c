@@ -68,22 +68,32 @@ static plw_status quantity_at(const search *s, double ohms, double *quantity, pl
     return status;
 }
 
+typedef struct {
+    double ohms, quantity;
+} reach;
+
 /* From the highest resistance down to the first crossing of the target, then halving; a resistance at which the stage
  * has no point (cut off, or out of the readings' reach) is passed over.
- * Out: *ohms; *nearest: the quantity closest to the target from below when it is never reached */
-static bool find_crossing(const search *s, double *ohms, double *nearest, plw_error *last) {
+ * Out: *ohms; when the target is never reached, *nearest: what the lowest resistance with a point comes to, and *last:
+ *      why there is none below it */
+static bool find_crossing(const search *s, double *ohms, reach *nearest, plw_error *last) {
     double above = (double)NAN; /* resistance with less than the target */
-    *nearest = (double)NAN;
+    *nearest = (reach){(double)NAN, (double)NAN};
     const int steps = 6 * SCAN_STEPS_PER_DECADE;
     for (int step = 0; step <= steps; step++) {
         const double trial = MOST_OHMS * pow(10.0, -(double)step / SCAN_STEPS_PER_DECADE);
         double quantity;
-        if (quantity_at(s, trial, &quantity, last) != PLW_OK) {
+        plw_error why = {.status = PLW_OK};
+        if (quantity_at(s, trial, &quantity, &why) != PLW_OK) {
+            if (last->text[0] == '\0') {
+                *last = why;
+            }
             continue;
         }
         if (quantity < s->target) {
             above = trial;
-            *nearest = quantity;
+            *nearest = (reach){trial, quantity};
+            *last = (plw_error){.status = PLW_OK};
             continue;
         }
         double below = trial;
@@ -270,20 +280,26 @@ static plw_status validate_aim(const plw_stage *stage, plw_aim aim, plw_error *e
 }
 
 /* No resistance reaches the target: say what stands in the way. */
-static plw_status out_of_reach(const search *s, double nearest, const plw_error *last, plw_error *error) {
-    if (!isfinite(nearest)) {
+static plw_status out_of_reach(const search *s, const reach *nearest, const plw_error *last, plw_error *error) {
+    if (!isfinite(nearest->quantity)) {
         return plw_fail(error, PLW_E_NO_POINT, "cathode-resistor: none serves: %s",
                         last->text[0] != '\0' ? last->text : "the stage has no point of rest");
     }
     const plw_unit unit = s->aim.kind == PLW_AIM_CURRENT ? PLW_UNIT_AMPERE : PLW_UNIT_WATT;
     char most[32];
     char wanted[32];
+    plw_quantity_format(nearest->quantity, unit, 3, most, sizeof most);
+    plw_quantity_format(s->target, unit, 3, wanted, sizeof wanted);
+    if (last->text[0] != '\0') {
+        return plw_fail(error, PLW_E_NO_POINT,
+                        "aim: out of reach: the tube comes to %s of the %s aimed at; beyond that, %s", most, wanted,
+                        last->text);
+    }
     return plw_fail(
         error, PLW_E_NO_POINT,
-        "aim: out of reach: even at %.0f ohm the tube comes to %s of the %s aimed at; more supply or screen "
+        "aim: out of reach: even at %.3g ohm the tube comes to %s of the %s aimed at; more supply or screen "
         "voltage, or a lower aim, would help",
-        LEAST_OHMS, plw_quantity_format(nearest, unit, 3, most, sizeof most),
-        plw_quantity_format(s->target, unit, 3, wanted, sizeof wanted));
+        nearest->ohms, most, wanted);
 }
 
 /* Say which limit kept the choice from the aim, or stays broken whatever the resistor. */
@@ -322,10 +338,10 @@ plw_status plw_bias_choose(const plw_stage *stage, plw_aim aim, plw_series serie
     if (aim.kind == PLW_AIM_DISSIPATION) {
         s.target *= plw_tube_ratings(stage->tube, stage->variant, stage->connection)->plate_watts / 100.0;
     }
-    double nearest;
+    reach nearest;
     plw_error last = {0};
     if (!find_crossing(&s, &found.exact_ohms, &nearest, &last)) {
-        return out_of_reach(&s, nearest, &last, error);
+        return out_of_reach(&s, &nearest, &last, error);
     }
     plw_bias_option chosen;
     status = plw_bias_option_solve(stage, plw_preferred_nearest(found.exact_ohms, series), &chosen, error);
