@@ -160,7 +160,9 @@ static void rating_lines(FILE *out, const plw_answer *a) {
         }
         fputc('\n', out);
     }
-    fprintf(out, "  %s, %s\n", plw_rating_system_name(ratings->system), ratings->provenance.source);
+    char source[512];
+    snprintf(source, sizeof source, "%s, %s", plw_rating_system_name(ratings->system), ratings->provenance.source);
+    plw_put_paragraph(out, "  ", source);
 }
 
 /* What is known of the plate supply beyond its voltage; platewright supply says all. */
@@ -196,7 +198,7 @@ static void power_lines(FILE *out, const plw_answer *a) {
     const bool copper = s->power_watts > 1.0005 * s->speaker_watts;
     fprintf(out, "\nFULL DRIVE        %s at the speaker", plw_cell_watts(s->speaker_watts).text);
     if (copper) {
-        fprintf(out, " (%s at the plate, the rest heats the copper)", plw_cell_watts(s->power_watts).text);
+        fprintf(out, ", %s at the plate (copper takes the rest)", plw_cell_watts(s->power_watts).text);
     }
     fprintf(out, "\n                  distortion %.1f %% (2nd %.1f, 3rd %.1f, 4th %.1f, 5th %.1f)\n", s->thd_percent,
             fabs(s->harmonic_percent[2]), fabs(s->harmonic_percent[3]), fabs(s->harmonic_percent[4]),
@@ -208,7 +210,7 @@ static void power_lines(FILE *out, const plw_answer *a) {
     } else {
         fprintf(out, ", where %s begins\n", s->limit == PLW_DRIVE_GRID_CURRENT ? "grid current" : "cut-off");
     }
-    fprintf(out, "                  the plate swings %s to %s to its cathode, %s to %s\n",
+    fprintf(out, "                  plate to cathode swings %s to %s, %s to %s\n",
             plw_cell_volts(s->plate_volts_least).text, plw_cell_volts(s->plate_volts_most).text,
             plw_cell_amps(s->plate_amps_least).text, plw_cell_amps(s->plate_amps_most).text);
 }
@@ -237,32 +239,32 @@ static void specimen_lines(FILE *out, const plw_answer *a) {
         return;
     }
     fputs("\nTHIS TUBE, BY THE METER\n", out);
-    fprintf(out, "  cathode %s: cathode current %s", plw_cell_volts(s->cathode_volts).text,
-            plw_cell_amps(s->cathode_amps).text);
+    fprintf(out, "  current            cathode %s", plw_cell_amps(s->cathode_amps).text);
     if (isfinite(s->screen_volts)) {
-        fprintf(out, ", of which screen %s (by the model's share),\n  plate %s", plw_cell_amps(s->screen_amps).text,
-                plw_cell_amps(s->plate_amps).text);
+        fprintf(out, "; by the model's share plate %s, screen %s", plw_cell_amps(s->plate_amps).text,
+                plw_cell_amps(s->screen_amps).text);
     }
-    fprintf(out, "; plate to cathode %s, plate %s", plw_cell_volts(s->plate_volts).text,
-            plw_cell_watts(s->plate_watts).text);
+    fprintf(out, "\n  heat               plate %s", plw_cell_watts(s->plate_watts).text);
     if (isfinite(s->screen_watts)) {
         fprintf(out, ", screen %s", plw_cell_watts(s->screen_watts).text);
     }
-    fprintf(out, "\n  it draws %.0f %% %s than the model's tube at these voltages (%s)\n", fabs(s->off_percent),
+    fprintf(out, ", at %s plate to cathode\n", plw_cell_volts(s->plate_volts).text);
+    fprintf(out, "  of its type        %.0f %% %s than the model's tube draws there (%s)\n", fabs(s->off_percent),
             s->off_percent < 0.0 ? "less" : "more", plw_cell_amps(s->model_cathode_amps).text);
     if (isfinite(s->primary_ohms)) {
-        fprintf(out, "  between supply and plate lie %s\n", plw_cell_ohms(s->primary_ohms).text);
+        fprintf(out, "  copper             %s between supply and plate\n", plw_cell_ohms(s->primary_ohms).text);
     }
     if (!s->plate_read || !s->supply_read) {
-        fprintf(out, "  not read, so taken from the model:%s%s\n", s->supply_read ? "" : " supply",
+        fprintf(out, "  not read           so taken from the model:%s%s\n", s->supply_read ? "" : " supply",
                 s->plate_read ? "" : " plate");
     }
     if (s->resistor_found) {
         const plw_bias_option *o = &s->choice.option[s->choice.chosen];
-        fprintf(out, "  for this very tube: %s, for ", plw_cell_ohms(o->ohms).text);
+        fprintf(out, "  its own resistor   %s, for ", plw_cell_ohms(o->ohms).text);
         aim_words(out, &s->choice.aim);
-        fprintf(out, ";\n  then cathode %s, plate %s, %s\n", plw_cell_volts(o->quiescent.cathode_volts).text,
-                plw_cell_amps(o->quiescent.plate_amps).text, plw_cell_watts(o->quiescent.plate_watts).text);
+        fprintf(out, ";\n                     then cathode %s, plate %s, %s\n",
+                plw_cell_volts(o->quiescent.cathode_volts).text, plw_cell_amps(o->quiescent.plate_amps).text,
+                plw_cell_watts(o->quiescent.plate_watts).text);
     } else {
         plw_put_paragraph(out, "  no resistor suits this tube: ", s->resistor_obstacle);
     }
