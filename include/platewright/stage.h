@@ -44,7 +44,8 @@ typedef struct {
     bool screen_bypassed; /* the screen side of that resistor is held by a capacitor */
 
     double drive_peak_volts; /* at the grid; NaN: up to the first of grid current and cut-off */
-    double driver_ohms;      /* resistance of what drives the grid; 0: grid current costs the driver nothing */
+    double driver_ohms; /* resistance of what drives the grids, common to all tubes; 0: grid current costs it nothing.
+                         * The charge that grid current leaves on a coupling capacitor is not reckoned with. */
 } plw_stage;
 
 /* A stage in which all that is not filled in is ideal: no copper, nothing in the screen lead, one tube, no other
@@ -117,6 +118,8 @@ typedef struct {
     double plate_amps_least, plate_amps_most;
     double plate_to_ground_volts_most;
     double screen_amps_most;
+    double grid_amps;          /* average; what it adds to the cathode resistor's current is neglected */
+    double grid_amps_most;     /* at the crest */
     double efficiency_percent; /* power over plate input */
     double voltage_gain;       /* plate swing over grid swing, fundamentals */
     /* The path over half a cycle, from the positive grid peak to the negative, for drawing. */

@@ -94,6 +94,8 @@ static const cli_option options[] = {
 
     {STAGE_OPTION("drive", CLI_GROUP_SIGNAL, CLI_STAGE, "VOLTS",
                   "peak signal at the grid, e.g. 12.5V; else up to grid current or cut-off, whichever comes first")},
+    {STAGE_OPTION("driver-ohms", CLI_GROUP_SIGNAL, CLI_STAGE, "OHMS",
+                  "resistance of what drives the grid, e.g. 47k: grid current then clips the crest softly")},
 
     {.name = "current",
      .value = CLI_VALUE_TEXT,

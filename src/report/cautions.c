@@ -103,6 +103,31 @@ static void of_mains(plw_caution_list *l, const plw_answer *answer) {
     }
 }
 
+/* From this part of the drive on, what grid current takes off the crest is worth a word. */
+#define CREST_PART 0.02
+
+/* Grid current at a drive that was given. */
+static void of_grid_current(plw_caution_list *l, const plw_stage *stage, const plw_signal *signal) {
+    char drive[TEXT_SIZE];
+    written(signal->drive_peak_volts, PLW_UNIT_VOLT, drive);
+    const double fall_volts = stage->driver_ohms * stage->parallel * signal->grid_amps_most;
+    if (stage->driver_ohms > 0.0 && fall_volts > CREST_PART * signal->drive_peak_volts) {
+        char amps[TEXT_SIZE];
+        char fall[TEXT_SIZE];
+        plw_caution_say(
+            l,
+            "At the %s peak given the grid draws up to %s, which takes %s off the crest: that clipping is reckoned "
+            "with. What it charges a coupling capacitor to, and so the bias after loud passages, is not.",
+            drive, written(signal->grid_amps_most, PLW_UNIT_AMPERE, amps), written(fall_volts, PLW_UNIT_VOLT, fall));
+    } else if (signal->grid_current && !(stage->driver_ohms > 0.0)) {
+        plw_caution_say(
+            l,
+            "At the %s peak given the grid goes positive and draws current: the driver and the coupling capacitor, "
+            "which are not part of this reckoning, will change what comes out. Tell it the driver's resistance.",
+            drive);
+    }
+}
+
 static void of_drive(plw_caution_list *l, const plw_answer *answer) {
     const plw_signal *signal = &answer->option->signal;
     char drive[TEXT_SIZE];
@@ -117,13 +142,7 @@ static void of_drive(plw_caution_list *l, const plw_answer *answer) {
     } else if (signal->limit == PLW_DRIVE_CUT_OFF) {
         plw_caution_say(l, "Full drive is %s peak: beyond it the tube is cut off during part of the cycle.", drive);
     } else {
-        if (signal->grid_current) {
-            plw_caution_say(
-                l,
-                "At the %s peak given the grid goes positive and draws current: the driver and the coupling capacitor, "
-                "which are not part of this reckoning, will change what comes out.",
-                drive);
-        }
+        of_grid_current(l, answer->stage, signal);
         if (signal->cut_off) {
             plw_caution_say(
                 l, "At the %s peak given the tube is cut off during part of the cycle: this is no longer class A.",

@@ -28,8 +28,8 @@ const plw_field plw_quiescent_fields[] = {
 const size_t plw_quiescent_fields_count = sizeof plw_quiescent_fields / sizeof plw_quiescent_fields[0];
 
 const plw_field plw_signal_fields[] = {
-    DRIVEN(drive_peak_volts), DRIVEN(power_watts), DRIVEN(speaker_watts), DRIVEN(thd_percent),
-    DRIVEN(plate_amps),       DRIVEN(screen_amps), DRIVEN(plate_watts),   DRIVEN(screen_watts),
+    DRIVEN(drive_peak_volts), DRIVEN(power_watts), DRIVEN(speaker_watts), DRIVEN(thd_percent), DRIVEN(plate_amps),
+    DRIVEN(screen_amps),      DRIVEN(plate_watts), DRIVEN(screen_watts),  DRIVEN(grid_amps),   DRIVEN(grid_amps_most),
 };
 const size_t plw_signal_fields_count = sizeof plw_signal_fields / sizeof plw_signal_fields[0];
 

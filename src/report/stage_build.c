@@ -361,6 +361,7 @@ plw_status plw_stage_build_supplied(const plw_stage_description *description, pl
     take_load(&work, &made);
     take_bias(&work, &made);
     plw_builder_take(&work, "drive", &made.drive_peak_volts);
+    plw_builder_take(&work, "driver-ohms", &made.driver_ohms);
     if (work.faults.status == PLW_OK && made.tube != NULL) {
         check_ratings(&work, &made);
     }

@@ -60,6 +60,7 @@ static const plw_entry_type types[] = {
     QUANTITY("screen-resistor", PLW_UNIT_OHM, 0.1, 1e6, "1k"),
     SWITCH("screen-bypassed"),
     QUANTITY("drive", PLW_UNIT_VOLT, 0, 2000, "12.5V"),
+    QUANTITY("driver-ohms", PLW_UNIT_OHM, 0, 1e6, "47k"),
 };
 
 const plw_entry_type *plw_entry_type_at(size_t index) {

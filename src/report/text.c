@@ -210,6 +210,11 @@ static void power_lines(FILE *out, const plw_answer *a) {
     } else {
         fprintf(out, ", where %s begins\n", s->limit == PLW_DRIVE_GRID_CURRENT ? "grid current" : "cut-off");
     }
+    if (a->stage->driver_ohms > 0.0) {
+        fprintf(out, "                  from a driver of %s; grid current %s at the crest,\n",
+                plw_cell_ohms(a->stage->driver_ohms).text, plw_cell_amps(s->grid_amps_most).text);
+        fprintf(out, "                  %s on the average\n", plw_cell_amps(s->grid_amps).text);
+    }
     fprintf(out, "                  plate to cathode swings %s to %s, %s to %s\n",
             plw_cell_volts(s->plate_volts_least).text, plw_cell_volts(s->plate_volts_most).text,
             plw_cell_amps(s->plate_amps_least).text, plw_cell_amps(s->plate_amps_most).text);

@@ -17,7 +17,7 @@ static void widen(double value, double *least, double *most) {
 static void walk_cycle(const plw_circuit *circuit, const plw_cycle *cycle, plw_signal *s) {
     s->plate_volts_least = s->plate_amps_least = HUGE_VAL;
     s->plate_volts_most = s->plate_amps_most = s->plate_to_ground_volts_most = -HUGE_VAL;
-    s->screen_amps_most = 0.0;
+    s->screen_amps_most = s->grid_amps = s->grid_amps_most = 0.0;
     double plate_watts = 0.0;
     double screen_watts = 0.0;
     for (int index = 0; index < PLW_CYCLE_INSTANTS; index++) {
@@ -29,6 +29,11 @@ static void walk_cycle(const plw_circuit *circuit, const plw_cycle *cycle, plw_s
         widen(plate_volts, &s->plate_volts_least, &s->plate_volts_most);
         widen(at->amps[PLW_OF_PLATE], &s->plate_amps_least, &s->plate_amps_most);
         s->screen_amps_most = fmax(s->screen_amps_most, at->amps[PLW_OF_SCREEN]);
+        plw_currents currents;
+        plw_law_evaluate(&circuit->stage->tube->model.law, plate_volts, at->volts[PLW_AT_SCREEN],
+                         at->volts[PLW_AT_GRID], &currents);
+        s->grid_amps += weight * currents.grid_amps;
+        s->grid_amps_most = fmax(s->grid_amps_most, currents.grid_amps);
         const double cathode_volts =
             plw_circuit_cathode_volts(circuit, circuit->stage->unbypassed ? at->amps : cycle->average_amps);
         s->plate_to_ground_volts_most = fmax(s->plate_to_ground_volts_most, plate_volts + cathode_volts);

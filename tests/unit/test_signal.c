@@ -315,6 +315,26 @@ static void check_driver(int number, const plw_stage *stage, const plw_signal *s
     }
 }
 
+/* Grid current as reported is the law's; what the driver gives over a cycle, with the bias supply, is the heat of the
+ * grid and of the driver's resistance, and each of them is positive. */
+static void check_grid_energy(int number, const plw_stage *stage, const plw_signal *s) {
+    double average = 0.0, most = 0.0, given = 0.0, taken = 0.0;
+    for (int index = 0; index <= STEPS; index++) {
+        const node_volts v = volts_at(stage, s, index);
+        plw_currents c;
+        plw_law_evaluate(&stage->tube->model.law, s->path_plate_volts[index], v.screen - v.cathode,
+                         s->path_grid_volts[index], &c);
+        const double all_amps = stage->parallel * c.grid_amps;
+        average += weight(index) * c.grid_amps;
+        most = fmax(most, c.grid_amps);
+        given += weight(index) * (v.grid - v.cathode) * all_amps;
+        taken += weight(index) * (s->path_grid_volts[index] * all_amps + stage->driver_ohms * all_amps * all_amps);
+    }
+    check(number, stage, "average grid current", s->grid_amps, average, 1e-12 + 1e-9 * average);
+    check(number, stage, "most grid current", s->grid_amps_most, most, 1e-12 + 1e-9 * most);
+    check(number, stage, "energy of the driver", given, taken, 1e-10 + 1e-6 * fabs(taken));
+}
+
 static void grid_current_loads_the_driver(void **state) {
     (void)state;
     random_source r = {20250220};
@@ -331,7 +351,90 @@ static void grid_current_loads_the_driver(void **state) {
         }
         check_driver(number, &stage, &s);
         check_averages(number, &stage, &s);
+        check_energy(number, &stage, &s);
+        check_grid_energy(number, &stage, &s);
     }
+}
+
+/* A straight triode driven past its grid: what arrives at the grid is the signal with its crest bent. */
+static plw_signal crest_clipped(double driver_ohms, double drive_peak_volts) {
+    test_tube tube;
+    make_tube(&tube, koren_triode(KOREN_300B));
+    plw_stage stage = simple_stage(&tube, 397.0, 20e3, UNKNOWN, -71.0);
+    stage.drive_peak_volts = drive_peak_volts;
+    stage.driver_ohms = driver_ohms;
+    return driven(&stage);
+}
+
+/* Harmonics 2..10 of the grid's volts, over the fundamental. */
+static void grid_harmonics(const plw_signal *s, double part[PLW_HARMONICS_MOST + 1]) {
+    double fundamental = 1.0;
+    for (int order = 1; order <= PLW_HARMONICS_MOST; order++) {
+        double peak = 0.0;
+        for (int index = 0; index <= STEPS; index++) {
+            peak += 2.0 * weight(index) * s->path_grid_volts[index] * cos(PI * order * index / STEPS);
+        }
+        fundamental = order == 1 ? peak : fundamental;
+        part[order] = fabs(peak / fundamental);
+    }
+}
+
+/* The larger the driver's resistance, the flatter the crest, the less grid current and the more of every harmonic. */
+static void a_larger_driver_resistance_bends_the_crest_more(void **state) {
+    (void)state;
+    static const double ohms[] = {213.0, 2.13e3, 21.3e3, 213e3};
+    double part_before[PLW_HARMONICS_MOST + 1] = {0.0};
+    plw_signal before = crest_clipped(0.0, 77.0);
+    assert_near(before.path_grid_volts[0], 77.0 - 71.0, 1e-9, "without resistance nothing is lost in the driver");
+    assert_true(before.grid_current);
+    for (size_t at = 0; at < sizeof ohms / sizeof ohms[0]; at++) {
+        const plw_signal s = crest_clipped(ohms[at], 77.0);
+        double part[PLW_HARMONICS_MOST + 1];
+        grid_harmonics(&s, part);
+        for (int order = 2; order <= 7; order++) {
+            assert_true(part[order] > part_before[order]);
+            assert_true(order == 2 || part[order] < part[order - 1]); /* a crest only a little cut: they fall */
+        }
+        assert_true(s.path_grid_volts[0] < before.path_grid_volts[0]);
+        assert_true(s.grid_amps_most < before.grid_amps_most && s.grid_amps < before.grid_amps);
+        assert_true(s.grid_amps > 0.0 && s.grid_amps < s.grid_amps_most);
+        memcpy(part_before, part, sizeof part_before);
+        before = s;
+    }
+    assert_true(before.path_grid_volts[0] < 0.5); /* cut off flat near zero */
+}
+
+/* With as much second harmonic, a crest rounded by a small resistance has less of the high ones than one cut flat. */
+static void soft_clipping_has_less_of_the_high_harmonics(void **state) {
+    (void)state;
+    double hard[PLW_HARMONICS_MOST + 1], soft[PLW_HARMONICS_MOST + 1];
+    const plw_signal cut_flat = crest_clipped(213e3, 77.0);
+    grid_harmonics(&cut_flat, hard);
+    double below = 77.0, above = 154.0;
+    for (int step = 0; step < 50; step++) {
+        const double middle = 0.5 * (below + above);
+        const plw_signal s = crest_clipped(2.13e3, middle);
+        grid_harmonics(&s, soft);
+        *(soft[2] < hard[2] ? &below : &above) = middle;
+    }
+    assert_near_relative(soft[2], hard[2], 1e-9, "as much second harmonic");
+    for (int order = 3; order <= 8; order++) {
+        assert_true(soft[order] / hard[order] < soft[order - 1] / hard[order - 1]);
+    }
+}
+
+/* Far below zero no grid current flows, and the driver's resistance changes nothing. */
+static void a_negative_grid_does_not_feel_the_driver(void **state) {
+    (void)state;
+    test_tube tube;
+    make_tube(&tube, koren_triode(KOREN_300B));
+    plw_stage stage = simple_stage(&tube, 397.0, 3e3, UNKNOWN, -71.0);
+    stage.drive_peak_volts = 61.0;
+    const plw_signal without = driven(&stage);
+    stage.driver_ohms = 213e3;
+    const plw_signal with = driven(&stage);
+    assert_near_relative(with.power_watts, without.power_watts, 1e-12, "power");
+    assert_near(with.grid_amps_most, 0.0, 1e-15, "a grid 10 V negative draws nothing");
 }
 
 static void impossible_drives_are_refused(void **state) {
@@ -378,6 +481,9 @@ int main(void) {
         cmocka_unit_test(a_drive_beyond_shows_grid_current_and_cut_off),
         cmocka_unit_test(zero_bias_leaves_no_drive),
         cmocka_unit_test(grid_current_loads_the_driver),
+        cmocka_unit_test(a_larger_driver_resistance_bends_the_crest_more),
+        cmocka_unit_test(soft_clipping_has_less_of_the_high_harmonics),
+        cmocka_unit_test(a_negative_grid_does_not_feel_the_driver),
         cmocka_unit_test(impossible_drives_are_refused),
         cmocka_unit_test(an_unbypassed_cathode_feeds_back),
     };
