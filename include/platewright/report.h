@@ -27,6 +27,7 @@ typedef struct {
     const plw_supply_answer *supply; /* the plate supply at the current of the stage at rest */
     const plw_hum *hum;              /* its ripple at the speaker */
     plw_series series;
+    double aim_before_percent; /* 0, or what the aim was before it was lowered for the mains high */
 } plw_answer;
 
 /* The answer for the bench.  UTF-8, lines up to 80 columns.

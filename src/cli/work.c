@@ -146,6 +146,7 @@ static plw_status choose(cli_work *work, plw_bias_choice *choice, plw_error *err
         if (cli_argument(work->arguments, "aim") != NULL || over <= 1.0) {
             break;
         }
+        work->aim_before_percent = PLW_AIM_DEFAULT_PERCENT;
         work->aim.value *= 0.995 / over;
         status = plw_bias_choose(&work->stage, work->aim, work->series, choice, error);
     }
@@ -197,6 +198,7 @@ static void complete_supply(const cli_work *work, plw_answer *answer, cli_extras
 
 void cli_work_complete(const cli_work *work, plw_answer *answer, cli_extras *extras, bool *kept) {
     const plw_bias_option *option = answer->option;
+    answer->aim_before_percent = work->aim_before_percent;
     /* Without it the answer still stands: a stage at the edge of its supply's readings may not bear a stronger tube. */
     if (plw_uncertainty_estimate(answer->stage, &option->quiescent, &option->signal, &extras->uncertainty, NULL) ==
         PLW_OK) {

@@ -17,6 +17,7 @@ typedef struct {
     plw_plate_supply supply; /* whose line is the stage's */
     plw_aim aim;
     plw_series series;
+    double aim_before_percent; /* as in plw_answer */
 } cli_work;
 
 /* What an answer holds beside the stage itself. */

@@ -206,7 +206,7 @@ static void ripple_entries(FILE *file, const plw_rectifier_state *state) {
     for (size_t k = 0; k < state->nodes && k < sizeof inks / sizeof inks[0]; k++) {
         char volts[48];
         char text[ENTRY_SIZE];
-        snprintf(text, sizeof text, "ripple at capacitor %zu, %s peak to peak", k + 1,
+        snprintf(text, sizeof text, "capacitor %zu: %s of ripple", k + 1,
                  plw_script_value(state->node[k].ripple_peak_to_peak_volts, PLW_UNIT_VOLT, 2, volts, sizeof volts));
         next(file);
         fprintf(file, "$ripple%zu using 1:2 axes x1y2 with lines", k);
@@ -237,7 +237,7 @@ static void lower_panel(FILE *file, const picture *p, const plw_rectifier_state 
     fputs("plot ", file);
     char value[48];
     char text[ENTRY_SIZE];
-    snprintf(text, sizeof text, "current of the winding, both directions upward, peak %s",
+    snprintf(text, sizeof text, "winding, both ways upward, peak %s",
              plw_script_value(state->diode_peak_amps, PLW_UNIT_AMPERE, 3, value, sizeof value));
     plw_plot_line(file, "winding", PLW_INK_SWING, text);
     if (ripple) {

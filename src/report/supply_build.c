@@ -130,6 +130,10 @@ static void take_readings_alone(plw_builder *work, plw_plate_supply *supply) {
 
 static void take_rectifier(plw_builder *work, plw_plate_supply *supply) {
     const plw_stage_entry *entry = plw_builder_entry(work, "rectifier");
+    const bool makes_volts = plw_builder_entry(work, "winding") != NULL || supply->readings > 0;
+    if (entry == NULL && !makes_volts) {
+        return; /* of the transformer wanted: full-wave */
+    }
     static const plw_rectifier_connection connections[] = {PLW_FULL_WAVE, PLW_BRIDGE, PLW_HALF_WAVE};
     if (entry == NULL) {
         plw_builder_fault(work, first_part(work),
@@ -263,10 +267,7 @@ static void exclusions(plw_builder *work) {
     plw_builder_exclude(work, "source-ohms", "winding", "give the copper as --winding-ohms");
     if (plw_builder_entry(work, "winding") == NULL) {
         plw_builder_exclude(work, "source-ohms", "rectifier", "give the winding, or leave its rectifier out");
-        const plw_stage_entry *copper = plw_builder_entry(work, "winding-ohms");
-        if (copper != NULL && plw_builder_entry(work, "reading") == NULL) {
-            plw_builder_fault(work, copper, "the winding is missing; add its RMS volts off load, e.g. --winding 230V");
-        }
+        plw_builder_exclude(work, "winding-ohms", "supply", "give the winding instead of the loaded voltage");
     }
 }
 

@@ -150,15 +150,19 @@ void plw_put_supply_ratings(FILE *out, const plw_supply_answer *a) {
                                               : "silicon: of the 1N4007 class, 1 A and 1000 V");
 }
 
-static void mains_cell(FILE *out, const plw_mains_corner *corner, size_t index, bool counted) {
+/* A cell of the mains group.  In: last: nothing stands behind it in its line */
+static void mains_cell(FILE *out, const plw_mains_corner *corner, size_t index, bool counted, bool last) {
     if (!corner->solved || index >= corner->ratings_count) {
         plw_put_right(out, "-", 12);
-        fputs("         ", out);
+        fputs(last ? "" : "          ", out);
         return;
     }
     const plw_rating_check *check = &corner->ratings[index];
-    plw_put_right(out, plw_cell_quantity(check->value, check->unit, 3).text, 12);
-    fprintf(out, " %4.0f %%%s", check->share_percent, check->ok ? "   " : counted ? " !!" : " * ");
+    const char *mark = check->ok ? "" : counted ? " !!" : " *";
+    const plw_cell value =
+        check->unit == PLW_UNIT_WATT ? plw_cell_watts(check->value) : plw_cell_quantity(check->value, check->unit, 3);
+    plw_put_right(out, value.text, 12);
+    fprintf(out, last ? " %4.0f %%%s" : " %4.0f %%%-3s", check->share_percent, mark);
 }
 
 void plw_put_mains(FILE *out, const plw_mains *mains, const plw_quiescent *rest) {
@@ -177,8 +181,8 @@ void plw_put_mains(FILE *out, const plw_mains *mains, const plw_quiescent *rest)
     bool starred = false;
     for (size_t i = 0; i < names->ratings_count; i++) {
         fprintf(out, "  %-24s", names->ratings[i].name);
-        mains_cell(out, &mains->low, i, mains->counted);
-        mains_cell(out, &mains->high, i, mains->counted);
+        mains_cell(out, &mains->low, i, mains->counted, false);
+        mains_cell(out, &mains->high, i, mains->counted, true);
         fputc('\n', out);
         starred = starred || !names->ratings[i].ok;
     }

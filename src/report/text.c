@@ -70,6 +70,9 @@ static void bias_lines(FILE *out, const plw_answer *a) {
     if (a->choice != NULL) {
         fputs("                  aimed at ", out);
         aim_words(out, &a->choice->aim);
+        if (a->aim_before_percent > 0.0) {
+            fprintf(out, "\n                  (lowered from %.3g %%, for the mains 10 %% high)", a->aim_before_percent);
+        }
         fprintf(out, "; exact %s\n", plw_cell_quantity(a->choice->exact_ohms, PLW_UNIT_OHM, 4).text);
         if (!a->choice->aim_reached) {
             plw_put_paragraph(out, "                  NOT REACHED: ", a->choice->obstacle);

@@ -44,6 +44,12 @@ static plw_status within_supply(const plw_stage *stage, double amps, plw_error *
             "supply: the stage would draw %s, but behind its source resistance the supply gives %s at the most", drawn,
             reach);
     }
+    if (stage->supply.kind == PLW_SUPPLY_RECTIFIER) {
+        return plw_fail(error, PLW_E_NO_POINT,
+                        "winding: the stage would draw %s, but the line of this supply ends at %s, where %s is left; a "
+                        "stronger transformer or less current is wanted",
+                        drawn, reach, plw_quantity_format(volts, PLW_UNIT_VOLT, 3, load, sizeof load));
+    }
     return plw_fail(error, PLW_E_NO_POINT,
                     "reading: the stage draws %s, but the readings speak only %s %s; add a reading into about %s "
                     "(it must stand %s)",

@@ -154,8 +154,9 @@ static plw_supply_ratings ratings_for(const plw_plate_supply *supply, const plw_
     all.output_amps = told(all.output_amps, own.output_amps);
     all.plate_rms_volts = told(all.plate_rms_volts, own.plate_rms_volts);
     /* Copper that is not known is no reason to condemn the surge or the source resistance. */
-    all.least_path_ohms = supply->copper_assumed ? (double)NAN : told(all.least_path_ohms, own.least_path_ohms);
-    all.surge_amps = supply->copper_assumed ? (double)NAN : told(all.surge_amps, own.surge_amps);
+    const bool copper_known = !supply->copper_assumed && !(supply->estimated && supply->estimate.none_found);
+    all.least_path_ohms = copper_known ? told(all.least_path_ohms, own.least_path_ohms) : (double)NAN;
+    all.surge_amps = copper_known ? told(all.surge_amps, own.surge_amps) : (double)NAN;
     all.most_reservoir_farads =
         supply->reservoir_assumed ? (double)NAN : told(all.most_reservoir_farads, own.most_reservoir_farads);
     return all;

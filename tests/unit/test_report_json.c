@@ -236,14 +236,14 @@ static void a_soft_supply_is_told(void **state) {
     const plw_quiescent *rest = &s.answer.option->quiescent;
     assert_near_relative(number_at(root, "supply.amps"), rest->supply_amps, WRITTEN, "as solved");
     assert_near_relative(number_at(root, "supply.loaded_volts"), rest->supply_volts, WRITTEN, "as solved");
-    const char *const unknown[] = {"off_load_volts_mains_high",
-                                   "ripple_volts_peak_to_peak",
-                                   "winding_rms_amps",
-                                   "diode_peak_amps",
-                                   "uncertainty_volts",
-                                   "line",
-                                   "dummy_load",
-                                   "bleeder"};
+    assert_near(number_at(root, "supply.off_load_volts_mains_high"), 1.1 * 331.7, 1e-6, "a tenth higher");
+    assert_int_equal(json_array_size(at(root, "supply.line")), 2);
+    assert_near_relative(number_at(root, "supply.dummy_load.watts"),
+                         number_at(root, "supply.dummy_load.expected_volts") *
+                             number_at(root, "supply.dummy_load.expected_volts") /
+                             number_at(root, "supply.dummy_load.ohms"),
+                         1e-6, "V^2 / R");
+    const char *const unknown[] = {"ripple_volts_peak_to_peak", "winding_rms_amps", "diode_peak_amps", "bleeder"};
     for (size_t i = 0; i < sizeof unknown / sizeof unknown[0]; i++) {
         assert_null_at(at(root, "supply"), unknown[i]);
     }
