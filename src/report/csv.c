@@ -39,7 +39,9 @@ static void put_header(FILE *file) {
     for (int h = 2; h <= PLW_HARMONICS_MOST; h++) {
         fprintf(file, ",driven_h%d_percent", h);
     }
-    fputs(",drive_limit\n", file);
+    fputs(",drive_limit,uncertainty_idle_plate_amps,uncertainty_idle_plate_watts,uncertainty_idle_cathode_volts,"
+          "uncertainty_driven_speaker_watts,uncertainty_dominated_by,outside_data\n",
+          file);
 }
 
 static void put_number(FILE *file, double value) {
@@ -53,7 +55,23 @@ static void put_fields(FILE *file, const plw_field *fields, size_t count, const 
     }
 }
 
-static void put_option(FILE *file, const plw_stage *stage, const plw_bias_option *option, bool chosen) {
+/* One standard deviation of the main figures; only the option chosen has it. */
+static void put_uncertainty(FILE *file, const plw_uncertainty *u) {
+    if (u == NULL) {
+        fputs(",,,,,,\n", file);
+        return;
+    }
+    put_number(file, u->plate_amps.both);
+    put_number(file, u->plate_watts.both);
+    put_number(file, u->cathode_volts.both);
+    put_number(file, u->speaker_watts.both);
+    fprintf(file, ",%s,", u->model_dominates ? "model" : "tubes");
+    put_text(file, u->outside);
+    fputc('\n', file);
+}
+
+static void put_option(FILE *file, const plw_answer *answer, const plw_bias_option *option, bool chosen) {
+    const plw_stage *stage = answer->stage;
     const bool triode = stage->tube->kind == PLW_KIND_TRIODE;
     put_text(file, plw_stage_tube_type(stage));
     fprintf(file, ",%s,%u", plw_connection_name(triode ? PLW_CONNECTION_TRIODE : stage->connection), stage->parallel);
@@ -67,7 +85,8 @@ static void put_option(FILE *file, const plw_stage *stage, const plw_bias_option
     for (int h = 2; h <= PLW_HARMONICS_MOST; h++) {
         put_number(file, fabs(option->signal.harmonic_percent[h]));
     }
-    fprintf(file, ",%s\n", plw_drive_limit_name(option->signal.limit));
+    fprintf(file, ",%s", plw_drive_limit_name(option->signal.limit));
+    put_uncertainty(file, chosen ? answer->uncertainty : NULL);
 }
 
 plw_status plw_report_csv(const plw_answer *answer, char **text, plw_error *error) {
@@ -78,10 +97,10 @@ plw_status plw_report_csv(const plw_answer *answer, char **text, plw_error *erro
     }
     put_header(buffer.file);
     if (answer->choice == NULL) {
-        put_option(buffer.file, answer->stage, answer->option, true);
+        put_option(buffer.file, answer, answer->option, true);
     }
     for (size_t i = 0; answer->choice != NULL && i < answer->choice->options; i++) {
-        put_option(buffer.file, answer->stage, &answer->choice->option[i], i == answer->choice->chosen);
+        put_option(buffer.file, answer, &answer->choice->option[i], i == answer->choice->chosen);
     }
     return plw_text_end(&buffer, PLW_OK, text, error);
 }

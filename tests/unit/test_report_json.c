@@ -446,6 +446,45 @@ static void csv_has_a_line_for_each_resistor(void **state) {
     plw_text_free(text);
 }
 
+/* JSON tells both parts of the uncertainty, CSV the whole, and that of the chosen resistor only. */
+static void the_uncertainty_is_told(void **state) {
+    (void)state;
+    static solved_stage s;
+    stage_begin(&s, PLW_LAW_TRIODE);
+    stage_solve(&s);
+    plw_uncertainty u;
+    plw_error error = {0};
+    const plw_bias_option *option = s.answer.option;
+    assert_int_equal(plw_uncertainty_estimate(&s.stage, &option->quiescent, &option->signal, &u, &error), PLW_OK);
+    snprintf(u.outside, sizeof u.outside, "plate volts 425 V, the data cover 100 to 200 V");
+    u.outside_data = true;
+    s.answer.uncertainty = &u;
+    json_t *root = parsed(&s.answer);
+    assert_near_relative(number_at(root, "uncertainty.plate_amps.model"), u.plate_amps.model, WRITTEN, "as found");
+    assert_near_relative(number_at(root, "uncertainty.plate_watts.tubes"), u.plate_watts.tubes, WRITTEN, "as found");
+    assert_near_relative(number_at(root, "uncertainty.speaker_watts.both"), u.speaker_watts.both, WRITTEN, "as found");
+    assert_text_at(root, "uncertainty.dominated_by", u.model_dominates ? "model" : "tubes");
+    assert_text_at(root, "uncertainty.outside_data", u.outside);
+    json_decref(root);
+    char *text = NULL;
+    assert_int_equal(plw_report_csv(&s.answer, &text, &error), PLW_OK);
+    assert_non_null(strstr(text, ",\"plate volts 425 V, the data cover 100 to 200 V\"\n"));
+    char value[64];
+    for (size_t i = 0; i < s.choice.options; i++) {
+        column_of(text, "uncertainty_idle_plate_amps", i, value, sizeof value);
+        if (i != s.choice.chosen) {
+            assert_string_equal(value, "");
+            continue;
+        }
+        assert_near_relative(strtod(value, NULL), u.plate_amps.both, WRITTEN, "as found");
+        column_of(text, "uncertainty_driven_speaker_watts", i, value, sizeof value);
+        assert_near_relative(strtod(value, NULL), u.speaker_watts.both, WRITTEN, "as found");
+        column_of(text, "uncertainty_dominated_by", i, value, sizeof value);
+        assert_string_equal(value, u.model_dominates ? "model" : "tubes");
+    }
+    plw_text_free(text);
+}
+
 static void numbers_are_written_alike(void **state) {
     (void)state;
     const struct {
@@ -600,6 +639,7 @@ int main(void) {
         cmocka_unit_test(the_same_answer_gives_the_same_bytes),
         cmocka_unit_test(scarce_memory_is_an_error_not_a_crash),
         cmocka_unit_test(csv_has_a_line_for_each_resistor),
+        cmocka_unit_test(the_uncertainty_is_told),
         cmocka_unit_test(numbers_are_written_alike),
         cmocka_unit_test(standing_cautions_are_always_there),
         cmocka_unit_test(conditions_have_their_cautions),
