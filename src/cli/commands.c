@@ -72,13 +72,24 @@ static const cli_command commands[] = {
      .run = cli_run_tubes},
     {.name = "fit",
      .bit = CLI_FIT,
-     .positional = "TUBEFILE.xml",
+     .positional = "FILE",
      .positional_required = true,
      .summary = "work out a tube's coefficients from its published rows and points",
-     .description = "Fits the characteristic law of one tube file to what is printed of the tube, and shows every "
-                    "printed figure beside the model's.",
+     .description =
+         "Fits the characteristic law to what a tube file (FILE.xml) holds of printed rows and points, or to "
+         "a table of them (FILE.csv) together with the options below. Shows every figure given beside the "
+         "model's, what the data leave open, and which figures cannot be right. A table names its columns "
+         "in the first line, in any order: plate_volts, screen_volts, grid_volts, cathode_resistor_ohms, "
+         "drive_peak_volts, plate_ma, screen_ma, plate_ma_full_drive, screen_ma_full_drive, gm_umho, "
+         "plate_resistance_ohms, mu, load_ohms, power_watts, thd_percent, second_percent, third_percent, "
+         "uncertainty_percent, kind, connection, confidence, how, source, note. What is not known stays "
+         "empty; one row with gm and plate resistance is enough for a first answer.",
      .examples = {{"See how well the rows of a tube file of one's own hang together", "platewright fit 6V6GT.xml"},
-                  {"The same, and keep the coefficients", "platewright fit 6V6GT.xml --output 6V6GT.xml"}},
+                  {"The same, and keep the coefficients", "platewright fit 6V6GT.xml --output 6V6GT.xml"},
+                  {"A tube that is in no catalogue, from its sheet typed into a table",
+                   "platewright fit sheet.csv --type 6X99 --kind beam --heater-volts 6.3V --heater-amps 450mA "
+                   "--plate-volts 315V --screen-volts 285V --plate-watts 12W --screen-watts 2W --output 6X99.xml "
+                   "--plot 6X99.svg"}},
      .run = cli_run_fit},
 };
 
