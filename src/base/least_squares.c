@@ -64,26 +64,119 @@ static bool matrix_is_finite(const gsl_matrix *matrix) {
     return true;
 }
 
-/* Covariance, and the least share of a coordinate's effect that the others cannot imitate: the standard error that it
- * would have alone over the one that it has (the root of 1/VIF, the variance inflation factor).
- * Ret:  the share; 0 when a coordinate has no effect of its own at all: its rows and columns are NaN */
-static double find_covariance(const gsl_matrix *derivatives, double *covariance) {
-    const size_t p = derivatives->size2;
-    gsl_matrix_view view = gsl_matrix_view_array(covariance, p, p);
-    (void)gsl_multifit_nlinear_covar(derivatives, 0.0, &view.matrix);
-    double least = 1.0;
-    for (size_t index = 0; index < p; index++) {
-        const gsl_vector_const_view column = gsl_matrix_const_column(derivatives, index);
-        const double alone = gsl_blas_dnrm2(&column.vector);
-        const double variance = covariance[index * p + index];
-        if (alone > 0.0 && variance > 0.0) {
-            least = fmin(least, 1.0 / (alone * sqrt(variance)));
+/* Columns of the derivatives as seen by the covariance: scaled to length 1, then each made perpendicular to those
+ * before it (modified Gram-Schmidt, twice for rounding), so that derivatives = perpendicular * triangle * lengths. */
+typedef struct {
+    size_t n, p;
+    double *perpendicular; /* p columns of n */
+    double *triangle;      /* p * p, upper, by rows; a zero on the diagonal: those before it make the column up */
+    double *length;        /* p */
+} factors;
+
+static double dot(const double *one, const double *other, size_t count) {
+    double sum = 0.0;
+    for (size_t index = 0; index < count; index++) {
+        sum += one[index] * other[index];
+    }
+    return sum;
+}
+
+/* Take the parts along the earlier columns out of a column. */
+static void make_perpendicular(factors *f, size_t column) {
+    double *c = f->perpendicular + column * f->n;
+    for (int pass = 0; pass < 2; pass++) {
+        for (size_t before = 0; before < column; before++) {
+            const double *b = f->perpendicular + before * f->n;
+            const double along = dot(b, c, f->n);
+            f->triangle[before * f->p + column] += along;
+            for (size_t row = 0; row < f->n; row++) {
+                c[row] -= along * b[row];
+            }
+        }
+    }
+    double left = sqrt(dot(c, c, f->n));
+    left = left > OWN_SHARE_LEAST ? left : 0.0;
+    f->triangle[column * f->p + column] = left;
+    for (size_t row = 0; row < f->n; row++) {
+        c[row] = left > 0.0 ? c[row] / left : 0.0;
+    }
+}
+
+static void factorise(const gsl_matrix *derivatives, factors *f) {
+    memset(f->triangle, 0, f->p * f->p * sizeof *f->triangle);
+    for (size_t column = 0; column < f->p; column++) {
+        double *c = f->perpendicular + column * f->n;
+        for (size_t row = 0; row < f->n; row++) {
+            c[row] = gsl_matrix_get(derivatives, row, column);
+        }
+        f->length[column] = sqrt(dot(c, c, f->n));
+        for (size_t row = 0; row < f->n; row++) {
+            c[row] = f->length[column] > 0.0 ? c[row] / f->length[column] : 0.0;
+        }
+        make_perpendicular(f, column);
+    }
+}
+
+/* Solve triangle * x = unit vector `column` from below; where the diagonal is zero x is zero.
+ * Out:  x[p] */
+static void solve_triangle(const factors *f, const double *right, double *x) {
+    for (size_t row = f->p; row-- > 0;) {
+        double sum = right[row];
+        for (size_t other = row + 1; other < f->p; other++) {
+            sum -= f->triangle[row * f->p + other] * x[other];
+        }
+        const double diagonal = f->triangle[row * f->p + row];
+        x[row] = diagonal > 0.0 ? sum / diagonal : 0.0;
+    }
+}
+
+/* Mark the coordinates that a column without an effect of its own can be traded against. */
+static void mark_undetermined(const factors *f, size_t column, double *covariance) {
+    double right[PLW_LEAST_SQUARES_COORDINATES_MOST];
+    double x[PLW_LEAST_SQUARES_COORDINATES_MOST];
+    for (size_t row = 0; row < f->p; row++) {
+        right[row] = row < column ? f->triangle[row * f->p + column] : 0.0;
+    }
+    solve_triangle(f, right, x);
+    x[column] = 1.0;
+    for (size_t index = 0; index < f->p; index++) {
+        if (fabs(x[index]) < OWN_SHARE_LEAST) {
             continue;
         }
-        least = 0.0;
-        for (size_t other = 0; other < p; other++) {
-            covariance[index * p + other] = (double)NAN;
-            covariance[other * p + index] = (double)NAN;
+        for (size_t other = 0; other < f->p; other++) {
+            covariance[index * f->p + other] = (double)NAN;
+            covariance[other * f->p + index] = (double)NAN;
+        }
+    }
+}
+
+/* Covariance, and the least share of a coordinate's effect that the others cannot imitate: the standard error that it
+ * would have alone over the one that it has (the root of 1/VIF, the variance inflation factor).
+ * GSL's own function is not used: it does not survive a lack of memory.
+ * Ret:  the share; 0 when a coordinate has no effect of its own at all: its rows and columns are NaN */
+static double find_covariance(factors *f, const gsl_matrix *derivatives, double *covariance) {
+    double inverse[PLW_LEAST_SQUARES_COORDINATES_MOST][PLW_LEAST_SQUARES_COORDINATES_MOST]; /* by columns */
+    factorise(derivatives, f);
+    for (size_t column = 0; column < f->p; column++) {
+        double unit[PLW_LEAST_SQUARES_COORDINATES_MOST] = {0.0};
+        unit[column] = f->triangle[column * f->p + column] > 0.0 ? 1.0 : 0.0;
+        solve_triangle(f, unit, inverse[column]);
+    }
+    double least = 1.0;
+    for (size_t one = 0; one < f->p; one++) {
+        for (size_t other = 0; other < f->p; other++) {
+            double sum = 0.0;
+            for (size_t column = 0; column < f->p; column++) {
+                sum += inverse[column][one] * inverse[column][other];
+            }
+            covariance[one * f->p + other] = sum / (f->length[one] * f->length[other]);
+            least = one == other && sum > 0.0 ? fmin(least, 1.0 / sqrt(sum)) : least;
+        }
+    }
+    for (size_t column = 0; column < f->p; column++) {
+        if (f->triangle[column * f->p + column] == 0.0) {
+            mark_undetermined(f, column, covariance);
+            least = 0.0;
         }
     }
     return least;
@@ -103,7 +196,7 @@ static plw_settled settled_how(int status, int info) {
 /* One run from one start.
  * In:   start[p]
  * Out:  on success *end and covariance[p * p]; the place stands in `work` */
-static bool run(bridge *b, gsl_multifit_nlinear_workspace *work, const double *start, double *covariance,
+static bool run(bridge *b, gsl_multifit_nlinear_workspace *work, const double *start, factors *f, double *covariance,
                 plw_least_squares_end *end) {
     const plw_least_squares *problem = b->problem;
     gsl_multifit_nlinear_fdf functions = {.f = evaluate, .n = problem->n, .p = problem->p, .params = b};
@@ -129,7 +222,7 @@ static bool run(bridge *b, gsl_multifit_nlinear_workspace *work, const double *s
     end->sum_of_squares = squares;
     end->settled = settled_how(status, info);
     end->iterations = gsl_multifit_nlinear_niter(work);
-    end->own_share_least = find_covariance(derivatives, covariance);
+    end->own_share_least = find_covariance(f, derivatives, covariance);
     end->singular = end->own_share_least < OWN_SHARE_LEAST;
     return true;
 }
@@ -146,7 +239,7 @@ static void keep(const gsl_multifit_nlinear_workspace *work, size_t p, const dou
 }
 
 static plw_status check(const plw_least_squares *problem, size_t count, plw_error *error) {
-    if (problem->p == 0 || problem->n < problem->p || count == 0) {
+    if (problem->p == 0 || problem->p > PLW_LEAST_SQUARES_COORDINATES_MOST || problem->n < problem->p || count == 0) {
         return plw_fail(error, PLW_E_USAGE, "least squares: %zu residuals, %zu coordinates, %zu starts", problem->n,
                         problem->p, count);
     }
@@ -157,7 +250,11 @@ static plw_status check(const plw_least_squares *problem, size_t count, plw_erro
     return PLW_OK;
 }
 
-/* From every start, with memory at hand: scratch holds p + n + p * p numbers. */
+static size_t scratch_size(size_t n, size_t p) {
+    return n + 2 * p + 2 * p * p + n * p;
+}
+
+/* From every start, with memory at hand: scratch holds scratch_size() numbers. */
 static plw_status search(const plw_least_squares *problem, const double *starts, size_t count, double *scratch,
                          double *place, double *covariance, plw_least_squares_end *end, plw_error *error) {
     gsl_multifit_nlinear_parameters parameters = gsl_multifit_nlinear_default_parameters();
@@ -174,16 +271,21 @@ static plw_status search(const plw_least_squares *problem, const double *starts,
     if (work == NULL) {
         return plw_fail(error, PLW_E_NO_MEMORY, "least squares: out of memory");
     }
-    bridge b = {problem, scratch, scratch + problem->p};
-    double *found_covariance = scratch + problem->p + problem->n;
+    const size_t n = problem->n;
+    const size_t p = problem->p;
+    bridge b = {problem, scratch, scratch + p};
+    double *found_covariance = b.residual + n;
+    factors f = {.n = n, .p = p, .triangle = found_covariance + p * p};
+    f.length = f.triangle + p * p;
+    f.perpendicular = f.length + p;
     bool found = false;
     for (size_t start = 0; start < count; start++) {
         plw_least_squares_end trial = {.start = start};
-        if (run(&b, work, starts + start * problem->p, found_covariance, &trial) &&
+        if (run(&b, work, starts + start * p, &f, found_covariance, &trial) &&
             (!found || trial.sum_of_squares < end->sum_of_squares)) {
             found = true;
             *end = trial;
-            keep(work, problem->p, found_covariance, place, covariance);
+            keep(work, p, found_covariance, place, covariance);
         }
     }
     gsl_multifit_nlinear_free(work);
@@ -197,7 +299,7 @@ plw_status plw_least_squares_solve(const plw_least_squares *problem, const doubl
         return status;
     }
     const size_t p = problem->p;
-    double *scratch = malloc((p + problem->n + p * p) * sizeof *scratch);
+    double *scratch = malloc(scratch_size(problem->n, p) * sizeof *scratch);
     if (scratch == NULL || !memory_is_there(problem->n, p)) {
         free(scratch);
         return plw_fail(error, PLW_E_NO_MEMORY, "least squares: out of memory");

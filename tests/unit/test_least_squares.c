@@ -103,6 +103,9 @@ static void test_twins_are_singular(void **state) {
         sxy += line_x[i] * line_y[i];
     }
     assert_near(place[0] + place[1], sxy / sxx, 1e-7, "the sum is determined all the same");
+    for (size_t i = 0; i < 4; i++) {
+        assert_true(isnan(covariance[i]));
+    }
 }
 
 static void test_no_effect_gives_no_variance(void **state) {
@@ -155,6 +158,9 @@ static void test_refusals(void **state) {
     expect_refusal(&problem, 1, PLW_E_USAGE, "1 residuals");
     problem = core(line, 0);
     expect_refusal(&problem, 1, PLW_E_USAGE, "0 coordinates");
+    problem = core(line, 17);
+    problem.n = 20;
+    expect_refusal(&problem, 1, PLW_E_USAGE, "17 coordinates");
     problem = core(line, 2);
     problem.tol_step = 0.0;
     expect_refusal(&problem, 1, PLW_E_USAGE, "tolerances");
