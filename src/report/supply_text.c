@@ -18,25 +18,27 @@ static void title(FILE *out, const plw_supply_finding *f) {
     const plw_supply_answer *a = f->supply;
     fprintf(out, "LOADED            %s at %s", plw_cell_volts(a->volts).text, plw_cell_amps(a->amps).text);
     if (isfinite(a->volts_error)) {
-        fprintf(out, ", +/- %s by the readings (one standard error)",
+        fprintf(out, ", +/- %s by the readings (standard error)",
                 plw_cell_quantity(a->volts_error, PLW_UNIT_VOLT, 2).text);
     }
     fputc('\n', out);
     if (f->stage != NULL) {
         const plw_stage *stage = f->stage;
-        fprintf(out, INDENT "drawn by ");
+        char text[256] = "drawn by ";
+        size_t used = strlen(text);
         if (stage->parallel > 1) {
-            fprintf(out, "%u x ", stage->parallel);
+            used += (size_t)snprintf(text + used, sizeof text - used, "%u x ", stage->parallel);
         }
-        fprintf(out, "%s at rest", plw_stage_tube_type(stage));
+        used += (size_t)snprintf(text + used, sizeof text - used, "%.60s at rest", plw_stage_tube_type(stage));
         if (isfinite(stage->cathode_resistor_ohms)) {
-            fprintf(out, " with %s at the cathode%s", plw_cell_ohms(stage->cathode_resistor_ohms).text,
-                    f->choice != NULL ? " (chosen)" : "");
+            used += (size_t)snprintf(text + used, sizeof text - used, " with %s at the cathode%s",
+                                     plw_cell_ohms(stage->cathode_resistor_ohms).text,
+                                     f->choice != NULL ? " (chosen)" : "");
         }
         if (stage->other_amps > 0.0) {
-            fprintf(out, ", and %s besides", plw_cell_amps(stage->other_amps).text);
+            snprintf(text + used, sizeof text - used, ", and %s besides", plw_cell_amps(stage->other_amps).text);
         }
-        fputc('\n', out);
+        plw_put_paragraph(out, INDENT, text);
     }
 }
 
@@ -72,7 +74,7 @@ static void off_load_line(FILE *out, const plw_supply_answer *a) {
         fputs("OFF LOAD          not known: read it before capacitors are bought\n", out);
         return;
     }
-    fprintf(out, "OFF LOAD          %s; %s with the mains %.3g %% up: capacitors must stand that\n",
+    fprintf(out, "OFF LOAD          %s; %s with the mains %.3g %% up: capacitors must stand it\n",
             plw_cell_volts(a->off_load_volts).text, plw_cell_volts(a->off_load_high_volts).text,
             a->mains_high_percent - 100.0);
 }
@@ -244,8 +246,8 @@ static void dummy_lines(FILE *out, const plw_supply_finding *f) {
         fprintf(out, ", a %g W part", d->rating_watts);
     }
     fprintf(out, " (it turns %s into heat);\n" INDENT "%s\n", plw_cell_watts(d->watts).text, seconds);
-    fprintf(out, INDENT "the meter should read %s across it; exact would be %s\n",
-            plw_cell_volts(d->expected_volts).text, plw_cell_quantity(d->exact_ohms, PLW_UNIT_OHM, 3).text);
+    fprintf(out, INDENT "the meter should then read %s (exact would be %s)\n", plw_cell_volts(d->expected_volts).text,
+            plw_cell_quantity(d->exact_ohms, PLW_UNIT_OHM, 3).text);
     meaning_lines(out, f);
 }
 
@@ -309,13 +311,13 @@ static void transformer_lines(FILE *out, const plw_supply_answer *a) {
     const char *each = halves ? " each half" : "";
     fprintf(out, "\nTRANSFORMER       %s at %s RMS%s, %s off load, %.3g VA\n", plw_cell_volts(t->rated_rms_volts).text,
             plw_cell_amps(t->rms_amps).text, each, plw_cell_volts(t->off_load_rms_volts).text, t->secondary_va);
-    fprintf(out, INDENT "gives %s at %s; %s of copper in the path, primary reflected\n", plw_cell_volts(t->volts).text,
+    fprintf(out, INDENT "gives %s at %s, with %s in the conducting path\n", plw_cell_volts(t->volts).text,
             plw_cell_amps(a->amps).text, plw_cell_ohms(t->path_ohms).text);
     fprintf(out, INDENT "nearest usual winding: %s%s, which gives %s\n", plw_cell_volts(t->usual_rms_volts).text, each,
             plw_cell_volts(t->usual_volts).text);
     if (!a->supply->has_parts) {
         fputs(INDENT "for silicon, full-wave, 47 \xC2\xB5"
-                     "F, 50 Hz; tell --rectifier and so on\n",
+                     "F, 50 Hz: none was told\n",
               out);
     }
 }

@@ -174,22 +174,21 @@ static void supply_lines(FILE *out, const plw_answer *a) {
     if (s == NULL || !s->supply->has_winding) {
         return;
     }
-    fprintf(out, "\nPLATE SUPPLY      %s in the conducting path; off load %s, at high mains %s\n",
-            plw_cell_ohms(s->supply->parts.path_ohms).text, plw_cell_volts(s->off_load_volts).text,
-            plw_cell_volts(s->off_load_high_volts).text);
+    fprintf(out, "\nPLATE SUPPLY      off load %s, at high mains %s; %s in the path\n",
+            plw_cell_volts(s->off_load_volts).text, plw_cell_volts(s->off_load_high_volts).text,
+            plw_cell_ohms(s->supply->parts.path_ohms).text);
     if (isfinite(s->volts_error)) {
-        fprintf(out, "                  loaded %s +/- %s by the readings\n", plw_cell_volts(s->volts).text,
+        fprintf(out, "                  loaded %s, +/- %s by the readings\n", plw_cell_volts(s->volts).text,
                 plw_cell_quantity(s->volts_error, PLW_UNIT_VOLT, 2).text);
     }
     if (!s->supply->reservoir_assumed) {
-        fprintf(out, "                  ripple %s peak to peak",
+        fprintf(out, "                  ripple %s peak to peak\n",
                 plw_cell_quantity(s->state.node[s->state.nodes - 1].ripple_peak_to_peak_volts, PLW_UNIT_VOLT, 2).text);
-        if (a->hum != NULL && isfinite(a->hum->speaker_rms_volts)) {
-            fprintf(out, "; hum at the speaker %s,",
-                    plw_cell_quantity(a->hum->speaker_rms_volts, PLW_UNIT_VOLT, 2).text);
-        }
-        if (a->hum != NULL) {
-            fprintf(out, " %.0f dB below full power", a->hum->decibels_below_full_power);
+    }
+    if (a->hum != NULL) {
+        fprintf(out, "                  hum %.0f dB below full power", a->hum->decibels_below_full_power);
+        if (isfinite(a->hum->speaker_rms_volts)) {
+            fprintf(out, ", %s at the speaker", plw_cell_quantity(a->hum->speaker_rms_volts, PLW_UNIT_VOLT, 2).text);
         }
         fputc('\n', out);
     }
