@@ -197,8 +197,12 @@ valgrind: all $(TESTS)
 	  QUICK=1 valgrind -q --leak-check=full --show-leak-kinds=definite,possible --errors-for-leak-kinds=definite,possible \
 	    --error-exitcode=9 $$test > $(B)/valgrind.log 2>&1 || { cat $(B)/valgrind.log; exit 1; }; done
 
-tidy:
-	clang-tidy --quiet $(LIBRARY_SOURCES) $(CLI_SOURCES) -- -std=c17 -D_POSIX_C_SOURCE=200809L -Iinclude -Isrc $(PACKAGE_CFLAGS)
+# One process a file: checked together, clang-tidy 14 takes a va_list for uninitialised from the second file on.
+tidy: $(patsubst %.c,$(B)/tidy/%.ok,$(LIBRARY_SOURCES) $(CLI_SOURCES))
+$(B)/tidy/%.ok: %.c $(wildcard include/platewright/*.h src/*/*.h) .clang-tidy
+	@mkdir -p $(@D)
+	$(call say,clang-tidy --quiet $< -- -std=c17 -D_POSIX_C_SOURCE=200809L -Iinclude -Isrc $(PACKAGE_CFLAGS) 2>/dev/null,tidy $<)
+	@touch $@
 
 cppcheck:
 	cppcheck --quiet --std=c11 --enable=warning,performance,portability --inline-suppr --error-exitcode=1 \

@@ -33,13 +33,19 @@ plw_status plw_fail_at(plw_error *error, plw_status fallback, const char *format
     }
     char before[PLW_ERROR_TEXT_SIZE];
     memcpy(before, error->text, sizeof before);
+    /* A place takes half the room at the most: what is wrong matters more. */
     va_list arguments;
     va_start(arguments, format);
-    const int written = vsnprintf(error->text, sizeof error->text, format, arguments);
+    vsnprintf(error->text, sizeof error->text / 2, format, arguments);
     va_end(arguments);
-    if (written >= 0 && (size_t)written + 2 < sizeof error->text) {
-        snprintf(error->text + written, sizeof error->text - (size_t)written, ": %s", before);
-    }
+    size_t used = strlen(error->text);
+    error->text[used++] = ':';
+    error->text[used++] = ' ';
+    const size_t room = sizeof error->text - used - 1;
+    const size_t length = strlen(before);
+    const size_t kept = length < room ? length : room;
+    memcpy(error->text + used, before, kept);
+    error->text[used + kept] = '\0';
     return error->status;
 }
 
