@@ -132,11 +132,21 @@ static plw_status read_tube(const cli_arguments *arguments, plw_tube **tube, plw
 
 /* ---- the fit ----------------------------------------------------------------------------------------------------- */
 
-/* Draw the connection that the tube is first of all used in. */
+/* The connection that most was given for. */
+static plw_connection connection_of(const plw_tube *tube) {
+    size_t as_triode = 0;
+    for (size_t i = 0; i < tube->rows_count; i++) {
+        as_triode += tube->rows[i].connection == PLW_CONNECTION_TRIODE ? 1U : 0U;
+    }
+    for (size_t i = 0; i < tube->points_count; i++) {
+        as_triode += tube->points[i].connection == PLW_CONNECTION_TRIODE ? 1U : 0U;
+    }
+    return 2 * as_triode > tube->rows_count + tube->points_count ? PLW_CONNECTION_TRIODE : PLW_CONNECTION_PENTODE;
+}
+
 static plw_status draw(const fit_work *work, plw_error *error) {
     char *script = NULL;
-    const plw_connection connection =
-        work->tube->model.law.kind == PLW_LAW_PENTODE ? PLW_CONNECTION_PENTODE : PLW_CONNECTION_TRIODE;
+    const plw_connection connection = connection_of(work->tube);
     plw_status status =
         plw_plot_family(work->tube, connection, work->drawing.format, work->drawing.inside, &script, error);
     if (status == PLW_OK) {

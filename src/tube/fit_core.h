@@ -11,6 +11,10 @@
 plw_status plw_fit_observations(const plw_observations *observations, const plw_law *near, plw_law *law,
                                 double *sum_of_squares, plw_error *error) PLW_MUST_USE;
 
+/* The observations but for those of one row or point.
+ * Out:  *rest */
+void plw_observations_without(const plw_observations *all, bool is_row, size_t index, plw_observations *rest);
+
 /* Determined coefficients that the data hardly tell apart, the closest first. */
 void plw_find_correlations(plw_fit *fit);
 

@@ -1,8 +1,10 @@
 /* Errors of a fitted law against the printed rows, and the region that the data cover.
  * SPDX-License-Identifier: GPL-3.0-or-later */
 #include <math.h>
+#include <stdint.h>
 #include <stdlib.h>
 
+#include "tube/fit_core.h"
 #include "tube/fit_prior.h"
 
 enum { ROWS_MOST = 200 };
@@ -48,6 +50,44 @@ static void note_row(const plw_law *law, const plw_row *row, error_list *list) {
     const double difference = total ? p.thd_percent - row->thd_percent : p.h2_percent - row->h2_percent;
     if (isfinite(difference) && list->distortions < ROWS_MOST) {
         list->distortion[list->distortions++] = fabs(difference);
+    }
+}
+
+static void note_point(const plw_law *law, const plw_point *point, error_list *list) {
+    plw_prediction p;
+    if (plw_predict_point(law, point, &p, NULL) == PLW_OK) {
+        note(p.plate_amps, point->plate_amps, list->plate, &list->plates);
+        note(p.screen_amps, point->screen_amps, list->screen, &list->screens);
+    }
+}
+
+static bool is_on_curve(const plw_point *point) {
+    return point->kind == PLW_POINT_CURVE && plw_point_is_fitted(point);
+}
+
+/* Where no row is printed, the points of the curves stand for the rows; a median of two would tell nothing. */
+static void note_curves(const plw_tube *tube, bool leave_out, const plw_law *law, error_list *fitted,
+                        error_list *left_out) {
+    enum { POINTS_LEAST = 3 };
+    size_t count = 0;
+    for (size_t index = 0; index < tube->points_count; index++) {
+        count += is_on_curve(&tube->points[index]) ? 1U : 0U;
+    }
+    plw_observations all;
+    plw_observations rest;
+    plw_observations_collect(tube, SIZE_MAX, false, &all);
+    for (size_t index = 0; index < tube->points_count && count >= POINTS_LEAST; index++) {
+        if (!is_on_curve(&tube->points[index])) {
+            continue;
+        }
+        note_point(law, &tube->points[index], fitted);
+        plw_law without;
+        double squares;
+        plw_observations_without(&all, false, index, &rest);
+        if (leave_out && left_out->plates < ROWS_MOST &&
+            plw_fit_observations(&rest, law, &without, &squares, NULL) == PLW_OK) {
+            note_point(&without, &tube->points[index], left_out);
+        }
     }
 }
 
@@ -108,6 +148,9 @@ void plw_fit_errors(const plw_tube *tube, bool leave_out, plw_model *model) {
         if (leave_out && plw_fit_without(tube, index, false, &model->law, &without, NULL) == PLW_OK) {
             note_row(&without, &tube->rows[index], &left_out);
         }
+    }
+    if (model->rows_fitted == 0) {
+        note_curves(tube, leave_out, &model->law, &fitted, &left_out);
     }
     model->fit_error = medians(&fitted);
     model->left_out_error = medians(&left_out);

@@ -46,14 +46,14 @@ static bool same_line(const plw_observation *one, const plw_observation *other) 
     return one->is_row == other->is_row && one->index == other->index;
 }
 
-/* Out:  *rest: the observations but for those of one row or point */
-static void leave_out(const plw_observations *all, const plw_observation *line, plw_observations *rest) {
+void plw_observations_without(const plw_observations *all, bool is_row, size_t index, plw_observations *rest) {
     rest->tube = all->tube;
     rest->screened = all->screened;
     rest->count = 0;
-    for (size_t index = 0; index < all->count; index++) {
-        if (!same_line(&all->observation[index], line)) {
-            rest->observation[rest->count++] = all->observation[index];
+    for (size_t i = 0; i < all->count; i++) {
+        const plw_observation *o = &all->observation[i];
+        if (o->is_row != is_row || o->index != index) {
+            rest->observation[rest->count++] = *o;
         }
     }
 }
@@ -102,7 +102,7 @@ static bool grossest(bench *b, const plw_law *law, double sum_of_squares, plw_fi
         }
         plw_law without;
         double squares;
-        leave_out(&b->left, line, &b->rest);
+        plw_observations_without(&b->left, line->is_row, line->index, &b->rest);
         if (!has_current(&b->rest) || plw_fit_observations(&b->rest, law, &without, &squares, NULL) != PLW_OK) {
             continue;
         }
@@ -132,7 +132,7 @@ void plw_find_outliers(const plw_observations *observations, plw_fit *fit) {
            plw_fit_observations(&b->left, &law, &law, &squares, NULL) == PLW_OK &&
            grossest(b, &law, squares, &fit->outlier[fit->outliers])) {
         const plw_fit_outlier *o = &fit->outlier[fit->outliers++];
-        leave_out(&b->left, &(plw_observation){.is_row = o->is_row, .index = o->index}, &b->rest);
+        plw_observations_without(&b->left, o->is_row, o->index, &b->rest);
         b->left = b->rest;
     }
     free(b);
