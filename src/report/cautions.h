@@ -31,6 +31,6 @@ void plw_caution_say(plw_caution_list *list, const char *format, ...) PLW_PRINTF
 void plw_cautions_standing(plw_caution_list *list);
 
 /* Of the plate supply: a rating of its parts exceeded, parts that were not told. */
-void plw_cautions_of_supply(plw_caution_list *list, const plw_supply_answer *supply);
+void plw_cautions_of_supply(plw_caution_list *list, const plw_supply_answer *answer);
 
 #endif

@@ -51,8 +51,8 @@ static picture compose(const plw_answer *answer) {
                  .rest_amps = rest->supply_amps};
     gather_readings(&p);
     double amps = AMPS_OF_REST * p.rest_amps;
-    double most = p.rest_volts;
-    double least = p.rest_volts;
+    double most = rest->supply_volts;
+    double least = most;
     for (size_t i = 0; i < p.readings; i++) {
         amps = fmax(amps, AMPS_OF_READING * p.reading[i].amps);
         most = fmax(most, p.reading[i].volts);

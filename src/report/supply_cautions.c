@@ -46,17 +46,19 @@ static void of_check(plw_caution_list *l, const plw_supply_check *check) {
     }
 }
 
-void plw_cautions_of_supply(plw_caution_list *l, const plw_supply_answer *a) {
-    for (size_t i = 0; i < a->checks_count; i++) {
-        of_check(l, &a->checks[i]);
+void plw_cautions_of_supply(plw_caution_list *list, const plw_supply_answer *answer) {
+    for (size_t i = 0; i < answer->checks_count; i++) {
+        of_check(list, &answer->checks[i]);
     }
-    if (a->supply->copper_assumed) {
-        plw_caution_say(l, "The copper of the winding is not told and taken as none: the loaded voltage will be lower. "
-                           "Read the output into a known resistor, or measure the winding.");
+    if (answer->supply->copper_assumed) {
+        plw_caution_say(list,
+                        "The copper of the winding is not told and taken as none: the loaded voltage will be lower. "
+                        "Read the output into a known resistor, or measure the winding.");
     }
-    if (a->supply->estimated && a->supply->estimate.none_found) {
-        plw_caution_say(l, "The readings leave no source resistance at all, which no winding has: read again, with one "
-                           "meter, at one mains voltage.");
+    if (answer->supply->estimated && answer->supply->estimate.none_found) {
+        plw_caution_say(list,
+                        "The readings leave no source resistance at all, which no winding has: read again, with one "
+                        "meter, at one mains voltage.");
     }
 }
 

@@ -18,7 +18,8 @@ plw_status plw_dummy_meanings(const plw_stage *stage, const plw_dummy_load *dumm
     }
     plw_status status = PLW_OK;
     for (int i = 0; i < PLW_DUMMY_MEANINGS && status == PLW_OK; i++) {
-        const double step = PLW_DUMMY_STEP_PERCENT / 100.0 * (i - PLW_DUMMY_MEANINGS / 2);
+        const int steps = i - PLW_DUMMY_MEANINGS / 2;
+        const double step = PLW_DUMMY_STEP_PERCENT / 100.0 * steps;
         plw_stage trial = *stage;
         trial.cathode_resistor_ohms = (double)NAN;
         meaning[i] = (plw_dummy_meaning){dummy->expected_volts * (1.0 + step), (double)NAN, (double)NAN};
