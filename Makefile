@@ -147,6 +147,7 @@ check-units: $(TESTS)
 
 check-cli: $(PROGRAM)
 	@B='$(B)' RUNNER='$(RUNNER)' LC_ALL=C.UTF-8 sh tests/cli/run
+	@B='$(B)' sh tests/cli/readme
 
 # ---- what is needed ------------------------------------------------------------------------------------------------
 DEBIAN_PACKAGES := gcc libc6-dev make pkg-config libxml2-dev libxml2-utils libgsl-dev libjansson-dev libcmocka-dev \
@@ -166,7 +167,8 @@ demo: all
 	$(PROGRAM) design $(DEMO_STAGE)
 	$(PROGRAM) plot $(DEMO_STAGE) --kind load-line --output plots/load-line.svg
 	$(PROGRAM) plot $(DEMO_STAGE) --kind transfer --output plots/transfer.svg
-	@echo 'drawn: plots/load-line.svg plots/transfer.svg'
+	$(PROGRAM) plot $(DEMO_STAGE) --kind supply --output plots/supply.svg
+	@echo 'drawn: plots/load-line.svg plots/transfer.svg plots/supply.svg'
 
 # ---- coefficients from the printed rows ----------------------------------------------------------------------------
 TUBES := $(sort $(wildcard tubedata/*.xml))
