@@ -246,9 +246,10 @@ static void specimen_lines(FILE *out, const plw_answer *a) {
         return;
     }
     fputs("\nTHIS TUBE, BY THE METER\n", out);
-    fprintf(out, "  current            cathode %s", plw_cell_amps(s->cathode_amps).text);
+    fprintf(out, "  current            cathode %s: %s", plw_cell_volts(s->cathode_volts).text,
+            plw_cell_amps(s->cathode_amps).text);
     if (isfinite(s->screen_volts)) {
-        fprintf(out, "; by the model's share plate %s, screen %s", plw_cell_amps(s->plate_amps).text,
+        fprintf(out, "; plate %s, screen %s (model's share)", plw_cell_amps(s->plate_amps).text,
                 plw_cell_amps(s->screen_amps).text);
     }
     fprintf(out, "\n  heat               plate %s", plw_cell_watts(s->plate_watts).text);
