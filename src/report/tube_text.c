@@ -304,10 +304,24 @@ static void put_rows(FILE *out, const plw_tube *tube, source_list *sources) {
     }
 }
 
+/* What is known of the errors; a tube without a screen says nothing of screen current. */
 static void put_errors(FILE *out, const char *name, const plw_model_errors *errors) {
-    fprintf(out, "  %-9s plate current %s %%, screen current %s %%, power %s %%, distortion %s points\n", name,
-            number(errors->plate_current_percent, 1).text, number(errors->screen_current_percent, 1).text,
-            number(errors->power_percent, 1).text, number(errors->distortion_points, 1).text);
+    const struct {
+        const char *figure, *unit;
+        double value;
+    } known[] = {{"plate current", "%", errors->plate_current_percent},
+                 {"screen", "%", errors->screen_current_percent},
+                 {"power", "%", errors->power_percent},
+                 {"distortion", "points", errors->distortion_points}};
+    const char *between = "";
+    fprintf(out, "  %-9s ", name);
+    for (size_t i = 0; i < sizeof known / sizeof known[0]; i++) {
+        if (isfinite(known[i].value)) {
+            fprintf(out, "%s%s %s %s", between, known[i].figure, number(known[i].value, 1).text, known[i].unit);
+            between = ", ";
+        }
+    }
+    fprintf(out, "%s\n", between[0] == '\0' ? "-" : "");
 }
 
 void plw_put_model(FILE *out, const plw_tube *tube) {
