@@ -273,9 +273,12 @@ static plw_status search(const plw_least_squares *problem, const double *starts,
     }
     const size_t n = problem->n;
     const size_t p = problem->p;
-    bridge b = {problem, scratch, scratch + p};
+    bridge b = {.problem = problem};
+    factors f = {.n = n, .p = p};
+    b.place = scratch;
+    b.residual = b.place + p;
     double *found_covariance = b.residual + n;
-    factors f = {.n = n, .p = p, .triangle = found_covariance + p * p};
+    f.triangle = found_covariance + p * p;
     f.length = f.triangle + p * p;
     f.perpendicular = f.length + p;
     bool found = false;

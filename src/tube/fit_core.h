@@ -19,7 +19,7 @@ void plw_observations_without(const plw_observations *all, bool is_row, size_t i
 void plw_find_correlations(plw_fit *fit);
 
 /* Figures that cannot both be true. */
-void plw_find_contradictions(const plw_observations *observations, plw_fit *fit);
+void plw_find_contradictions(const plw_observations *all, plw_fit *fit);
 
 /* Rows and points that the others speak against, by fitting without each. */
 void plw_find_outliers(const plw_observations *observations, plw_fit *fit);

@@ -40,7 +40,7 @@ typedef struct {
 
 /* Collect what is fitted of a tube, without one row (SIZE_MAX: none) and, if wanted, without triode-connected data. */
 void plw_observations_collect(const plw_tube *tube, size_t without_row, bool without_triode_connection,
-                              plw_observations *observations);
+                              plw_observations *all);
 
 /* The figure of a prediction that an observation is of. */
 double plw_prediction_figure(const plw_prediction *prediction, plw_seen what);
@@ -49,10 +49,10 @@ const char *plw_seen_name(plw_seen what);
 
 /* Difference of predicted and printed over the standard deviation; a prediction that does not exist counts as far off.
  */
-double plw_observation_residual(const plw_observation *observation, double predicted);
+double plw_observation_residual(const plw_observation *o, double predicted);
 
 /* Predict everything at a law.
- * Out:  predicted[observations->count] */
-void plw_observations_predict(const plw_observations *observations, const plw_law *law, double *predicted);
+ * Out:  predicted[all->count] */
+void plw_observations_predict(const plw_observations *all, const plw_law *law, double *predicted);
 
 #endif

@@ -147,33 +147,41 @@ typedef union {
     double figure[FIGURES];
 } prediction_figures;
 
+/* Slope of each figure along one coordinate, by differences to both sides. */
+static plw_status slope_along(const plw_law *law, const plw_row *row, size_t index, prediction_figures *slope,
+                              plw_error *error) {
+    const double step = 1e-3; /* of a coordinate: far above the solver's noise */
+    prediction_figures sides[2];
+    for (int side = 0; side < 2; side++) {
+        double coordinates[PLW_LAW_COEFFICIENTS_MOST];
+        plw_law_coordinates(law, coordinates);
+        coordinates[index] += side == 0 ? -step : step;
+        const plw_law moved = plw_law_at_coordinates(law->kind, coordinates);
+        const plw_status status = plw_predict_row(&moved, row, &sides[side].named, error);
+        if (status != PLW_OK) {
+            return status;
+        }
+    }
+    for (size_t figure = 0; figure < FIGURES; figure++) {
+        slope->figure[figure] = (sides[1].figure[figure] - sides[0].figure[figure]) / (2.0 * step);
+    }
+    return PLW_OK;
+}
+
 plw_status plw_fit_predict_row(const plw_fit *fit, const plw_row *row, plw_prediction *prediction,
                                plw_prediction *deviation, plw_error *error) {
     const plw_law *law = &fit->model.law;
     const size_t count = plw_law_coefficient_count(law->kind);
-    const double step = 1e-3; /* of a coordinate: far above the solver's noise */
     prediction_figures middle;
+    prediction_figures spread;
     prediction_figures slope[PLW_LAW_COEFFICIENTS_MOST];
-    double coordinates[PLW_LAW_COEFFICIENTS_MOST];
-    plw_law_coordinates(law, coordinates);
     plw_status status = plw_predict_row(law, row, &middle.named, error);
     for (size_t index = 0; index < count && status == PLW_OK; index++) {
-        prediction_figures sides[2];
-        const double here = coordinates[index];
-        for (int side = 0; side < 2 && status == PLW_OK; side++) {
-            coordinates[index] = here + (side == 0 ? -step : step);
-            const plw_law moved = plw_law_at_coordinates(law->kind, coordinates);
-            status = plw_predict_row(&moved, row, &sides[side].named, error);
-        }
-        coordinates[index] = here;
-        for (size_t figure = 0; figure < FIGURES && status == PLW_OK; figure++) {
-            slope[index].figure[figure] = (sides[1].figure[figure] - sides[0].figure[figure]) / (2.0 * step);
-        }
+        status = slope_along(law, row, index, &slope[index], error);
     }
     if (status != PLW_OK) {
         return status;
     }
-    prediction_figures spread;
     for (size_t figure = 0; figure < FIGURES; figure++) {
         double variance = 0.0;
         for (size_t one = 0; one < count; one++) {
@@ -182,10 +190,7 @@ plw_status plw_fit_predict_row(const plw_fit *fit, const plw_row *row, plw_predi
                     slope[one].figure[figure] * fit->covariance[one * count + other] * slope[other].figure[figure];
             }
         }
-        spread.figure[figure] = sqrt(fmax(variance, 0.0));
-        if (isnan(middle.figure[figure])) {
-            spread.figure[figure] = (double)NAN;
-        }
+        spread.figure[figure] = isnan(middle.figure[figure]) ? (double)NAN : sqrt(fmax(variance, 0.0));
     }
     *prediction = middle.named;
     *deviation = spread.named;
