@@ -52,7 +52,6 @@ typedef struct {
     size_t meanings;
     plw_dummy_meaning meaning[PLW_DUMMY_MEANINGS];
     const plw_hum *hum;
-    const plw_mains *mains;
 } plw_supply_finding;
 
 PLW_API plw_status plw_report_supply_text(const plw_supply_finding *finding, char **text,

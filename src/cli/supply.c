@@ -14,6 +14,8 @@
 /* The line reaches this far beyond the current asked about. */
 #define LINE_BEYOND 3.0
 
+enum { PLACE_SIZE = 512 };
+
 /* A quantity of an option, left as it is when the option is not given. */
 static plw_status take(const cli_arguments *arguments, const char *name, plw_unit unit, double least, double most,
                        double *value, plw_error *error) {
@@ -87,16 +89,45 @@ static plw_status solve_stage(cli_work *work, findings *f, plw_error *error) {
     return plw_bias_option_solve(&work->stage, work->stage.cathode_resistor_ohms, &f->option, error);
 }
 
-static plw_status build_alone(cli_work *work, const plw_supply_question *question, plw_error *error) {
+/* Is more described than the supply? */
+static bool has_stage(const cli_work *work) {
+    static const char *const names[] = {"tube", "load", "ratio", "speaker", "cathode-resistor", "fixed-bias"};
+    for (size_t i = 0; i < sizeof names / sizeof names[0]; i++) {
+        if (plw_stage_described(work->description, names[i], NULL, 0) != NULL) {
+            return true;
+        }
+    }
+    return false;
+}
+
+static plw_status build_alone(cli_work *work, plw_supply_question *question, plw_error *error) {
     if (isnan(question->amps)) {
         return plw_fail(error, PLW_E_USAGE,
                         "--current: is missing; give what is drawn, e.g. 45mA, or describe the stage by --tube, --load "
                         "and the rest");
     }
+    char place[PLACE_SIZE];
+    const char *other = plw_stage_described(work->description, "other-current", place, sizeof place);
+    if (other != NULL) {
+        return plw_fail(error, PLW_E_USAGE, "%s: without a stage all that is drawn stands in --current; add it there",
+                        place);
+    }
     const plw_status status = cli_open_catalogue(cli_argument(work->arguments, "tubes"), &work->catalogue, error);
     return status == PLW_OK ? plw_plate_supply_build(work->description, work->catalogue, LINE_BEYOND * question->amps,
                                                      &work->supply, error)
                             : status;
+}
+
+/* Current of the heater winding: of the output tubes, and of a rectifier tube of the same voltage, which mostly hangs
+ * on it.  Common practice, no source. */
+static double heater_amps(const cli_work *work) {
+    const plw_tube *tube = work->stage.tube;
+    const plw_tube *rectifier = work->supply.rectifier_tube;
+    double amps = tube->heater_amps * (double)work->stage.parallel;
+    if (rectifier != NULL && fabs(rectifier->heater_volts - tube->heater_volts) < 0.02 * tube->heater_volts) {
+        amps += rectifier->heater_amps;
+    }
+    return amps;
 }
 
 /* What needs the stage: readings across the dummy load, hum. */
@@ -130,20 +161,20 @@ static plw_status put(const cli_work *work, const plw_supply_finding *finding, p
 static plw_status supply(cli_work *work, findings *f, plw_error *error) {
     plw_supply_question question;
     plw_status status = read_question(work->arguments, &question, error);
-    const bool has_stage = plw_stage_described(work->description, "tube", NULL, 0) != NULL;
-    if (status == PLW_OK && has_stage && !isnan(question.amps)) {
+    const bool staged = has_stage(work);
+    if (status == PLW_OK && staged && !isnan(question.amps)) {
         return plw_fail(error, PLW_E_USAGE,
                         "--current: the stage draws its own current; leave this out, or leave the tube out");
     }
     if (status == PLW_OK) {
-        status = has_stage ? solve_stage(work, f, error) : build_alone(work, &question, error);
+        status = staged ? solve_stage(work, f, error) : build_alone(work, &question, error);
     }
     if (status != PLW_OK) {
         return status;
     }
-    if (has_stage) {
+    if (staged) {
         question.amps = f->option.quiescent.supply_amps;
-        question.ratings.heater_amps = work->stage.tube->heater_amps * (double)work->stage.parallel;
+        question.ratings.heater_amps = heater_amps(work);
     }
     question.series = work->series;
     if (isnan(question.regulation_percent) && work->supply.line.kind == PLW_SUPPLY_STIFF) {
@@ -154,7 +185,7 @@ static plw_status supply(cli_work *work, findings *f, plw_error *error) {
         return status;
     }
     f->finding.supply = &f->supply;
-    if (has_stage) {
+    if (staged) {
         complete(work, f);
     }
     status = cli_work_save(work, error);

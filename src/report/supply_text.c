@@ -88,6 +88,9 @@ static void source_lines(FILE *out, const plw_supply_answer *a) {
     } else if (a->supply->has_winding) {
         fprintf(out, "SOURCE            %s in the conducting path%s\n", plw_cell_ohms(a->supply->parts.path_ohms).text,
                 a->supply->copper_assumed ? ": none is told" : ", as told");
+    } else if (a->supply->line.kind == PLW_SUPPLY_READINGS && a->supply->line.points > 1) {
+        fprintf(out, "SOURCE            %s between the readings about this current\n",
+                plw_cell_ohms(a->source_ohms).text);
     } else {
         return;
     }
@@ -146,6 +149,9 @@ void plw_put_supply_ratings(FILE *out, const plw_supply_answer *a) {
         plw_put_right(out, plw_cell_quantity(check->limit, check->unit, 3).text, 9);
         fprintf(out, "%s%s\n", check->at_least ? " or more" : "",
                 check->when == PLW_SUPPLY_OFF_LOAD_HIGH ? " (off load)" : "");
+    }
+    if (!a->has_state) {
+        return;
     }
     fprintf(out, "  %s\n",
             a->supply->rectifier_tube != NULL ? a->supply->rectifier_tube->rectifier.provenance.source

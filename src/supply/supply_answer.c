@@ -162,12 +162,37 @@ static plw_supply_ratings ratings_for(const plw_plate_supply *supply, const plw_
     return all;
 }
 
+/* One rating more, kept or not. */
+static void add_check(plw_supply_answer *a, const char *name, double value, double limit, plw_unit unit,
+                      plw_supply_when when) {
+    if (isnan(value) || isnan(limit) || a->checks_count >= PLW_SUPPLY_CHECKS_MOST) {
+        return;
+    }
+    const bool ok = value <= limit;
+    a->checks[a->checks_count++] = (plw_supply_check){.name = name,
+                                                      .node = -1,
+                                                      .value = value,
+                                                      .limit = limit,
+                                                      .unit = unit,
+                                                      .share_percent = 100 * value / limit,
+                                                      .ok = ok,
+                                                      .when = when};
+    a->within_ratings = a->within_ratings && ok;
+}
+
 static void fill_checks(const plw_plate_supply *supply, const plw_supply_question *question, plw_supply_answer *a) {
     a->within_ratings = true;
     if (a->has_state) {
         const plw_supply_ratings ratings = ratings_for(supply, question);
         a->within_ratings = plw_supply_limits_check(&supply->parts, &a->state, &ratings, a->checks, &a->checks_count);
+        return;
     }
+    /* What can be judged without the parts. */
+    const plw_supply_ratings *ratings = &question->ratings;
+    add_check(a, "capacitor voltage, cold tubes", a->off_load_high_volts, ratings->capacitor_volts[0], PLW_UNIT_VOLT,
+              PLW_SUPPLY_OFF_LOAD_HIGH);
+    add_check(a, "heater winding current", ratings->heater_amps, ratings->heater_winding_amps, PLW_UNIT_AMPERE,
+              PLW_SUPPLY_AT_LOAD);
 }
 
 static plw_status fill_transformer(const plw_plate_supply *supply, const plw_supply_question *question,

@@ -52,12 +52,8 @@ static void find(found *f) {
     f->s.answer.supply = &f->supply;
     f->s.answer.mains = &f->mains;
     f->s.answer.hum = &f->hum;
-    f->finding = (plw_supply_finding){.supply = &f->supply,
-                                      .stage = &f->s.stage,
-                                      .option = option,
-                                      .choice = &f->s.choice,
-                                      .hum = &f->hum,
-                                      .mains = &f->mains};
+    f->finding = (plw_supply_finding){
+        .supply = &f->supply, .stage = &f->s.stage, .option = option, .choice = &f->s.choice, .hum = &f->hum};
     assert_int_equal(
         plw_dummy_meanings(&f->s.stage, &f->supply.dummy, f->s.choice.aim, PLW_E24, f->finding.meaning, &error),
         PLW_OK);
