@@ -7,7 +7,7 @@
 
 #include "cli/arguments.h"
 
-enum { CLI_EXAMPLES_MOST = 3 };
+enum { CLI_EXAMPLES_MOST = 4 };
 
 /* Exit status. */
 enum { CLI_DONE = 0, CLI_NOT_REACHED = 1, CLI_BAD_INPUT = 2, CLI_BAD_FILE = 3 };

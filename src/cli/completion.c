@@ -12,13 +12,24 @@ static void put_words(FILE *out, unsigned commands) {
     }
 }
 
-/* What may follow an option; the first option of a name speaks for all. */
+/* An option of the same name may mean another thing to another command: "plot:--kind|fit:--kind". */
+static void put_pattern(FILE *out, const cli_option *option) {
+    const char *joint = "    ";
+    for (size_t i = 0; cli_command_at(i) != NULL; i++) {
+        if ((option->commands & cli_command_at(i)->bit) != 0) {
+            fprintf(out, "%s%s:--%s", joint, cli_command_at(i)->name, option->name);
+            joint = "|";
+        }
+    }
+    fputc(')', out);
+}
+
+/* What may follow an option. */
 static void put_values(FILE *out, const cli_option *option) {
-    if (option->value == CLI_VALUE_NONE || option->value == CLI_VALUE_SWITCH ||
-        cli_option_find(option->name, CLI_EVERY) != option) {
+    if (option->value == CLI_VALUE_NONE || option->value == CLI_VALUE_SWITCH) {
         return;
     }
-    fprintf(out, "    --%s)", option->name);
+    put_pattern(out, option);
     if (option->choices != NULL) {
         fputs(" COMPREPLY=($(compgen -W '", out);
         for (size_t i = 0; option->choices[i] != NULL; i++) {
@@ -47,7 +58,7 @@ void cli_completion(FILE *out) {
         fprintf(out, "%s%s", i == 0 ? "" : " ", cli_command_at(i)->name);
     }
     put_words(out, CLI_OVERALL);
-    fputs("' -- \"$word\")); return\n  fi\n  case $before in\n", out);
+    fputs("' -- \"$word\")); return\n  fi\n  case ${COMP_WORDS[1]}:$before in\n", out);
     for (size_t i = 0; cli_option_at(i) != NULL; i++) {
         put_values(out, cli_option_at(i));
     }

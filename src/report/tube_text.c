@@ -86,51 +86,6 @@ static void paragraph(FILE *out, const char *first_indent, const char *indent, c
     fputc('\n', out);
 }
 
-/* ---- the list ---------------------------------------------------------------------------------------------------- */
-
-/* Equivalents, then variants. */
-static void other_names(const plw_tube *tube, char line[LINE]) {
-    line[0] = '\0';
-    for (size_t i = 0; i < tube->equivalents_count + tube->variants_count; i++) {
-        append(line, i == 0 ? "" : ", ");
-        append(line,
-               i < tube->equivalents_count ? tube->equivalents[i] : tube->variants[i - tube->equivalents_count].type);
-    }
-}
-
-static void put_tube_line(FILE *out, const plw_tube *tube) {
-    const plw_ratings *ratings = tube->ratings_count > 0 ? &tube->ratings[0] : NULL;
-    const double unknown = (double)NAN;
-    char names[LINE];
-    other_names(tube, names);
-    fprintf(out, "%-9s %-9s %-15s", tube->type, plw_tube_kind_name(tube->kind), tube->base);
-    right(out, short_number(ratings == NULL ? unknown : ratings->plate_watts).text, 7);
-    right(out, short_number(ratings == NULL ? unknown : ratings->screen_watts).text, 8);
-    right(out, short_number(tube->heater_volts).text, 8);
-    right(out, short_number(tube->heater_amps).text, 8);
-    right(out, number(tube->has_model ? tube->model.fit_error.plate_current_percent : unknown, 1).text, 7);
-    right(out, number(tube->has_model ? tube->model.left_out_error.plate_current_percent : unknown, 1).text, 7);
-    fprintf(out, "%s%s\n", names[0] == '\0' ? "" : "  ", names);
-}
-
-plw_status plw_tubes_text(const plw_tube *const *tubes, size_t count, char **text, plw_error *error) {
-    plw_text_buffer buffer;
-    const plw_status status = plw_text_begin(&buffer, error);
-    if (status != PLW_OK) {
-        return status;
-    }
-    fputs("                                      plate  screen  heater  heater  model   left\n"
-          "type      kind      base                 W       W       V       A  err %  out %  other names\n",
-          buffer.file);
-    for (size_t i = 0; i < count; i++) {
-        put_tube_line(buffer.file, tubes[i]);
-    }
-    fputs("\nmodel err: median error of the model's plate current against the published rows;\n"
-          "left out: the same for rows that the fit was not shown. '-': not known.\n",
-          buffer.file);
-    return plw_text_end(&buffer, PLW_OK, text, error);
-}
-
 /* ---- sources ----------------------------------------------------------------------------------------------------- */
 
 /* The sources met so far, numbered in order. */
@@ -179,6 +134,16 @@ static void put_sources(FILE *out, const source_list *sources) {
 }
 
 /* ---- one tube ---------------------------------------------------------------------------------------------------- */
+
+/* Equivalents, then variants. */
+static void other_names(const plw_tube *tube, char line[LINE]) {
+    line[0] = '\0';
+    for (size_t i = 0; i < tube->equivalents_count + tube->variants_count; i++) {
+        append(line, i == 0 ? "" : ", ");
+        append(line,
+               i < tube->equivalents_count ? tube->equivalents[i] : tube->variants[i - tube->equivalents_count].type);
+    }
+}
 
 static void put_heading(FILE *out, const plw_tube *tube, source_list *sources) {
     char names[LINE];
