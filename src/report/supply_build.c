@@ -293,8 +293,15 @@ static void settle_parts(plw_builder *work, double most_amps, plw_plate_supply *
         supply->copper_assumed = plw_builder_entry(work, "winding-ohms") == NULL;
         supply->has_winding = true;
     }
-    if (plw_plate_supply_settle(supply, most_amps, &error) != PLW_OK) {
+    const plw_status status = plw_plate_supply_settle(supply, most_amps, &error);
+    if (status == PLW_E_USAGE) {
         fault_reading(work, error.text);
+    } else if (status != PLW_OK) {
+        /* Not a slip of the pen: this supply cannot do it, or memory is short. */
+        const plw_stage_entry *winding = plw_builder_entry(work, "winding");
+        const char *text = strncmp(error.text, "supply: ", 8) == 0 ? error.text + 8 : error.text;
+        plw_builder_fault(work, winding != NULL ? winding : reading_entry(work, PLW_READINGS_MOST), text);
+        work->faults.status = status;
     }
 }
 

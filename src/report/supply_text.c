@@ -269,8 +269,8 @@ static void bench_lines(FILE *out, const plw_supply_finding *f) {
                       "Unplug. Let the capacitors discharge and verify with the meter, at each of them, that "
                       "less than 60 V is left.");
     plw_put_paragraph(out, "  2. ",
-                      "Take the output tube out, so that nothing but the dummy load draws. A rectifier tube "
-                      "stays.");
+                      "Take out every tube that this supply feeds, so that nothing but the dummy load draws; a "
+                      "rectifier tube stays.");
     snprintf(step, sizeof step,
              "Clip %s across the output of the supply, and the meter, set for at least %s DC, across it; black lead on "
              "the chassis. No hand holds a probe.",

@@ -89,13 +89,15 @@ static void spare_the_xml_library(void) {
 #endif
 
 static const char stage_text[] = "<stage>\n  <note text=\"quay\"/>\n  <tube value=\"MQ6GT\"/>\n"
-                                 "  <reading value=\"290V\"/>\n  <reading value=\"250V@60mA\"/>\n"
+                                 "  <winding value=\"235V\"/>\n  <rectifier value=\"full-wave\"/>\n"
+                                 "  <winding-ohms value=\"190\"/>\n  <reservoir value=\"47uF\"/>\n"
                                  "  <load value=\"5k\"/>\n</stage>\n";
 
 typedef struct {
     const char *folder;
     plw_catalogue *catalogue;
     plw_stage_description *description;
+    plw_plate_supply supply;
     char *text;
     const char *path;
 } job;
@@ -109,7 +111,8 @@ static plw_status read_and_build(job *work, plw_stage *stage, plw_error *error) 
     if (status == PLW_OK) {
         status = plw_catalogue_open(&work->folder, 1, &work->catalogue, error);
     }
-    return status == PLW_OK ? plw_stage_build(work->description, work->catalogue, stage, error) : status;
+    return status == PLW_OK ? plw_stage_build_supplied(work->description, work->catalogue, stage, &work->supply, error)
+                            : status;
 }
 
 static plw_status choose_and_report(job *work, const plw_stage *stage, plw_error *error) {
@@ -122,8 +125,13 @@ static plw_status choose_and_report(job *work, const plw_stage *stage, plw_error
     plw_stage solved = *stage;
     const plw_bias_option *option = &choice.option[choice.chosen];
     solved.cathode_resistor_ohms = option->ohms;
-    const plw_answer answer = {.stage = &solved, .choice = &choice, .option = option, .series = PLW_E24};
-    for (int kind = 0; kind < 5 && status == PLW_OK; kind++) {
+    plw_supply_answer supply;
+    const plw_supply_question question = plw_supply_question_usual(option->quiescent.supply_amps);
+    status = plw_plate_supply_ask(&work->supply, &question, &supply, error);
+    const plw_answer answer = {
+        .stage = &solved, .choice = &choice, .option = option, .supply = &supply, .series = PLW_E24};
+    const plw_supply_finding finding = {.supply = &supply, .stage = &solved, .option = option, .choice = &choice};
+    for (int kind = 0; kind < 7 && status == PLW_OK; kind++) {
         plw_text_free(work->text);
         work->text = NULL;
         switch (kind) {
@@ -138,6 +146,12 @@ static plw_status choose_and_report(job *work, const plw_stage *stage, plw_error
             break;
         case 3:
             status = plw_plot_script(&answer, PLW_PLOT_LOAD_LINE, PLW_PLOT_SVG, "a.svg", &work->text, error);
+            break;
+        case 4:
+            status = plw_report_supply_text(&finding, &work->text, error);
+            break;
+        case 5:
+            status = plw_report_supply_json(&finding, &work->text, error);
             break;
         default:
             status = plw_stage_file_text(work->description, &work->text, error);
