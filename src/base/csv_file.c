@@ -287,7 +287,8 @@ plw_status plw_csv_read_memory(const char *name, const char *text, size_t size, 
 plw_status plw_csv_read_file(const char *path, size_t size_most, size_t lines_most, plw_csv *csv, plw_error *error) {
     FILE *file = fopen(path, "rb");
     if (file == NULL) {
-        return plw_fail(error, PLW_E_FILE, "%s: cannot be read: %s", path, strerror(errno));
+        return plw_fail(error, errno == ENOMEM ? PLW_E_NO_MEMORY : PLW_E_FILE, "%s: cannot be read: %s", path,
+                        strerror(errno));
     }
     plw_status status = PLW_OK;
     char *text = malloc(size_most + 1);
