@@ -80,7 +80,7 @@ $(B)/src/%.o: src/%.c
 	@mkdir -p $(@D)
 	$(call say,$(CC) $(ALL_CFLAGS) $(PACKAGE_CFLAGS) -c $< -o $@,cc $<)
 
-.SECONDARY: $(SCHEMAS:tubedata/%.xsd=$(B)/generated/schema_%.c)
+.SECONDARY:
 # A schema becomes a constant string in the library, so that the program works wherever it is copied.
 $(B)/generated/schema_%.c: tubedata/%.xsd
 	@mkdir -p $(@D)
