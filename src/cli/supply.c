@@ -38,24 +38,29 @@ static plw_status take(const cli_arguments *arguments, const char *name, plw_uni
 
 static plw_status read_question(const cli_arguments *arguments, plw_supply_question *question, plw_error *error) {
     double capacitor_volts = (double)NAN;
+    double capacitor_amps = (double)NAN;
     *question = plw_supply_question_usual((double)NAN);
-    plw_status status = take(arguments, "current", PLW_UNIT_AMPERE, 1e-5, 10.0, &question->amps, error);
-    if (status == PLW_OK) {
-        status = take(arguments, "regulation", PLW_UNIT_PERCENT, 0.5, 100.0, &question->regulation_percent, error);
-    }
-    if (status == PLW_OK) {
-        status = take(arguments, "capacitor-volts", PLW_UNIT_VOLT, 1.0, 10000.0, &capacitor_volts, error);
-    }
-    if (status == PLW_OK) {
-        status =
-            take(arguments, "winding-amps", PLW_UNIT_AMPERE, 1e-3, 10.0, &question->ratings.winding_rms_amps, error);
-    }
-    if (status == PLW_OK) {
-        status = take(arguments, "heater-winding", PLW_UNIT_AMPERE, 0.01, 100.0, &question->ratings.heater_winding_amps,
-                      error);
+    const struct {
+        const char *name;
+        plw_unit unit;
+        double least, most;
+        double *value;
+    } quantities[] = {
+        {"current", PLW_UNIT_AMPERE, 1e-5, 10.0, &question->amps},
+        {"regulation", PLW_UNIT_PERCENT, 0.5, 100.0, &question->regulation_percent},
+        {"capacitor-volts", PLW_UNIT_VOLT, 1.0, 10000.0, &capacitor_volts},
+        {"capacitor-amps", PLW_UNIT_AMPERE, 1e-4, 100.0, &capacitor_amps},
+        {"winding-amps", PLW_UNIT_AMPERE, 1e-3, 10.0, &question->ratings.winding_rms_amps},
+        {"heater-winding", PLW_UNIT_AMPERE, 0.01, 100.0, &question->ratings.heater_winding_amps},
+    };
+    plw_status status = PLW_OK;
+    for (size_t i = 0; i < sizeof quantities / sizeof quantities[0] && status == PLW_OK; i++) {
+        status = take(arguments, quantities[i].name, quantities[i].unit, quantities[i].least, quantities[i].most,
+                      quantities[i].value, error);
     }
     for (size_t k = 0; k < PLW_NODES_MOST; k++) {
         question->ratings.capacitor_volts[k] = capacitor_volts;
+        question->ratings.ripple_amps[k] = capacitor_amps;
     }
     return status;
 }

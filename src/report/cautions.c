@@ -82,23 +82,35 @@ static void of_ratings(plw_caution_list *l, const plw_bias_option *option) {
     }
 }
 
+static bool broken_at_rest(const plw_bias_option *option, const char *name) {
+    for (size_t i = 0; i < option->ratings_count; i++) {
+        if (!option->ratings[i].ok && option->ratings[i].when == PLW_AT_IDLE &&
+            strcmp(option->ratings[i].name, name) == 0) {
+            return true;
+        }
+    }
+    return false;
+}
+
 /* Where the rating system leaves the mains to the builder, each rating broken there that is kept at nominal mains. */
 static void of_mains(plw_caution_list *l, const plw_answer *answer) {
     const plw_mains *mains = answer->mains;
-    if (mains == NULL || !mains->counted || !mains->high.solved || !answer->option->within_ratings) {
+    if (mains == NULL || !mains->counted || !mains->high.solved) {
         return;
     }
     for (size_t i = 0; i < mains->high.ratings_count; i++) {
         const plw_rating_check *check = &mains->high.ratings[i];
-        if (!check->ok) {
+        if (!check->ok && !broken_at_rest(answer->option, check->name)) {
             char value[TEXT_SIZE];
             char limit[TEXT_SIZE];
             plw_caution_say(l,
                             "With the mains 10 %% up the %s is %s, the limit %s (%.0f %%): a %s rating must hold there "
-                            "too. A higher resistor or a lower aim cures it.",
+                            "too. %s",
                             check->name, written(check->value, check->unit, value),
                             written(check->limit, check->unit, limit), check->share_percent,
-                            plw_rating_system_name(mains->system));
+                            plw_rating_system_name(mains->system),
+                            check->unit == PLW_UNIT_VOLT ? "A lower supply cures it."
+                                                         : "A higher resistor or a lower aim cures it.");
         }
     }
 }

@@ -14,10 +14,13 @@ static const char *written(double value, plw_unit unit, char text[TEXT_SIZE]) {
 }
 
 const char *plw_supply_check_name(const plw_supply_check *check, char *buffer, size_t size) {
+    static const char lead[] = "capacitor";
     if (check->node < 0) {
         snprintf(buffer, size, "%s", check->name);
+    } else if (strncmp(check->name, lead, sizeof lead - 1) == 0) {
+        snprintf(buffer, size, "%s %d%s", lead, check->node + 1, check->name + sizeof lead - 1);
     } else {
-        snprintf(buffer, size, "%s, capacitor %d", check->name, check->node + 1);
+        snprintf(buffer, size, "%s, node %d", check->name, check->node + 1);
     }
     return buffer;
 }

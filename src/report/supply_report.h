@@ -16,7 +16,7 @@ void plw_json_append_supply_ratings(json_t *ratings, const plw_supply_answer *an
 void plw_put_supply_ratings(FILE *out, const plw_supply_answer *answer);
 void plw_put_mains(FILE *out, const plw_mains *mains, const plw_quiescent *rest);
 
-/* "bleeder voltage, node 2": what a check is of; cut if too small. */
+/* "capacitor 2 ripple current": what a check is of; cut if too small. */
 const char *plw_supply_check_name(const plw_supply_check *check, char *buffer, size_t size);
 
 #endif
