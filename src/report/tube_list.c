@@ -10,21 +10,21 @@
 #include "report/layout.h"
 #include "report/text_buffer.h"
 
-enum { WORDS_SIZE = 1024, HEAD_SIZE = 256 };
+enum { WORDS_SIZE = 1024, HEAD_SIZE = 256, NUMBER_SIZE = 32 };
 
 /* ---- the list ---------------------------------------------------------------------------------------------------- */
 
 /* A plain number without needless zeros, "-" when it is not known. */
 static void put_number(FILE *out, double value, int digits, int width) {
-    plw_text_buffer buffer;
-    char *text = NULL;
-    if (plw_text_begin(&buffer, NULL) == PLW_OK) {
-        plw_text_number(buffer.file, value, digits, "-");
-        if (plw_text_end(&buffer, PLW_OK, &text, NULL) == PLW_OK) {
-            plw_put_right(out, text, width);
+    char text[NUMBER_SIZE] = "-";
+    if (isfinite(value)) {
+        snprintf(text, sizeof text, "%.*g", digits, value);
+        char *comma = strchr(text, ','); /* of some locales */
+        if (comma != NULL) {
+            *comma = '.';
         }
-        plw_text_free(text);
     }
+    plw_put_right(out, text, width);
 }
 
 static void put_percent(FILE *out, double value) {
@@ -87,6 +87,7 @@ typedef struct {
     size_t size;
 } words;
 
+static void say(const words *w, const char *format, ...) PLW_PRINTF(2, 3);
 static void say(const words *w, const char *format, ...) {
     const size_t used = strlen(w->text);
     if (used + 1 >= w->size) {

@@ -29,9 +29,8 @@ static void walk_cycle(const plw_circuit *circuit, const plw_cycle *cycle, plw_s
         widen(plate_volts, &s->plate_volts_least, &s->plate_volts_most);
         widen(at->amps[PLW_OF_PLATE], &s->plate_amps_least, &s->plate_amps_most);
         s->screen_amps_most = fmax(s->screen_amps_most, at->amps[PLW_OF_SCREEN]);
-        plw_currents currents;
-        plw_law_evaluate(&circuit->stage->tube->model.law, plate_volts, at->volts[PLW_AT_SCREEN],
-                         at->volts[PLW_AT_GRID], &currents);
+        plw_currents currents; /* the law's grid current asks for the grid's volts alone: the rest costs nothing */
+        plw_law_evaluate(&circuit->stage->tube->model.law, 0.0, 0.0, at->volts[PLW_AT_GRID], &currents);
         s->grid_amps += weight * currents.grid_amps;
         s->grid_amps_most = fmax(s->grid_amps_most, currents.grid_amps);
         const double cathode_volts =
