@@ -89,6 +89,7 @@ enum {
 
 typedef struct {
     plw_model model;
+    bool settled; /* false: the search stopped at its limit; the coefficients are the best seen, their errors a guess */
     size_t residuals;
     plw_residual residual[PLW_RESIDUALS_MOST];
     double chi_squared; /* of the observations, without what is known beforehand of the coefficients */
@@ -101,12 +102,18 @@ typedef struct {
     plw_fit_contradiction contradiction[PLW_FIT_CONTRADICTIONS_MOST];
 } plw_fit;
 
-/* Fit the law of a tube to its rows and points of confidence high and medium.
+/* Fit the law of a tube to its rows and points of confidence high and medium, weighted by their stated uncertainty.
  * Levenberg-Marquardt on the logarithms of the coefficients (GSL multifit_nlinear), several starts; each coefficient
- * has a weak expectation from tubes of its kind, so that even one row gives an honest answer. In:   a tube with ratings
- * and at least one row or three points that can be fitted Out:  *fit: coefficients, their relative standard errors
- * (NaN: not determined by the rows), errors in the fit and with each row left out in turn, region; not written unless
- * PLW_OK Ret:  PLW_OK; PLW_E_DATA: nothing to fit; PLW_E_NO_CONVERGENCE; PLW_E_NO_MEMORY */
+ * has a weak expectation from tubes of its kind, so that even one row gives an honest answer.
+ * In:   a tube with at least three figures that can be fitted: a row with plate current, gm and plate resistance, or
+ *       three points
+ * Out:  *fit: coefficients, their relative standard errors (NaN: not determined by the rows), errors in the fit and,
+ *       with leave_out, with each row left out in turn (of curves alone: each point), region, residuals, what the fit
+ *       found.  Without meaning unless PLW_OK
+ * Ret:  PLW_OK; PLW_E_USAGE: a rectifier; PLW_E_DATA: nothing to fit, or PLW_RESIDUALS_MOST figures and more;
+ *       PLW_E_NO_CONVERGENCE; PLW_E_NO_MEMORY
+ * GSL's error handler ends the program when GSL itself finds no memory; gsl_set_error_handler_off() makes that
+ * PLW_E_NO_MEMORY.  Nothing else here reaches it. */
 PLW_API plw_status plw_fit_tube(const plw_tube *tube, bool leave_out, plw_fit *fit, plw_error *error) PLW_MUST_USE;
 
 /* Predict a row by a fit, with the standard deviation that each figure has from the coefficients not being known better

@@ -151,6 +151,9 @@ plw_status plw_fit_text(const plw_tube *tube, const plw_fit *fit, char **text, p
     }
     fprintf(buffer.file, "%s\n", tube->type);
     plw_put_model(buffer.file, tube);
+    if (!fit->settled) {
+        fputs("\nThe search did not settle: take these coefficients as a first guess\n", buffer.file);
+    }
     put_undetermined(buffer.file, fit);
     put_correlations(buffer.file, fit);
     put_contradictions(buffer.file, tube, fit);

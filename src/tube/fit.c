@@ -55,8 +55,8 @@ static void scale_start(const problem *p, plw_law *start) {
 
 /* Fit from the law near by, or from every start, and keep the best.
  * Out:  *law, covariance[coefficients * coefficients] of its coordinates (may be NULL) */
-static plw_status best_fit(problem *p, const plw_law *near, plw_law *law, double *covariance, double *sum_of_squares,
-                           plw_error *error) {
+static plw_status best_fit(problem *p, const plw_law *near, plw_law *law, double *covariance,
+                           plw_least_squares_end *end, plw_error *error) {
     const plw_least_squares core = {
         .residuals = residuals,
         .context = p,
@@ -77,30 +77,31 @@ static plw_status best_fit(problem *p, const plw_law *near, plw_law *law, double
         plw_law_coordinates(&trial, starts + attempt * p->coefficients);
     }
     double place[PLW_LAW_COEFFICIENTS_MOST];
-    plw_least_squares_end end;
-    const plw_status status = plw_least_squares_solve(&core, starts, count, place, covariance, &end, error);
+    const plw_status status = plw_least_squares_solve(&core, starts, count, place, covariance, end, error);
     if (status == PLW_OK) {
         *law = plw_law_at_coordinates(p->kind, place);
-        *sum_of_squares = end.sum_of_squares;
     }
     return status;
 }
 
-static plw_status fit_observations(const plw_observations *observations, const plw_law *near, plw_law *law,
-                                   double *relative_error, double *covariance, plw_error *error) {
-    double sum_of_squares;
+/* The fit with its covariance and standard errors. */
+static plw_status fit_model(const plw_observations *observations, plw_fit *fit, plw_error *error) {
+    plw_least_squares_end end;
     const plw_prior prior = plw_prior_for(observations);
     const plw_law_kind kind = observations->screened ? PLW_LAW_PENTODE : PLW_LAW_TRIODE;
     problem p = {observations, &prior, kind, plw_law_coefficient_count(kind)};
-    const plw_status status = best_fit(&p, near, law, covariance, &sum_of_squares, error);
-    if (status != PLW_OK || covariance == NULL) {
+    plw_model *model = &fit->model;
+    const plw_status status = best_fit(&p, NULL, &model->law, fit->covariance, &end, error);
+    if (status != PLW_OK) {
         return status;
     }
+    fit->settled = end.settled != PLW_SETTLED_LATE && !end.singular;
     for (size_t index = 0; index < p.coefficients; index++) {
-        const double deviation = sqrt(covariance[index * p.coefficients + index]);
+        const double deviation = sqrt(fit->covariance[index * p.coefficients + index]);
         /* Where the rows hardly narrow what was expected beforehand, they do not determine the coefficient. */
         const bool determined = deviation <= 0.8 * prior.deviation[index];
-        relative_error[index] = determined ? plw_coordinate_error_relative(law, index, deviation) : (double)NAN;
+        model->relative_error[index] =
+            determined ? plw_coordinate_error_relative(&model->law, index, deviation) : (double)NAN;
     }
     return PLW_OK;
 }
@@ -110,7 +111,12 @@ plw_status plw_fit_observations(const plw_observations *observations, const plw_
     const plw_prior prior = plw_prior_for(observations);
     const plw_law_kind kind = observations->screened ? PLW_LAW_PENTODE : PLW_LAW_TRIODE;
     problem p = {observations, &prior, kind, plw_law_coefficient_count(kind)};
-    return best_fit(&p, near, law, NULL, sum_of_squares, error);
+    plw_least_squares_end end;
+    const plw_status status = best_fit(&p, near, law, NULL, &end, error);
+    if (status == PLW_OK) {
+        *sum_of_squares = end.sum_of_squares;
+    }
+    return status;
 }
 
 plw_status plw_fit_without(const plw_tube *tube, size_t row, bool without_triode_connection, const plw_law *near,
@@ -124,7 +130,8 @@ plw_status plw_fit_without(const plw_tube *tube, size_t row, bool without_triode
     if (!has_current) {
         return plw_fail(error, PLW_E_DATA, "%s: nothing is left to fit", tube->type);
     }
-    return fit_observations(&observations, near, law, NULL, NULL, error);
+    double sum_of_squares;
+    return plw_fit_observations(&observations, near, law, &sum_of_squares, error);
 }
 
 static void list_residuals(const plw_observations *observations, const plw_law *law, plw_fit *fit) {
@@ -182,8 +189,7 @@ plw_status plw_fit_tube(const plw_tube *tube, bool leave_out, plw_fit *fit, plw_
                         (int)PLW_RESIDUALS_MOST);
     }
     memset(fit, 0, sizeof *fit);
-    const plw_status status =
-        fit_observations(&observations, NULL, &fit->model.law, fit->model.relative_error, fit->covariance, error);
+    const plw_status status = fit_model(&observations, fit, error);
     if (status != PLW_OK) {
         return status;
     }

@@ -111,6 +111,7 @@ static void test_exact_data_give_the_coefficients_back(void **state) {
     /* What is expected beforehand draws a little: mu at the middle of its wide expectation would be 20. */
     assert_true(apart(&fit.model.law, &law, &fit) < 0.1);
     assert_true(fit.chi_squared < 0.02);
+    assert_true(fit.settled);
     assert_int_equal(fit.contradictions, 0);
     assert_int_equal(fit.model.points_fitted, POINTS);
 }

@@ -67,6 +67,7 @@ static void test_nothing_to_remark(void **state) {
     expect(text, "6X99\n", true);
     expect(text, "Model: koren-contact, fitted to 0 rows and 5 points", true);
     expect(text, "Cannot both be true", false);
+    expect(text, "did not settle", false);
     expect(text, "Stands out", false);
     expect(text, "  kvb: would show in currents at low plate volts and small bias\n", true);
     expect(text, "  mu: would show", false);
@@ -119,6 +120,7 @@ static void test_correlations(void **state) {
     assert_non_null(fit);
     assert_int_equal(plw_fit_tube(tube, false, fit, NULL), PLW_OK);
     fit->correlations = 1;
+    fit->settled = false;
     fit->correlation[0] = (plw_fit_correlation){0, 3, -0.962};
     assert_int_equal(plw_fit_text(tube, fit, &text, NULL), PLW_OK);
     expect(text,
@@ -126,6 +128,7 @@ static void test_correlations(void **state) {
            "  mu and kp (correlation -0.962)\n",
            true);
     expect(text, "Model: none fitted yet", true);
+    expect(text, "\nThe search did not settle", true);
     plw_text_free(text);
     free(fit);
     plw_tube_free(tube);
