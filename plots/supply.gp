@@ -1108,9 +1108,9 @@ set lmargin 9
 set rmargin 9
 set lmargin 9
 set multiplot
-set tmargin at screen 0.885
-set bmargin at screen 0.56
-set key at graph 0, screen 0.375 left bottom vertical maxrows 3 Left reverse samplen 3.2 spacing 1.2
+set tmargin at screen 0.87
+set bmargin at screen 0.605
+set key at graph 0, screen 0.4 left bottom vertical maxrows 3 Left reverse samplen 3.2 spacing 1.2
 $line << EOD
 0 324.569
 0.0183259 324.226
@@ -1424,9 +1424,9 @@ plot $low using 1:2 with lines linecolor rgb '#3f8f5f' dashtype (10,4,2,4) linew
      $readings using 1:2 with points pointtype 9 pointsize mark*1.9 linecolor rgb '#c2360c' linewidth 1.6 title 'reading on the bench', \
      $rest using 1:2 with points pointtype 7 pointsize mark*1.5 linecolor rgb '#10171e' linewidth 1.6 title 'at rest: 246 V, 56 mA'
 unset label
-set tmargin at screen 0.33
-set bmargin at screen 0.165
-set key at graph 0, screen 0.01 left bottom vertical maxrows 2 Left reverse samplen 3.2 spacing 1.2
+set tmargin at screen 0.365
+set bmargin at screen 0.195
+set key at graph 0, screen 0.015 left bottom vertical maxrows 2 Left reverse samplen 3.2 spacing 1.2 width -3
 set xrange [0:20]
 set xtics 2 nomirror
 set mxtics 2

@@ -250,8 +250,8 @@ static void lower_panel(FILE *file, const picture *p, const plw_rectifier_state 
 static void upper_place(FILE *file, bool waves) {
     fputs("set rmargin 9\nset lmargin 9\n", file);
     if (waves) {
-        fputs("set multiplot\nset tmargin at screen 0.885\nset bmargin at screen 0.56\n"
-              "set key at graph 0, screen 0.375 left bottom vertical maxrows 3 Left reverse samplen 3.2 spacing 1.2\n",
+        fputs("set multiplot\nset tmargin at screen 0.87\nset bmargin at screen 0.605\n"
+              "set key at graph 0, screen 0.4 left bottom vertical maxrows 3 Left reverse samplen 3.2 spacing 1.2\n",
               file);
     } else {
         plw_plot_key(file);
@@ -279,8 +279,9 @@ void plw_plot_supply(FILE *file, const plw_answer *answer) {
     point_blocks(file, &p);
     upper_panel(file, &p, mains, demand);
     if (waves) {
-        fputs("unset label\nset tmargin at screen 0.33\nset bmargin at screen 0.165\n"
-              "set key at graph 0, screen 0.01 left bottom vertical maxrows 2 Left reverse samplen 3.2 spacing 1.2\n",
+        fputs("unset label\nset tmargin at screen 0.365\nset bmargin at screen 0.195\n"
+              "set key at graph 0, screen 0.015 left bottom vertical maxrows 2 Left reverse samplen 3.2 spacing 1.2 "
+              "width -3\n",
               file);
         lower_panel(file, &p, &state, milliamps_most, ripple_most);
         fputs("unset multiplot\n", file);
