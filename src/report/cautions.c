@@ -147,7 +147,11 @@ static void of_drive(plw_caution_list *l, const plw_answer *answer) {
         return;
     }
     written(signal->drive_peak_volts, PLW_UNIT_VOLT, drive);
-    if (signal->limit == PLW_DRIVE_GRID_CURRENT) {
+    if (signal->limit == PLW_DRIVE_GRID_CURRENT && answer->stage->driver_ohms > 0.0) {
+        char ohms[TEXT_SIZE];
+        plw_caution_say(l, "Full drive is %s peak: beyond it grid current rounds off the crest behind the driver's %s.",
+                        drive, written(answer->stage->driver_ohms, PLW_UNIT_OHM, ohms));
+    } else if (signal->limit == PLW_DRIVE_GRID_CURRENT) {
         plw_caution_say(
             l, "Full drive is %s peak: beyond it the grid draws current, and a driver that cannot give it clips.",
             drive);
