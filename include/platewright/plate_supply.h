@@ -64,8 +64,8 @@ typedef struct {
     double amps; /* drawn by all that hangs on it, > 0 */
     plw_series series;
     double regulation_percent; /* of the transformer wanted; NaN: none is wanted */
-    plw_supply_ratings
-        ratings; /* of its parts, those of the rectifier may be unknown: they are filled in where the type is known */
+    /* Of its parts.  Those of the rectifier may be unknown: they are filled in from its type. */
+    plw_supply_ratings ratings;
     double bleeder_seconds; /* within which a bleeder is to bring it to 60 V */
 } plw_supply_question;
 

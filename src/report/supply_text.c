@@ -239,6 +239,17 @@ static void seconds_words(const plw_dummy_load *d, char *text, size_t size) {
     }
 }
 
+/* The largest usual part that is smaller than the heat, for who has no larger one.  Ret: W; NaN: none */
+static double smaller_part(double watts) {
+    for (double share = 0.9; share > 0.2; share *= 0.8) {
+        const double rating = plw_resistor_rating_watts(share * watts, 1.0);
+        if (rating < watts) {
+            return rating;
+        }
+    }
+    return (double)NAN;
+}
+
 static void dummy_lines(FILE *out, const plw_supply_finding *f) {
     const plw_supply_answer *a = f->supply;
     if (!a->has_dummy) {
@@ -252,6 +263,11 @@ static void dummy_lines(FILE *out, const plw_supply_finding *f) {
         fprintf(out, ", a %g W part", d->rating_watts);
     }
     fprintf(out, " (it turns %s into heat);\n" INDENT "%s\n", plw_cell_watts(d->watts).text, seconds);
+    const double small = smaller_part(d->watts);
+    if (isfinite(small)) {
+        fprintf(out, INDENT "a %g W part no longer than %.0f s at a time\n", small,
+                floor(plw_resistor_seconds(d->watts, small)));
+    }
     fprintf(out, INDENT "the meter should then read %s (exact would be %s)\n", plw_cell_volts(d->expected_volts).text,
             plw_cell_quantity(d->exact_ohms, PLW_UNIT_OHM, 3).text);
     meaning_lines(out, f);
