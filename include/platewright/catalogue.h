@@ -46,8 +46,10 @@ PLW_API void plw_catalogue_free(plw_catalogue *catalogue);
 PLW_API plw_status plw_catalogue_find(plw_catalogue *catalogue, const char *designation, const plw_tube **tube,
                                       int *variant, plw_error *error) PLW_MUST_USE;
 
-/* All tubes, in order of designation; each file is read.
- * Out:  *tubes[*count], owned by the catalogue */
+/* All tubes, in order of designation; each file is read.  Files of something else than a tube are passed over.
+ * Out:  *tubes[*count], owned by the catalogue; written with PLW_E_DATA and PLW_E_FILE too: those that are in order
+ * Ret:  PLW_OK; PLW_E_NO_MEMORY; PLW_E_DATA or PLW_E_FILE when some file is faulty or cannot be read, with one line
+ *       for each fault */
 PLW_API plw_status plw_catalogue_all(plw_catalogue *catalogue, const plw_tube *const **tubes, size_t *count,
                                      plw_error *error) PLW_MUST_USE;
 

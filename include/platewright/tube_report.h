@@ -21,6 +21,11 @@ extern "C" {
 PLW_API plw_status plw_tubes_text(const plw_tube_entry *entries, size_t count, char **text,
                                   plw_error *error) PLW_MUST_USE;
 
+/* The designations alone, equivalents with them, one a line.
+ * Out, Ret: as plw_tubes_text() */
+PLW_API plw_status plw_tubes_names(const plw_tube_entry *entries, size_t count, char **text,
+                                   plw_error *error) PLW_MUST_USE;
+
 /* The same as JSON, schema "platewright/1": units in the names, null for what is not known.
  * Out, Ret: as plw_tubes_text() */
 PLW_API plw_status plw_tubes_json(const plw_tube_entry *entries, size_t count, char **text,

@@ -27,9 +27,9 @@ static plw_status refuse_unknown(const cli_command *command, const char *word, p
     show(word, shown);
     shown[strcspn(shown, "=")] = '\0';
     const char *nearest = cli_option_nearest(shown + strspn(shown, "-"), command->bit);
-    return nearest == NULL
-               ? plw_fail(error, PLW_E_USAGE, "%s: is no option of %s", shown, command->name)
-               : plw_fail(error, PLW_E_USAGE, "%s: is no option of %s; is it --%s?", shown, command->name, nearest);
+    return nearest == NULL ? plw_fail(error, PLW_E_USAGE, "%s: is no option of %s", shown, command->name)
+                           : plw_fail(error, PLW_E_USAGE, "%s: is no option of %s; did you mean --%s?", shown,
+                                      command->name, nearest);
 }
 
 static plw_status refuse_elsewhere(const cli_command *command, const cli_option *option, plw_error *error) {
@@ -119,11 +119,26 @@ static plw_status take_option(cli_arguments *arguments, char *const *words, size
     return add_given(arguments, option, text, error);
 }
 
-static plw_status take_positional(cli_arguments *arguments, const char *word, plw_error *error) {
+/* A word behind the first that is no value of an option: mostly one whose option was forgotten. */
+static plw_status refuse_second(const cli_arguments *arguments, const char *word, plw_error *error) {
     char shown[NAME_SIZE];
+    char first[NAME_SIZE];
+    const cli_command *command = arguments->command;
+    show(word, shown);
+    show(arguments->positional, first);
+    if ((command->bit & CLI_STAGE) != 0) {
+        return plw_fail(error, PLW_E_USAGE,
+                        "'%s' stands alone: %s reads one stage file, and that is '%s'; does '%s' belong to an option, "
+                        "as in --save %s?",
+                        shown, command->name, first, shown, shown);
+    }
+    return plw_fail(error, PLW_E_USAGE, "'%s' stands alone: %s takes one %s, and that is '%s'", shown, command->name,
+                    command->bit == CLI_TUBES ? "tube type" : "file", first);
+}
+
+static plw_status take_positional(cli_arguments *arguments, const char *word, plw_error *error) {
     if (arguments->positional != NULL) {
-        return plw_fail(error, PLW_E_USAGE, "%s: is one word too many; %s takes %s", show(word, shown),
-                        arguments->command->name, arguments->command->positional);
+        return refuse_second(arguments, word, error);
     }
     if (word[0] == '\0') {
         return plw_fail(error, PLW_E_USAGE, "%s: the name is empty", arguments->command->positional);

@@ -23,15 +23,31 @@ static double *reading_of(plw_meter_readings *readings, const char *name) {
     return strcmp(name, "screen") == 0 ? &readings->screen_volts : NULL;
 }
 
-/* cathode=12.9V */
+/* Without the spaces before and behind.  Ret: where the rest begins */
+static char *trim(char *text) {
+    text += strspn(text, " \t");
+    for (size_t length = strlen(text); length > 0 && strchr(" \t", text[length - 1]) != NULL; length--) {
+        text[length - 1] = '\0';
+    }
+    return text;
+}
+
+/* cathode=12.9V, with spaces wherever one likes */
 static plw_status read_part(char *part, plw_meter_readings *readings, plw_error *error) {
     static const char *const names[] = {"cathode", "supply", "plate", "screen"};
+    part = trim(part);
+    if (part[0] == '\0') {
+        return plw_fail(error, PLW_E_USAGE,
+                        "--measured: a reading is missing; write for instance cathode=12.9V,supply=282V");
+    }
     char *equals = strchr(part, '=');
     if (equals == NULL) {
         return plw_fail(error, PLW_E_USAGE,
                         "--measured: '%s' does not say where it was measured; write for instance cathode=12.9V", part);
     }
     *equals = '\0';
+    part = trim(part);
+    const char *value = trim(equals + 1);
     double *reading = reading_of(readings, part);
     if (reading == NULL) {
         size_t nearest = 0;
@@ -43,22 +59,21 @@ static plw_status read_part(char *part, plw_meter_readings *readings, plw_error 
     if (!isnan(*reading)) {
         return plw_fail(error, PLW_E_USAGE, "--measured: %s is given twice; keep one", part);
     }
-    if (plw_quantity_parse(equals + 1, PLW_UNIT_VOLT, reading, error) != PLW_OK) {
+    if (plw_quantity_parse(value, PLW_UNIT_VOLT, reading, error) != PLW_OK) {
         return plw_fail_at(error, PLW_E_USAGE, "--measured: %s", part);
     }
     return PLW_OK;
 }
 
-/* One --measured: parts with commas between. */
+/* One --measured: parts with commas between, and spaces where one likes. */
 static plw_status read_measured(const char *text, plw_meter_readings *readings, plw_error *error) {
     plw_status status = PLW_OK;
     while (status == PLW_OK) {
         char part[PART_SIZE];
         const size_t length = strcspn(text, ",");
-        if (length == 0 || length >= sizeof part) {
+        if (length >= sizeof part) {
             return plw_fail(error, PLW_E_USAGE,
-                            "--measured: a reading is %s; write for instance cathode=12.9V,supply=282V",
-                            length == 0 ? "missing" : "too long");
+                            "--measured: a reading is too long; write for instance cathode=12.9V,supply=282V");
         }
         memcpy(part, text, length);
         part[length] = '\0';

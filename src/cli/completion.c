@@ -30,7 +30,11 @@ static void put_values(FILE *out, const cli_option *option) {
         return;
     }
     put_pattern(out, option);
-    if (option->choices != NULL) {
+    if (strcmp(option->name, "tube") == 0 || strcmp(option->name, "like") == 0) {
+        fputs(" _platewright_types; return ;;\n", out);
+    } else if (strcmp(option->name, "diode") == 0) {
+        fputs(" _platewright_types silicon --kind rectifier; return ;;\n", out);
+    } else if (option->choices != NULL) {
         fputs(" COMPREPLY=($(compgen -W '", out);
         for (size_t i = 0; option->choices[i] != NULL; i++) {
             fprintf(out, "%s%s", i == 0 ? "" : " ", option->choices[i]);
@@ -48,9 +52,19 @@ static void put_values(FILE *out, const cli_option *option) {
 void cli_completion(FILE *out) {
     fputs("# Completion of platewright for bash; made by 'platewright --completion'.\n"
           "# SPDX-License-Identifier: GPL-3.0-or-later\n"
+          "# Types of the catalogue, and a word before them; any case is completed.\n"
+          "_platewright_types() {\n"
+          "  local more=$1; [ $# -gt 0 ] && shift\n"
+          "  more=\"$more $(\"${COMP_WORDS[0]}\" tubes --format names \"$@\" 2>/dev/null)\"\n"
+          "  COMPREPLY=($(compgen -W \"$more\" -- \"$word\"))\n"
+          "  [ ${#COMPREPLY[@]} -gt 0 ] || COMPREPLY=($(compgen -W \"$more\" -- \"$(echo \"$word\" | tr a-z A-Z)\"))\n"
+          "}\n"
           "_platewright() {\n"
           "  local word=${COMP_WORDS[COMP_CWORD]} before=${COMP_WORDS[COMP_CWORD-1]} options=\n"
           "  COMPREPLY=()\n"
+          "  # --option=value comes in three words\n"
+          "  [ \"$word\" = = ] && word=\n"
+          "  [ \"$before\" = = ] && before=${COMP_WORDS[COMP_CWORD-2]}\n"
           "  if [ \"$COMP_CWORD\" -eq 1 ]; then\n"
           "    COMPREPLY=($(compgen -W '",
           out);
@@ -71,7 +85,8 @@ void cli_completion(FILE *out) {
     fputs("  esac\n"
           "  case $word in\n"
           "    -*) COMPREPLY=($(compgen -W \"$options\" -- \"$word\")) ;;\n"
-          "    *) COMPREPLY=($(compgen -f -- \"$word\")) ;;\n"
+          "    *) if [ \"${COMP_WORDS[1]}\" = tubes ]; then _platewright_types; return; fi\n"
+          "       COMPREPLY=($(compgen -f -- \"$word\")) ;;\n"
           "  esac\n"
           "}\n"
           "complete -F _platewright platewright\n",

@@ -55,10 +55,29 @@ static void put_options(FILE *out, unsigned commands) {
     }
 }
 
+/* A command as typed; one that is wider than the screen goes on behind a backslash, before an option. */
+static void put_command(FILE *out, const char *text) {
+    size_t column = (size_t)fprintf(out, "  %.*s", (int)strcspn(text, " "), text);
+    text += strcspn(text, " ");
+    while (*text != '\0') { /* text begins with a space; up to the next option */
+        const char *next = strstr(text + 1, " --");
+        const size_t length = next == NULL ? strlen(text) : (size_t)(next - text);
+        const size_t mark = next == NULL ? 0 : 2; /* " \" behind it */
+        if (column + length + mark > WIDTH && strncmp(text, " --", 3) == 0) {
+            fputs(" \\\n     ", out);
+            column = 5;
+        }
+        fprintf(out, "%.*s", (int)length, text);
+        column += length;
+        text += length;
+    }
+    fputc('\n', out);
+}
+
 static void put_example(FILE *out, const cli_example *example) {
     fputs("  # ", out);
     put_wrapped(out, example->what, 4, 4);
-    fprintf(out, "  %s\n", example->command);
+    put_command(out, example->command);
 }
 
 static void put_exit_status(FILE *out) {

@@ -66,7 +66,7 @@ static int run_option(const char *word, const char *next) {
     if (option == NULL) {
         const char *nearest = cli_option_nearest(name, CLI_OVERALL);
         (void)plw_fail(&error, PLW_E_USAGE, "%.40s: is no option here%s%s; begin with a command", word,
-                       nearest == NULL ? "" : "; is it --", nearest == NULL ? "" : nearest);
+                       nearest == NULL ? "" : "; did you mean --", nearest == NULL ? "" : nearest);
         return cli_complain(NULL, &error);
     }
     for (size_t i = 0; i < sizeof outputs / sizeof outputs[0]; i++) {

@@ -12,7 +12,7 @@ static const char *const formats[] = {"text", "json", "csv", NULL};
 static const char *const kinds[] = {"load-line", "transfer", "supply", "family", NULL};
 static const char *const tube_kinds[] = {"triode", "pentode", "beam", NULL};
 static const char *const all_tube_kinds[] = {"triode", "pentode", "beam", "rectifier", NULL};
-static const char *const tube_formats[] = {"text", "json", NULL};
+static const char *const tube_formats[] = {"text", "json", "names", NULL};
 static const char *const rectifiers[] = {"full-wave", "bridge", "half-wave", NULL};
 
 #define WHY_NOT_IN_DESIGN "design chooses the resistor itself; platewright check solves a stage whose bias is given"
@@ -274,7 +274,7 @@ static const cli_option options[] = {
      .group = CLI_GROUP_RESULT,
      .commands = CLI_TUBES,
      .choices = tube_formats,
-     .help = "text (default) or json"},
+     .help = "text (default), json, or names: the designations alone, one a line"},
     {.name = "format",
      .value = CLI_VALUE_CHOICE,
      .placeholder = "FORMAT",

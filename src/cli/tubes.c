@@ -14,9 +14,13 @@
 
 enum { NEAR_MOST = 8 };
 
-static bool as_json(const cli_arguments *arguments) {
+static bool in_format(const cli_arguments *arguments, const char *name) {
     const char *format = cli_argument(arguments, "format");
-    return format != NULL && strcmp(format, "json") == 0;
+    return format != NULL && strcmp(format, name) == 0;
+}
+
+static bool as_json(const cli_arguments *arguments) {
+    return in_format(arguments, "json");
 }
 
 /* ---- the filter -------------------------------------------------------------------------------------------------- */
@@ -99,6 +103,9 @@ static plw_status show_one(plw_catalogue *catalogue, const cli_arguments *argume
     if (cli_argument_given(arguments, "like")) {
         return plw_fail(error, PLW_E_USAGE, "--like: names the type itself; leave %.40s out", arguments->positional);
     }
+    if (in_format(arguments, "names")) {
+        return plw_fail(error, PLW_E_USAGE, "--format: names is for the list; leave %.40s out", arguments->positional);
+    }
     const plw_status status = plw_catalogue_find(catalogue, arguments->positional, &tube, &variant, error);
     if (status != PLW_OK) {
         return status;
@@ -111,6 +118,9 @@ static plw_status show_like(plw_catalogue *catalogue, const cli_arguments *argum
     plw_tube_entry wanted = {NULL, -1};
     plw_near_tube near[NEAR_MOST];
     const char *like = cli_argument(arguments, "like");
+    if (in_format(arguments, "names")) {
+        return plw_fail(error, PLW_E_USAGE, "--format: names is for the list; leave --like out");
+    }
     const plw_status status = plw_catalogue_find(catalogue, like, &wanted.tube, &wanted.variant, error);
     if (status != PLW_OK) {
         return plw_fail_at(error, status, "--like");
@@ -125,16 +135,27 @@ static plw_status show_like(plw_catalogue *catalogue, const cli_arguments *argum
                               : plw_tubes_like_text(wanted, near, found, text, error);
 }
 
-/* The list, or what of it is like one type. */
-static plw_status show_some(plw_catalogue *catalogue, const cli_arguments *arguments, char **text, bool *any,
+static plw_status show_list(const cli_arguments *arguments, const plw_tube_entry *entries, size_t count, char **text,
                             plw_error *error) {
+    if (in_format(arguments, "names")) {
+        return plw_tubes_names(entries, count, text, error);
+    }
+    return as_json(arguments) ? plw_tubes_json(entries, count, text, error)
+                              : plw_tubes_text(entries, count, text, error);
+}
+
+/* The list, or what of it is like one type.
+ * Out:  *faults of files that are not in it */
+static plw_status show_some(plw_catalogue *catalogue, const cli_arguments *arguments, char **text, bool *any,
+                            plw_error *faults, plw_error *error) {
     const plw_tube *const *tubes = NULL;
     size_t count = 0;
     plw_tube_filter filter;
-    plw_status status = plw_catalogue_all(catalogue, &tubes, &count, error);
-    if (status == PLW_OK) {
-        status = read_filter(arguments, tubes, count, &filter, error);
+    plw_status status = plw_catalogue_all(catalogue, &tubes, &count, faults);
+    if (tubes == NULL) {
+        return plw_fail(error, status, "%s", faults->text);
     }
+    status = read_filter(arguments, tubes, count, &filter, error);
     if (status != PLW_OK) {
         return status;
     }
@@ -147,8 +168,7 @@ static plw_status show_some(plw_catalogue *catalogue, const cli_arguments *argum
     if (cli_argument_given(arguments, "like")) {
         status = show_like(catalogue, arguments, entries, selected, text, error);
     } else {
-        status = as_json(arguments) ? plw_tubes_json(entries, selected, text, error)
-                                    : plw_tubes_text(entries, selected, text, error);
+        status = show_list(arguments, entries, selected, text, error);
     }
     free(entries);
     return status;
@@ -157,11 +177,12 @@ static plw_status show_some(plw_catalogue *catalogue, const cli_arguments *argum
 int cli_run_tubes(const cli_arguments *arguments) {
     plw_catalogue *catalogue = NULL;
     plw_error error = {.status = PLW_OK};
+    plw_error faults = {.status = PLW_OK};
     char *text = NULL;
     bool any = true;
     plw_status status = cli_open_catalogue(cli_argument(arguments, "tubes"), &catalogue, &error);
     if (status == PLW_OK) {
-        status = arguments->positional == NULL ? show_some(catalogue, arguments, &text, &any, &error)
+        status = arguments->positional == NULL ? show_some(catalogue, arguments, &text, &any, &faults, &error)
                                                : show_one(catalogue, arguments, &text, &error);
     }
     if (status == PLW_OK) {
@@ -169,8 +190,8 @@ int cli_run_tubes(const cli_arguments *arguments) {
     }
     plw_text_free(text);
     plw_catalogue_free(catalogue);
-    if (status != PLW_OK) {
-        return cli_complain(arguments->command, &error);
+    if (status != PLW_OK || faults.status != PLW_OK) {
+        return cli_complain(arguments->command, status != PLW_OK ? &error : &faults);
     }
     if (!any) {
         fputs("platewright: no tube of the catalogue is so\n", stderr);

@@ -10,7 +10,7 @@
 #include "report/layout.h"
 #include "report/text_buffer.h"
 
-enum { WORDS_SIZE = 1024, HEAD_SIZE = 256, NUMBER_SIZE = 32 };
+enum { WORDS_SIZE = 1024, HEAD_SIZE = 256, NUMBER_SIZE = 32, NAMES_ROOM = 4 };
 
 /* ---- the list ---------------------------------------------------------------------------------------------------- */
 
@@ -28,31 +28,40 @@ static void put_number(FILE *out, double value, int digits, int width) {
 }
 
 static void put_percent(FILE *out, double value) {
-    put_number(out, isfinite(value) ? round(10.0 * value) / 10.0 : value, 6, 7);
+    put_number(out, isfinite(value) ? round(10.0 * value) / 10.0 : value, 6, 6);
 }
 
-/* Equivalents of a type; whose curves a variant has. */
+/* Equivalents of a type, or whose curves a variant has: behind the line where they fit, else below it. */
 static void put_names(FILE *out, plw_tube_entry entry) {
     const plw_tube *tube = entry.tube;
+    char names[HEAD_SIZE] = "";
     if (entry.variant >= 0) {
-        fprintf(out, "  as %s", tube->type);
+        snprintf(names, sizeof names, "%.40s", tube->type);
     }
     for (size_t i = 0; entry.variant < 0 && i < tube->equivalents_count; i++) {
-        fprintf(out, "%s%s", i == 0 ? "  " : ", ", tube->equivalents[i]);
+        const size_t used = strlen(names);
+        snprintf(names + used, sizeof names - used, "%s%.40s", i == 0 ? "" : ", ", tube->equivalents[i]);
     }
-    fputc('\n', out);
+    const char *mark = entry.variant >= 0 ? "as " : "= ";
+    if (names[0] == '\0') {
+        fputc('\n', out);
+    } else if (strlen(mark) + strlen(names) <= NAMES_ROOM) {
+        fprintf(out, "  %s%s\n", mark, names);
+    } else {
+        fprintf(out, "\n         %s%s\n", mark, names);
+    }
 }
 
 static void put_line(FILE *out, plw_tube_entry entry) {
     const plw_tube *tube = entry.tube;
     const plw_ratings *ratings = plw_tube_entry_ratings(entry);
     const double unknown = (double)NAN;
-    fprintf(out, "%-9s %-9s %-15s", plw_tube_entry_type(entry), plw_tube_kind_name(tube->kind),
+    fprintf(out, "%-8s %-9s %-19s", plw_tube_entry_type(entry), plw_tube_kind_name(tube->kind),
             tube->base == NULL ? "-" : tube->base);
-    put_number(out, ratings == NULL ? unknown : ratings->plate_watts, 4, 7);
-    put_number(out, ratings == NULL ? unknown : ratings->screen_watts, 4, 8);
-    put_number(out, plw_tube_entry_heater_volts(entry), 4, 8);
-    put_number(out, plw_tube_entry_heater_amps(entry), 4, 8);
+    put_number(out, ratings == NULL ? unknown : ratings->plate_watts, 4, 6);
+    put_number(out, ratings == NULL ? unknown : ratings->screen_watts, 4, 7);
+    put_number(out, plw_tube_entry_heater_volts(entry), 4, 5);
+    put_number(out, plw_tube_entry_heater_amps(entry), 4, 6);
     put_percent(out, tube->has_model ? tube->model.fit_error.plate_current_percent : unknown);
     put_percent(out, tube->has_model ? tube->model.left_out_error.plate_current_percent : unknown);
     put_names(out, entry);
@@ -64,14 +73,15 @@ plw_status plw_tubes_text(const plw_tube_entry *entries, size_t count, char **te
     if (status != PLW_OK) {
         return status;
     }
-    fputs("                                      plate  screen  heater  heater  model   left\n"
-          "type      kind      base                 W       W       V       A  err %  out %  other names\n",
+    fputs("                                        plate screen     heater model  left\n"
+          "type     kind      base                     W      W    V     A err % out %\n",
           buffer.file);
     for (size_t i = 0; i < count; i++) {
         put_line(buffer.file, entries[i]);
     }
     fputs("\nmodel err: median error of the model's plate current against the published rows;\n"
-          "left out: the same for rows that the fit was not shown. '-': not known.\n",
+          "left out: the same for rows that the fit was not shown. '-': not known.\n"
+          "'=': other names of the type; 'as': a variant with the curves of that type.\n",
           buffer.file);
     return plw_text_end(&buffer, PLW_OK, text, error);
 }
@@ -225,6 +235,22 @@ static void put_like_line(FILE *out, plw_tube_entry wanted, const plw_near_tube 
     int distance = (int)lround(10.0 * near->nearness.distance);
     snprintf(mark, sizeof mark, "%4d.%d  %-9.40s ", distance / 10, distance % 10, plw_tube_entry_type(near->entry));
     plw_put_paragraph(out, mark, text[0] == '\0' ? "nothing, by what is known here" : text);
+}
+
+plw_status plw_tubes_names(const plw_tube_entry *entries, size_t count, char **text, plw_error *error) {
+    plw_text_buffer buffer;
+    const plw_status status = plw_text_begin(&buffer, error);
+    if (status != PLW_OK) {
+        return status;
+    }
+    for (size_t i = 0; i < count; i++) {
+        const plw_tube *tube = entries[i].tube;
+        fprintf(buffer.file, "%s\n", plw_tube_entry_type(entries[i]));
+        for (size_t k = 0; entries[i].variant < 0 && k < tube->equivalents_count; k++) {
+            fprintf(buffer.file, "%s\n", tube->equivalents[k]);
+        }
+    }
+    return plw_text_end(&buffer, PLW_OK, text, error);
 }
 
 plw_status plw_tubes_like_text(plw_tube_entry wanted, const plw_near_tube *near, size_t count, char **text,

@@ -149,8 +149,8 @@ static void put_heading(FILE *out, const plw_tube *tube, source_list *sources) {
     char names[LINE];
     char line[LINE] = "";
     other_names(tube, names);
-    fprintf(out, "%s: %s, %s base%s%s\n", tube->type, plw_tube_kind_name(tube->kind), tube->base,
-            names[0] == '\0' ? "" : "; also ", names);
+    fprintf(out, "%s: %s, %s base%s%s\n", tube->type, plw_tube_kind_name(tube->kind),
+            tube->base == NULL ? "-" : tube->base, names[0] == '\0' ? "" : "; also ", names);
     fprintf(out, "  heater %s V, %s A%s %s\n", short_number(tube->heater_volts).text,
             short_number(tube->heater_amps).text, tube->directly_heated ? ", directly heated" : "",
             cite(sources, &tube->heater_provenance).text);

@@ -20,6 +20,7 @@ typedef struct {
     char *stem_key; /* the file name without .xml, as a key */
     size_t folder;
     bool indexed;   /* its names stand in the list of names */
+    bool foreign;   /* it holds something else than a tube: a stage, say, that lies in the same folder */
     plw_tube *tube; /* NULL until it is asked for */
 } tube_file;
 
@@ -42,6 +43,7 @@ struct plw_catalogue {
     size_t names_count, names_size;
     tube_pointer *all; /* sorted; made when first asked for */
     size_t all_count;
+    plw_error all_faults; /* of the files that are not among them */
 };
 
 /* ---- keys -------------------------------------------------------------------------------------------------------- */
@@ -239,8 +241,8 @@ static plw_status add_name_list(plw_catalogue *catalogue, const char *list, size
     return status;
 }
 
-/* Put the names of a file, as its beginning gives them, into the list.  A file that is no tube file has none: whoever
- * asks for all tubes is told of it. */
+/* Put the names of a file, as its beginning gives them, into the list.  A faulty file has none: whoever asks for all
+ * tubes is told of it.  A file of something else is passed over. */
 static plw_status index_file(plw_catalogue *catalogue, size_t index, plw_error *error) {
     if (catalogue->files[index].indexed) {
         return PLW_OK;
@@ -255,6 +257,11 @@ static plw_status index_file(plw_catalogue *catalogue, size_t index, plw_error *
         return PLW_OK;
     }
     const plw_xml_element *root = plw_xml_root(xml);
+    catalogue->files[index].foreign = strcmp(plw_xml_name(root), "tube") != 0;
+    if (catalogue->files[index].foreign) {
+        plw_xml_free(xml);
+        return PLW_OK;
+    }
     const char *type = plw_xml_attribute(root, "type");
     if (type != NULL) {
         status = add_name(catalogue, type, strlen(type), index, -1, error);
@@ -323,7 +330,7 @@ static plw_status find_in_folder(plw_catalogue *catalogue, const char *key, size
                 return status;
             }
             *found = find_exact(catalogue, key, folder, i);
-            if (!found->found) {
+            if (!found->found && !catalogue->files[i].foreign) {
                 /* It bears the name but not in it: read it, so that what is wrong with it is said. */
                 const plw_tube *tube = NULL;
                 plw_error reason = {.status = PLW_OK};
@@ -496,6 +503,40 @@ static bool is_hidden(const plw_tube *const *tubes, size_t count, const plw_tube
     return hidden;
 }
 
+/* Lay what is wrong with a file behind what is wrong with others, as long as it is said whole. */
+static void add_faults(plw_error *faults, const plw_error *reason) {
+    static const char more[] = "... and further files are faulty";
+    const size_t used = strlen(faults->text);
+    if (used == 0) {
+        *faults = *reason;
+    } else if (used + strlen(reason->text) + sizeof more + 2 < sizeof faults->text) {
+        plw_error_add(faults, "%s", reason->text);
+    } else if (strstr(faults->text, more) == NULL) {
+        plw_error_add(faults, "%s", more);
+    }
+}
+
+/* Load every tube file; what is wrong with one is kept in all_faults, and the next is loaded. */
+static plw_status load_all(plw_catalogue *catalogue, tube_pointer *all, size_t *used, plw_error *error) {
+    for (size_t i = 0; i < catalogue->files_count; i++) {
+        const plw_tube *tube = NULL;
+        plw_error reason = {.status = PLW_OK};
+        plw_status status = index_file(catalogue, i, error);
+        if (status == PLW_OK && !catalogue->files[i].foreign) {
+            status = load(catalogue, i, &tube, &reason);
+        }
+        if (status == PLW_E_NO_MEMORY) {
+            return out_of_memory(error);
+        }
+        if (status != PLW_OK) {
+            add_faults(&catalogue->all_faults, &reason);
+        } else if (tube != NULL && !is_hidden(all, *used, tube)) {
+            all[(*used)++] = tube;
+        }
+    }
+    return PLW_OK;
+}
+
 plw_status plw_catalogue_all(plw_catalogue *catalogue, const plw_tube *const **tubes, size_t *count, plw_error *error) {
     if (catalogue->all == NULL) {
         tube_pointer *all = calloc(catalogue->files_count + 1, sizeof(tube_pointer));
@@ -503,16 +544,11 @@ plw_status plw_catalogue_all(plw_catalogue *catalogue, const plw_tube *const **t
         if (all == NULL) {
             return out_of_memory(error);
         }
-        for (size_t i = 0; i < catalogue->files_count; i++) {
-            const plw_tube *tube = NULL;
-            const plw_status status = load(catalogue, i, &tube, error);
-            if (status != PLW_OK) {
-                free((void *)all);
-                return status;
-            }
-            if (!is_hidden(all, used, tube)) {
-                all[used++] = tube;
-            }
+        catalogue->all_faults = (plw_error){.status = PLW_OK};
+        const plw_status status = load_all(catalogue, all, &used, error);
+        if (status != PLW_OK) {
+            free((void *)all);
+            return status;
         }
         qsort((void *)all, used, sizeof(tube_pointer), compare_tubes);
         catalogue->all = all;
@@ -520,5 +556,6 @@ plw_status plw_catalogue_all(plw_catalogue *catalogue, const plw_tube *const **t
     }
     *tubes = catalogue->all;
     *count = catalogue->all_count;
-    return PLW_OK;
+    const plw_error *faults = &catalogue->all_faults;
+    return faults->status == PLW_OK ? PLW_OK : plw_fail(error, faults->status, "%s", faults->text);
 }

@@ -51,10 +51,13 @@ static void the_list_has_a_line_for_each_variant(void **state) {
     char *text = NULL;
     plw_error error = {0};
     assert_int_equal(plw_tubes_text(entries, 3, &text, &error), PLW_OK);
-    assert_non_null(strstr(text, "\n6V6GT     beam      octal               12       2     6.3    0.45"));
-    assert_non_null(strstr(text, "\n6V6GTA    beam      octal               14 "));
-    assert_non_null(strstr(text, "  as 6V6GT\n"));
-    assert_non_null(strstr(text, "\nGZ34      rectifier octal                -       -       5     1.9"));
+    assert_non_null(strstr(text, "\n6V6GT    beam      octal                  12      2  6.3  0.45"));
+    assert_non_null(strstr(text, "\n6V6GTA   beam      octal                  14 "));
+    assert_non_null(strstr(text, "\n         as 6V6GT\n"));
+    assert_non_null(strstr(text, "\nGZ34     rectifier octal                   -      -    5   1.9"));
+    plw_text_free(text);
+    assert_int_equal(plw_tubes_names(entries, 3, &text, &error), PLW_OK);
+    assert_string_equal(text, "6V6GT\n6V6\n6V6G\n6V6GTA\nGZ34\n5AR4\n");
     plw_text_free(text);
     assert_int_equal(plw_tubes_json(entries, 3, &text, &error), PLW_OK);
     json_t *root = parsed(text);
