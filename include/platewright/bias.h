@@ -14,7 +14,7 @@ extern "C" {
 typedef enum {
     PLW_AIM_DISSIPATION, /* a share of the rated plate dissipation, in percent */
     PLW_AIM_CURRENT,     /* plate current (as a triode: plate and screen together) of one tube, in A */
-    PLW_AIM_POWER        /* the most power at the limit of drive, every rating kept at rest and driven */
+    PLW_AIM_POWER        /* the most power within plw_stage_clean_percent(), every rating kept at rest and driven */
 } plw_aim_kind;
 
 typedef struct {
@@ -35,7 +35,8 @@ typedef struct {
     double watts;        /* dissipated */
     double rating_watts; /* usual size with the margin; NaN: no usual size */
     plw_quiescent quiescent;
-    plw_signal signal;
+    plw_signal signal; /* at full drive */
+    plw_signal clean;  /* at the largest drive within plw_stage_clean_percent() */
     plw_rating_check ratings[PLW_RATING_CHECKS_MOST];
     size_t ratings_count;
     bool within_ratings;

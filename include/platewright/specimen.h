@@ -24,20 +24,26 @@ typedef struct {
     double model_cathode_amps; /* the bogey tube at the same voltages */
     double off_percent;        /* this tube's cathode current against the bogey's */
     double primary_ohms;       /* from supply and plate readings; NaN when not both were taken */
-    plw_stage stage;           /* the stage with a model scaled to this tube; its tube is &tube */
-    plw_tube tube;             /* shallow copy with the scaled law: do not free */
+    char doubt[320];           /* what can hardly be true of the readings; empty when nothing strikes */
+    bool as_built_solved;
+    plw_bias_option as_built; /* the stage as built with this very tube: rest, signal, ratings */
+    plw_stage stage;          /* the stage with a model scaled to this tube; its tube is &tube */
+    plw_tube tube;            /* shallow copy with the scaled law: do not free */
     bool resistor_found;
     plw_bias_choice choice;      /* the resistor that would suit this very tube */
     char resistor_obstacle[256]; /* why none was found */
 } plw_specimen;
 
-/* In:   a stage with a cathode resistor (with fixed bias nothing tells the current), its point of rest, the readings
+/* Spread beyond which a tube is not believed: printed acceptance limits of power tubes are 25 to 30 % either way. */
+#define PLW_SPECIMEN_MOST_PERCENT 60.0
+#define PLW_SPECIMEN_LEAST_PERCENT (-50.0)
+
+/* In:   a stage with a cathode resistor (with fixed bias the cathode does not tell the current), the readings
  * Out:  *specimen; its stage points into itself: do not copy it by value
  * Ret:  PLW_OK; PLW_E_USAGE: no cathode reading, fixed bias, readings that contradict each other (plate above supply,
  *       cathode above plate) */
-PLW_API plw_status plw_specimen_measure(const plw_stage *stage, const plw_quiescent *quiescent,
-                                        const plw_meter_readings *readings, plw_aim aim, plw_series series,
-                                        plw_specimen *specimen, plw_error *error) PLW_MUST_USE;
+PLW_API plw_status plw_specimen_measure(const plw_stage *stage, const plw_meter_readings *readings, plw_aim aim,
+                                        plw_series series, plw_specimen *specimen, plw_error *error) PLW_MUST_USE;
 
 #ifdef __cplusplus
 }

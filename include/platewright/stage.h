@@ -58,7 +58,7 @@ PLW_API plw_stage plw_stage_ideal(void);
  * Ret:  PLW_OK; PLW_E_USAGE: none or contradicting (more than 2 % apart), secondary copper without a ratio */
 PLW_API plw_status plw_stage_settle_load(plw_stage *stage, plw_error *error) PLW_MUST_USE;
 
-/* Is this a stage that can be solved?  Ranges: 1 ohm <= load <= 1 megohm; copper 0..100 kohm; 10..5000 V supply;
+/* Is this a stage that can be solved?  Ranges: 50 ohm <= load <= 1 megohm; copper 0..100 kohm; 10..5000 V supply;
  * resistors 0.1 ohm..1 megohm; fixed bias -2000..0 V; 0 < tap < 1 in ultralinear working, and no tap otherwise.
  * In:   bias_wanted: the cathode resistor or fixed bias must be there
  * Ret:  PLW_OK; PLW_E_USAGE naming the quantity, what it is, and what would be right */
@@ -133,6 +133,19 @@ typedef struct {
  * Source: Fourier analysis of the dynamic characteristic (e.g. E. L. Chaffee, Rev. Sci. Instr. 7, 1936). */
 PLW_API plw_status plw_signal_solve(const plw_stage *stage, const plw_quiescent *quiescent, plw_signal *signal,
                                     plw_error *error) PLW_MUST_USE;
+
+/* The distortion up to which makers print the power of an output stage: about 5 % for triodes (RCA receiving tube
+ * manuals), about 10 % for pentodes and beam tubes (the same, and Philips data sheets). */
+#define PLW_CLEAN_PERCENT_TRIODE 5.0
+#define PLW_CLEAN_PERCENT_SCREENED 10.0
+PLW_API double plw_stage_clean_percent(const plw_stage *stage);
+
+/* The cycle at the largest drive that keeps the distortion within a limit.
+ * In:   full: the cycle at the stage's own drive or limit; thd_percent > 0
+ * Out:  *signal: full itself where it keeps the limit
+ * Ret:  as plw_signal_solve() */
+PLW_API plw_status plw_signal_within(const plw_stage *stage, const plw_quiescent *quiescent, const plw_signal *full,
+                                     double thd_percent, plw_signal *signal, plw_error *error) PLW_MUST_USE;
 
 #ifdef __cplusplus
 }

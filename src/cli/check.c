@@ -122,15 +122,23 @@ static plw_status check(cli_work *work, const plw_meter_readings *readings, plw_
         status = plw_bias_option_solve(&work->stage, work->stage.cathode_resistor_ohms, &option, error);
     }
     if (status == PLW_OK && specimen != NULL) {
-        status =
-            plw_specimen_measure(&work->stage, &option.quiescent, readings, work->aim, work->series, specimen, error);
+        status = plw_specimen_measure(&work->stage, readings, work->aim, work->series, specimen, error);
     }
     if (status != PLW_OK) {
         return status;
     }
     cli_extras extras;
     plw_answer answer = {.stage = &work->stage, .option = &option, .specimen = specimen, .series = work->series};
-    *kept = option.within_ratings && (specimen == NULL || specimen_keeps_ratings(specimen));
+    *kept = option.within_ratings;
+    if (specimen != NULL) {
+        *kept = specimen_keeps_ratings(specimen);
+    }
+    if (specimen != NULL && specimen->as_built_solved) {
+        /* From here on it is this very tube that is judged. */
+        answer.stage = &specimen->stage;
+        answer.option = &specimen->as_built;
+        *kept = *kept && specimen->as_built.within_ratings;
+    }
     cli_work_complete(work, &answer, &extras, kept);
     status = cli_work_save(work, error);
     return status == PLW_OK ? cli_work_answer(work, &answer, error) : status;

@@ -61,8 +61,9 @@ static void put_quiescent(const plw_json_sink *parent, const plw_quiescent *rest
     plw_json_put_number(&total, "screen_watts", n * rest->screen_watts);
 }
 
-static void put_signal(const plw_json_sink *parent, const plw_signal *signal) {
-    const plw_json_sink s = plw_json_object_in(parent, "signal");
+/* "signal": at full drive.  "clean_signal": at the largest drive up to the distortion for which makers print power. */
+static void put_signal(const plw_json_sink *parent, const char *name, const plw_signal *signal) {
+    const plw_json_sink s = plw_json_object_in(parent, name);
     put_fields(&s, plw_signal_fields, plw_signal_fields_count, signal);
     json_t *harmonics = json_array();
     for (size_t h = 2; h <= PLW_HARMONICS_MOST; h++) {
@@ -122,7 +123,8 @@ static json_t *choices_array(const plw_bias_choice *choice, unsigned tubes, bool
         plw_json_put(&s, "chosen", json_boolean(i == choice->chosen));
         plw_json_put(&s, "within_ratings", json_boolean(option->within_ratings));
         put_quiescent(&s, &option->quiescent, tubes);
-        put_signal(&s, &option->signal);
+        put_signal(&s, "signal", &option->signal);
+        put_signal(&s, "clean_signal", &option->clean);
         plw_json_append(choices, s.object, failed);
     }
     return choices;
@@ -250,7 +252,8 @@ plw_status plw_report_json(const plw_answer *answer, char **text, plw_error *err
     put_bias(&root, answer);
     put_supply(&root, answer);
     put_quiescent(&root, &answer->option->quiescent, answer->stage->parallel);
-    put_signal(&root, &answer->option->signal);
+    put_signal(&root, "signal", &answer->option->signal);
+    put_signal(&root, "clean_signal", &answer->option->clean);
     put_ratings(&root, answer);
     plw_json_put(&root, "choices", choices_array(answer->choice, answer->stage->parallel, &failed));
     put_specimen(&root, answer->specimen);

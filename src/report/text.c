@@ -7,6 +7,7 @@
 #include "platewright/quantity.h"
 #include "platewright/report.h"
 #include "report/cautions.h"
+#include "report/fields.h"
 #include "report/layout.h"
 #include "report/supply_report.h"
 #include "report/text_buffer.h"
@@ -29,6 +30,27 @@ static void title(FILE *out, const plw_answer *a) {
     }
     fprintf(out, ", on %s, into %s\n\n", plw_cell_volts(a->option->quiescent.supply_volts).text,
             plw_cell_ohms(stage->load_ohms).text);
+}
+
+/* The worst of the ratings that are not kept, or that all are. */
+static void verdict_line(FILE *out, const plw_answer *a) {
+    const plw_bias_option *o = a->option;
+    const plw_rating_check *worst = NULL;
+    for (size_t index = 0; index < o->ratings_count; index++) {
+        const plw_rating_check *check = &o->ratings[index];
+        const bool sooner = worst != NULL && worst->when == PLW_AT_FULL_DRIVE && check->when == PLW_AT_IDLE;
+        if (!check->ok &&
+            (worst == NULL || sooner || (worst->when == check->when && check->share_percent > worst->share_percent))) {
+            worst = check;
+        }
+    }
+    if (worst == NULL) {
+        fputs("VERDICT           within every rating, at rest and at full drive\n", out);
+        return;
+    }
+    fprintf(out, "VERDICT           OVER A RATING %s: %s %s of %s\n",
+            worst->when == PLW_AT_IDLE ? "at rest" : "at full drive", worst->name,
+            plw_cell_quantity(worst->value, worst->unit, 3).text, plw_cell_quantity(worst->limit, worst->unit, 3).text);
 }
 
 static void aim_words(FILE *out, const plw_aim *aim) {
@@ -195,18 +217,39 @@ static void supply_lines(FILE *out, const plw_answer *a) {
     plw_put_supply_ratings(out, s);
 }
 
+/* Swing of the current that the load sees: in triode connection the screen's goes with the plate's. */
+static void current_swing(const plw_answer *a, double *least, double *most) {
+    const plw_signal *s = &a->option->signal;
+    *least = s->plate_amps_least;
+    *most = s->plate_amps_most;
+    if (plw_stage_currents_together(a->stage)) {
+        *least = HUGE_VAL;
+        *most = 0.0;
+        for (size_t index = 0; index < PLW_PATH_POINTS; index++) {
+            const double amps = s->path_plate_amps[index] + s->path_screen_amps[index];
+            *least = fmin(*least, amps);
+            *most = fmax(*most, amps);
+        }
+    }
+}
+
 static void power_lines(FILE *out, const plw_answer *a) {
     const plw_signal *s = &a->option->signal;
-    const bool copper = s->power_watts > 1.0005 * s->speaker_watts;
+    const plw_signal *clean = &a->option->clean;
+    const double percent = plw_stage_clean_percent(a->stage);
+    if (clean->drive_peak_volts < s->drive_peak_volts) {
+        fprintf(out, "\nUP TO %2.0f %%         %s at the speaker, drive %s peak at the grid\n", percent,
+                plw_cell_watts(clean->speaker_watts).text, plw_cell_volts(clean->drive_peak_volts).text);
+        fputs("                  (the distortion up to which makers print power)\n", out);
+    }
     fprintf(out, "\nFULL DRIVE        %s at the speaker", plw_cell_watts(s->speaker_watts).text);
-    if (copper) {
-        fprintf(out, ", %s at the plate (copper takes the rest)", plw_cell_watts(s->power_watts).text);
+    if (s->power_watts > 1.0005 * s->speaker_watts) {
+        fprintf(out, ", %s at the plate", plw_cell_watts(s->power_watts).text);
     }
     fprintf(out, "\n                  distortion %.1f %% (2nd %.1f, 3rd %.1f, 4th %.1f, 5th %.1f)\n", s->thd_percent,
             fabs(s->harmonic_percent[2]), fabs(s->harmonic_percent[3]), fabs(s->harmonic_percent[4]),
             fabs(s->harmonic_percent[5]));
-    fprintf(out, "                  drive %s peak at the grid (%s RMS)", plw_cell_volts(s->drive_peak_volts).text,
-            plw_cell_volts(s->drive_peak_volts / sqrt(2.0)).text);
+    fprintf(out, "                  drive %s peak at the grid", plw_cell_volts(s->drive_peak_volts).text);
     if (s->limit == PLW_DRIVE_GIVEN) {
         fputs(", as given\n", out);
     } else {
@@ -217,9 +260,12 @@ static void power_lines(FILE *out, const plw_answer *a) {
                 plw_cell_ohms(a->stage->driver_ohms).text, plw_cell_amps(s->grid_amps_most).text);
         fprintf(out, "                  %s on the average\n", plw_cell_amps(s->grid_amps).text);
     }
+    double least_amps;
+    double most_amps;
+    current_swing(a, &least_amps, &most_amps);
     fprintf(out, "                  plate to cathode swings %s to %s, %s to %s\n",
             plw_cell_volts(s->plate_volts_least).text, plw_cell_volts(s->plate_volts_most).text,
-            plw_cell_amps(s->plate_amps_least).text, plw_cell_amps(s->plate_amps_most).text);
+            plw_cell_amps(least_amps).text, plw_cell_amps(most_amps).text);
 }
 
 static void neighbour_lines(FILE *out, const plw_answer *a) {
@@ -227,16 +273,18 @@ static void neighbour_lines(FILE *out, const plw_answer *a) {
     if (choice == NULL || choice->options < 2) {
         return;
     }
-    fputs("\nA STEP EITHER WAY   cathode     plate   dissipation   at speaker  distortion\n", out);
+    fprintf(out, "\nA STEP EITHER WAY   cathode     plate  dissipation  up to %2.0f %%      full drive\n",
+            plw_stage_clean_percent(a->stage));
     for (size_t index = 0; index < choice->options; index++) {
         const plw_bias_option *o = &choice->option[index];
         fputs(index == choice->chosen ? "  > " : "    ", out);
         plw_put_right(out, plw_cell_ohms(o->ohms).text, 9);
         plw_put_right(out, plw_cell_volts(o->quiescent.cathode_volts).text, 14);
         plw_put_right(out, plw_cell_amps(o->quiescent.plate_amps).text, 10);
-        plw_put_right(out, plw_cell_watts(o->quiescent.plate_watts).text, 14);
-        plw_put_right(out, plw_cell_watts(o->signal.speaker_watts).text, 13);
-        fprintf(out, "%9.1f %%%s\n", o->signal.thd_percent, o->within_ratings ? "" : "  over a rating");
+        plw_put_right(out, plw_cell_watts(o->quiescent.plate_watts).text, 13);
+        plw_put_right(out, plw_cell_watts(o->clean.speaker_watts).text, 11);
+        plw_put_right(out, plw_cell_watts(o->signal.speaker_watts).text, 10);
+        fprintf(out, " %4.1f %%%s\n", o->signal.thd_percent, o->within_ratings ? "" : " !!");
     }
 }
 
@@ -246,11 +294,12 @@ static void specimen_lines(FILE *out, const plw_answer *a) {
         return;
     }
     fputs("\nTHIS TUBE, BY THE METER\n", out);
-    fprintf(out, "  current            cathode %s: %s", plw_cell_volts(s->cathode_volts).text,
-            plw_cell_amps(s->cathode_amps).text);
+    const bool shared = a->stage->parallel > 1 && !a->stage->resistor_each;
+    fprintf(out, "  current            cathode %s: %s%s", plw_cell_volts(s->cathode_volts).text,
+            plw_cell_amps(s->cathode_amps).text, shared ? " each, if they share equally" : "");
     if (isfinite(s->screen_volts)) {
-        fprintf(out, "; plate %s, screen %s (model's share)", plw_cell_amps(s->plate_amps).text,
-                plw_cell_amps(s->screen_amps).text);
+        fprintf(out, ";\n                     plate %s, screen %s (the model's share)",
+                plw_cell_amps(s->plate_amps).text, plw_cell_amps(s->screen_amps).text);
     }
     fprintf(out, "\n  heat               plate %s", plw_cell_watts(s->plate_watts).text);
     if (isfinite(s->screen_watts)) {
@@ -262,9 +311,15 @@ static void specimen_lines(FILE *out, const plw_answer *a) {
     if (isfinite(s->primary_ohms)) {
         fprintf(out, "  copper             %s between supply and plate\n", plw_cell_ohms(s->primary_ohms).text);
     }
+    if (s->doubt[0] != '\0') {
+        plw_put_paragraph(out, "  DOUBTFUL           ", s->doubt);
+    }
     if (!s->plate_read || !s->supply_read) {
         fprintf(out, "  not read           so taken from the model:%s%s\n", s->supply_read ? "" : " supply",
                 s->plate_read ? "" : " plate");
+    }
+    if (s->off_percent > PLW_SPECIMEN_MOST_PERCENT || s->off_percent < PLW_SPECIMEN_LEAST_PERCENT) {
+        return; /* a resistor for readings that are not believed would be no help */
     }
     if (s->resistor_found) {
         const plw_bias_option *o = &s->choice.option[s->choice.chosen];
@@ -351,7 +406,9 @@ plw_status plw_report_text(const plw_answer *answer, char **text, plw_error *err
     }
     FILE *out = buffer.file;
     title(out, answer);
+    verdict_line(out, answer);
     bias_lines(out, answer);
+    specimen_lines(out, answer);
     meter_lines(out, answer);
     tube_lines(out, answer);
     rating_lines(out, answer);
@@ -361,7 +418,6 @@ plw_status plw_report_text(const plw_answer *answer, char **text, plw_error *err
     supply_lines(out, answer);
     power_lines(out, answer);
     neighbour_lines(out, answer);
-    specimen_lines(out, answer);
     ideal_line(out, answer);
     trust_lines(out, answer);
     caution_lines(out, answer);

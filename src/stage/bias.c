@@ -9,9 +9,11 @@
 #include "platewright/quantity.h"
 
 #define LEAST_OHMS 1.0
+#define LEAST_AIM_PERCENT 5.0 /* less is a slip: 0.9 for 90 % */
 #define MOST_OHMS 1e6
 #define SCAN_STEPS_PER_DECADE 12
 #define STEPS_UP_MOST 240
+#define DRIVEN_RAISE_MOST 1.15 /* a rating broken only under drive is worth this much more resistance */
 
 plw_status plw_bias_option_solve(const plw_stage *stage, double ohms, plw_bias_option *option, plw_error *error) {
     plw_stage trial = *stage;
@@ -22,6 +24,9 @@ plw_status plw_bias_option_solve(const plw_stage *stage, double ohms, plw_bias_o
     plw_status status = plw_quiescent_solve(&trial, &o.quiescent, error);
     if (status == PLW_OK) {
         status = plw_signal_solve(&trial, &o.quiescent, &o.signal, error);
+    }
+    if (status == PLW_OK) {
+        status = plw_signal_within(&trial, &o.quiescent, &o.signal, plw_stage_clean_percent(&trial), &o.clean, error);
     }
     if (status != PLW_OK) {
         return status;
@@ -133,8 +138,9 @@ static const plw_rating_check *broken_at_rest(const plw_bias_option *option, boo
 static void describe(const plw_rating_check *check, char *text, size_t size) {
     char value[32];
     char limit[32];
-    snprintf(text, size, "%s %s is over the %s allowed", check->name,
+    snprintf(text, size, "%s %s%s is over the %s allowed", check->name,
              plw_quantity_format(check->value, check->unit, 3, value, sizeof value),
+             check->when == PLW_AT_FULL_DRIVE ? " at full drive" : "",
              plw_quantity_format(check->limit, check->unit, 3, limit, sizeof limit));
 }
 
@@ -182,6 +188,30 @@ static plw_status step_into_ratings(const plw_stage *stage, plw_series series, p
                     remedy(&last, stage));
 }
 
+/* Where only a rating at full drive is broken, a little more resistance may cure it: taken when it does, else left.
+ * Out: *stepped, *first as above */
+static void step_into_driven_ratings(const plw_stage *stage, plw_series series, plw_bias_option *option, bool *stepped,
+                                     plw_rating_check *first) {
+    plw_bias_option trial = *option;
+    while (!trial.within_ratings) {
+        plw_error ignored = {0};
+        const double next = plw_preferred_step(trial.ohms, 1, series);
+        if (!(next <= DRIVEN_RAISE_MOST * option->ohms) ||
+            plw_bias_option_solve(stage, next, &trial, &ignored) != PLW_OK) {
+            return;
+        }
+    }
+    if (trial.within_ratings && !option->within_ratings) {
+        for (size_t index = 0; index < option->ratings_count && !*stepped; index++) {
+            if (!option->ratings[index].ok) {
+                *first = option->ratings[index];
+                *stepped = true;
+            }
+        }
+        *option = trial;
+    }
+}
+
 /* ---- neighbours ---------------------------------------------------------------------------------------------------
  */
 
@@ -211,7 +241,7 @@ static double kept_power(const plw_stage *stage, double ohms, plw_bias_option *o
     if (plw_bias_option_solve(stage, ohms, option, &ignored) != PLW_OK) {
         return -1.0;
     }
-    return option->within_ratings ? option->signal.speaker_watts : -1.0;
+    return option->within_ratings ? option->clean.speaker_watts : -1.0;
 }
 
 static bool choose_most_power(const plw_stage *stage, plw_series series, plw_bias_choice *choice) {
@@ -232,16 +262,19 @@ static bool choose_most_power(const plw_stage *stage, plw_series series, plw_bia
     }
     /* The best resistance that need not be a preferred value lies between the neighbours. */
     double best_ohms = best.ohms;
-    const double low = plw_preferred_step(best.ohms, -1, series);
-    const double high = plw_preferred_step(best.ohms, 1, series);
-    for (int part = 1; part < 64; part++) {
-        plw_bias_option option;
-        const double ohms = low * pow(high / low, part / 64.0);
-        const double watts = kept_power(stage, ohms, &option);
-        if (watts > best_watts) {
-            best_watts = watts;
-            best_ohms = ohms;
+    double step = plw_preferred_step(best.ohms, 1, series) / best.ohms;
+    for (int pass = 0; pass < 2; pass++) {
+        const double middle = best_ohms;
+        for (int part = -31; part <= 31; part++) {
+            plw_bias_option option;
+            const double ohms = middle * pow(step, part / 32.0);
+            const double watts = kept_power(stage, ohms, &option);
+            if (watts > best_watts) {
+                best_watts = watts;
+                best_ohms = ohms;
+            }
         }
+        step = pow(step, 1.0 / 32.0);
     }
     choice->exact_ohms = best_ohms;
     choice->aim_reached = true;
@@ -261,9 +294,10 @@ static plw_status validate_aim(const plw_stage *stage, plw_aim aim, plw_error *e
         return plw_fail(error, PLW_E_USAGE,
                         "fixed-bias: there is no cathode resistor to choose; check the stage instead");
     }
-    if (aim.kind == PLW_AIM_DISSIPATION && !(aim.value > 0.0 && aim.value <= 100.0)) {
+    if (aim.kind == PLW_AIM_DISSIPATION && !(aim.value >= LEAST_AIM_PERCENT && aim.value <= 100.0)) {
         return plw_fail(error, PLW_E_USAGE,
-                        "aim: %.4g %% of the rated dissipation; more than 0 and up to 100 %% is possible", aim.value);
+                        "aim: %.4g %% of the rated dissipation; %g to 100 %% is possible, as in dissipation=90%%",
+                        aim.value, LEAST_AIM_PERCENT);
     }
     if (aim.kind == PLW_AIM_CURRENT && !(aim.value > 0.0 && aim.value <= 5.0)) {
         return plw_fail(error, PLW_E_USAGE, "aim: a plate current of %.4g A; more than 0 and up to 5 A is possible",
@@ -311,7 +345,7 @@ static void note_obstacle(const plw_stage *stage, const plw_rating_check *steppe
         char what[128];
         describe(told, what, sizeof what);
         snprintf(choice->obstacle, sizeof choice->obstacle, "%s%s; %s",
-                 stepped_for != NULL ? "at the aim " : "whatever the resistor ", what, remedy(told, stage));
+                 stepped_for != NULL ? "at the aim the " : "whatever the resistor, the ", what, remedy(told, stage));
     }
 }
 
@@ -354,6 +388,7 @@ plw_status plw_bias_choose(const plw_stage *stage, plw_aim aim, plw_series serie
     if (status != PLW_OK) {
         return status;
     }
+    step_into_driven_ratings(stage, series, &chosen, &stepped, &stepped_for);
     /* One step up after rounding down over a rating is rounding, not an obstacle. */
     stepped = stepped && chosen.ohms > plw_preferred_at_least(found.exact_ohms, series);
     add_neighbours(stage, series, &chosen, &found);

@@ -107,3 +107,38 @@ plw_status plw_signal_solve(const plw_stage *stage, const plw_quiescent *quiesce
     *signal = s;
     return PLW_OK;
 }
+
+double plw_stage_clean_percent(const plw_stage *stage) {
+    return plw_stage_is_triode(stage) ? PLW_CLEAN_PERCENT_TRIODE : PLW_CLEAN_PERCENT_SCREENED;
+}
+
+plw_status plw_signal_within(const plw_stage *stage, const plw_quiescent *quiescent, const plw_signal *full,
+                             double thd_percent, plw_signal *signal, plw_error *error) {
+    if (!(full->thd_percent > thd_percent)) {
+        *signal = *full;
+        return PLW_OK;
+    }
+    plw_stage driven = *stage;
+    double within = 0.0;
+    double beyond = full->drive_peak_volts;
+    plw_signal best = *full;
+    bool found = false;
+    /* Distortion grows with drive; where it does not quite, the halving still ends at a place where it crosses. */
+    for (int halving = 0; halving < 60 && (!found || beyond - within > 1e-4 * beyond); halving++) {
+        driven.drive_peak_volts = 0.5 * (within + beyond);
+        plw_signal trial;
+        const plw_status status = plw_signal_solve(&driven, quiescent, &trial, error);
+        if (status != PLW_OK) {
+            return status;
+        }
+        if (trial.thd_percent <= thd_percent) {
+            within = driven.drive_peak_volts;
+            best = trial;
+            found = true;
+        } else {
+            beyond = driven.drive_peak_volts;
+        }
+    }
+    *signal = best;
+    return PLW_OK;
+}

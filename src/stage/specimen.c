@@ -11,8 +11,8 @@
 static plw_status validate_readings(const plw_stage *stage, const plw_meter_readings *r, plw_error *error) {
     if (!isfinite(stage->cathode_resistor_ohms)) {
         return plw_fail(error, PLW_E_USAGE,
-                        "measured: with fixed bias the cathode's voltage does not tell the current; put 10 ohm in the "
-                        "cathode lead, or measure across the primary's known resistance");
+                        "measured: with fixed bias the cathode stands at the chassis and does not tell the current; "
+                        "meter readings are understood of stages with a cathode resistor");
     }
     if (!isfinite(r->cathode_volts)) {
         return plw_fail(error, PLW_E_USAGE,
@@ -27,8 +27,14 @@ static plw_status validate_readings(const plw_stage *stage, const plw_meter_read
                     {"supply", r->supply_volts}};
     for (size_t index = 0; index < sizeof readings / sizeof readings[0]; index++) {
         if (!isnan(readings[index].volts) && !(readings[index].volts > 0.0 && readings[index].volts <= 5000.0)) {
-            return plw_fail(error, PLW_E_USAGE, "measured: %s reads %.4g V; more than 0 and up to 5000 V is possible",
-                            readings[index].name, readings[index].volts);
+            return index == 0 && readings[index].volts == 0.0
+                       ? plw_fail(
+                             error, PLW_E_USAGE,
+                             "measured: 0 V at the cathode: no current flows, or the bypass capacitor or the resistor "
+                             "is shorted; find out which before going on")
+                       : plw_fail(error, PLW_E_USAGE,
+                                  "measured: %s reads %.4g V; more than 0 and up to 5000 V is possible",
+                                  readings[index].name, readings[index].volts);
         }
         if (index > 0 && readings[index].volts <= r->cathode_volts) {
             return plw_fail(error, PLW_E_USAGE, "measured: %s (%.4g V) is not above the cathode (%.4g V)",
@@ -120,13 +126,55 @@ static void measured_stage(const plw_stage *stage, const plw_circuit *circuit, p
     }
 }
 
-plw_status plw_specimen_measure(const plw_stage *stage, const plw_quiescent *quiescent,
-                                const plw_meter_readings *readings, plw_aim aim, plw_series series,
-                                plw_specimen *specimen, plw_error *error) {
-    (void)quiescent;
+/* Plate and screen cannot stand above what feeds them; without a reading of the supply, the one described counts. */
+static plw_status compare_with_supply(const plw_stage *stage, const plw_meter_readings *r, plw_error *error) {
+    double volts;
+    double ohms;
+    double least;
+    double most;
+    plw_supply_range(&stage->supply, &least, &most);
+    plw_supply_at(&stage->supply, least, &volts, &ohms);
+    const double supply = isfinite(r->supply_volts) ? r->supply_volts : volts;
+    const double screen_supply = isfinite(stage->screen_supply_volts) ? stage->screen_supply_volts : supply;
+    const bool plate = r->plate_volts > 1.05 * supply;
+    if (plate || r->screen_volts > 1.05 * screen_supply) {
+        return plw_fail(
+            error, PLW_E_USAGE,
+            "measured: the %s reads %.4g V, above the %.4g V that feed it; read the supply too, or mend its "
+            "description",
+            plate ? "plate" : "screen", plate ? r->plate_volts : r->screen_volts, plate ? supply : screen_supply);
+    }
+    return PLW_OK;
+}
+
+/* What can hardly be true of the readings, though nothing forbids it. */
+static void doubt_readings(const plw_stage *told, plw_specimen *s) {
+    s->doubt[0] = '\0';
+    if (s->off_percent > PLW_SPECIMEN_MOST_PERCENT) {
+        snprintf(
+            s->doubt, sizeof s->doubt,
+            "No spread of tubes explains this much current: look for a leaky coupling capacitor, another tube type, "
+            "another cathode resistor than told, or a misread meter.");
+    } else if (s->off_percent < PLW_SPECIMEN_LEAST_PERCENT) {
+        snprintf(s->doubt, sizeof s->doubt,
+                 "No spread of tubes explains this little current: look for a worn-out tube, a cold heater, a shorted "
+                 "bypass capacitor, another cathode resistor than told, or a misread meter.");
+    } else if (told->primary_ohms > 0.0 &&
+               fabs(s->primary_ohms - told->primary_ohms) > 0.4 * told->primary_ohms + 50.0) {
+        snprintf(s->doubt, sizeof s->doubt,
+                 "Between supply and plate lie %.0f ohm, where the primary was told to have %.0f: read both again.",
+                 s->primary_ohms, told->primary_ohms);
+    }
+}
+
+plw_status plw_specimen_measure(const plw_stage *stage, const plw_meter_readings *readings, plw_aim aim,
+                                plw_series series, plw_specimen *specimen, plw_error *error) {
     plw_status status = plw_stage_validate(stage, true, error);
     if (status == PLW_OK) {
         status = validate_readings(stage, readings, error);
+    }
+    if (status == PLW_OK) {
+        status = compare_with_supply(stage, readings, error);
     }
     if (status != PLW_OK) {
         return status;
@@ -162,6 +210,9 @@ plw_status plw_specimen_measure(const plw_stage *stage, const plw_quiescent *qui
     s->screen_watts = s->screen_volts * s->screen_amps;
     s->off_percent = 100.0 * (s->cathode_amps / s->model_cathode_amps - 1.0);
     measured_stage(stage, &circuit, s);
+    doubt_readings(stage, s);
+    plw_error unsolved = {0};
+    s->as_built_solved = plw_bias_option_solve(&s->stage, (double)NAN, &s->as_built, &unsolved) == PLW_OK;
     plw_stage wanted = s->stage;
     wanted.cathode_resistor_ohms = (double)NAN;
     plw_error why = {0};

@@ -7,6 +7,7 @@
 #include "platewright/quantity.h"
 
 #define UNKNOWN ((double)NAN)
+#define LEAST_LOAD_OHMS 50.0 /* what is less is a speaker, not its reflection at the plate */
 
 plw_stage plw_stage_ideal(void) {
     return (plw_stage){
@@ -151,12 +152,19 @@ plw_status plw_stage_validate(const plw_stage *stage, bool bias_wanted, plw_erro
     if (status == PLW_OK) {
         status = validate_bias(stage, bias_wanted, error);
     }
+    if (status == PLW_OK && stage->load_ohms > 0.0 && stage->load_ohms < LEAST_LOAD_OHMS) {
+        return plw_fail(
+            error, PLW_E_USAGE,
+            "load: %.3g ohm is a speaker's impedance; the plate sees it through the transformer: give the ratio "
+            "of turns and the speaker, or the reflected load, such as 5k",
+            stage->load_ohms);
+    }
     const struct {
         const char *name;
         double value, least, most;
         plw_unit unit;
     } ranges[] = {
-        {"load", stage->load_ohms, 1.0, 1e6, PLW_UNIT_OHM},
+        {"load", stage->load_ohms, LEAST_LOAD_OHMS, 1e6, PLW_UNIT_OHM},
         {"primary-ohms", stage->primary_ohms, 0.0, 1e5, PLW_UNIT_OHM},
         {"secondary-ohms", stage->secondary_ohms, 0.0, 1e5, PLW_UNIT_OHM},
         {"screen-resistor", stage->screen_resistor_ohms, 0.0, 1e6, PLW_UNIT_OHM},

@@ -146,6 +146,7 @@ static void the_value_is_rounded_and_solved_again(void **state) {
     static const plw_series series[] = {PLW_E6, PLW_E12, PLW_E24, PLW_E48, PLW_E96, PLW_E192};
     test_tube tube;
     make_rated(&tube);
+    tube.ratings[0].screen_watts_full_drive = 10.0; /* no rating in the way */
     const plw_stage stage = rated_stage(&tube);
     for (size_t index = 0; index < sizeof series / sizeof series[0]; index++) {
         const plw_bias_choice c = chosen(&stage, PLW_AIM_DISSIPATION, 65.0, series[index]);
@@ -205,6 +206,48 @@ static void a_current_rating_stands_in_the_way(void **state) {
     const plw_bias_option *option = &c.option[c.chosen];
     assert_true(option->quiescent.cathode_amps <= 30e-3);
     assert_true(rest_at(&stage, plw_preferred_step(option->ohms, -1, PLW_E24)).cathode_amps > 30e-3);
+}
+
+/* Over the screen's rating under drive at the aim, within it one step of E24 up: that step is taken, and told. */
+static void a_driven_rating_is_worth_a_step(void **state) {
+    (void)state;
+    test_tube tube;
+    make_rated(&tube);
+    tube.ratings[0].screen_watts_full_drive = 10.0;
+    const plw_stage stage = rated_stage(&tube);
+    const plw_bias_choice free = chosen(&stage, PLW_AIM_DISSIPATION, 65.0, PLW_E24);
+    assert_true(free.aim_reached);
+    const double at_aim = free.option[free.chosen].signal.screen_watts;
+    const double above = free.option[free.chosen + 1].signal.screen_watts;
+    assert_true(above < at_aim);
+    tube.ratings[0].screen_watts_full_drive = 0.5 * (at_aim + above);
+    const plw_bias_choice raised = chosen(&stage, PLW_AIM_DISSIPATION, 65.0, PLW_E24);
+    assert_near(raised.option[raised.chosen].ohms, free.option[free.chosen + 1].ohms, 0.0, "one step up");
+    assert_true(raised.option[raised.chosen].within_ratings);
+    /* Where even much more resistance would not do, the aim is kept and the rating told. */
+    tube.ratings[0].screen_watts_full_drive = 0.3 * above;
+    const plw_bias_choice kept = chosen(&stage, PLW_AIM_DISSIPATION, 65.0, PLW_E24);
+    assert_near(kept.option[kept.chosen].ohms, free.option[free.chosen].ohms, 0.0, "the aim's own value");
+    assert_false(kept.option[kept.chosen].within_ratings);
+}
+
+/* The clean power: distortion at its limit, or full drive where that keeps it. */
+static void clean_power_keeps_its_distortion(void **state) {
+    (void)state;
+    test_tube tube;
+    make_rated(&tube);
+    const plw_stage stage = rated_stage(&tube);
+    for (double ohms = 150.0; ohms < 1200.0; ohms *= 1.3) {
+        plw_bias_option o;
+        assert_int_equal(plw_bias_option_solve(&stage, ohms, &o, NULL), PLW_OK);
+        if (o.signal.thd_percent > PLW_CLEAN_PERCENT_SCREENED) {
+            assert_near(o.clean.thd_percent, PLW_CLEAN_PERCENT_SCREENED, 0.01,
+                        "halved to a ten-thousandth of the drive");
+            assert_true(o.clean.drive_peak_volts < o.signal.drive_peak_volts);
+        } else {
+            assert_near(o.clean.speaker_watts, o.signal.speaker_watts, 0.0, "full drive keeps the limit");
+        }
+    }
 }
 
 static void a_voltage_rating_stays_broken_whatever_the_resistor(void **state) {
@@ -292,26 +335,26 @@ static void check_best(const plw_stage *stage, plw_series series) {
     while (ohms <= 1e6) {
         plw_bias_option option;
         if (plw_bias_option_solve(stage, ohms, &option, NULL) == PLW_OK && option.within_ratings &&
-            option.signal.speaker_watts > best) {
-            best = option.signal.speaker_watts;
+            option.clean.speaker_watts > best) {
+            best = option.clean.speaker_watts;
             best_ohms = ohms;
         }
         ohms = plw_preferred_step(ohms, 1, series);
     }
     const plw_bias_option *option = &c.option[c.chosen];
     assert_near(option->ohms, best_ohms, 0.0, "exhaustive scan");
-    assert_near(option->signal.speaker_watts, best, 0.0, "exhaustive scan");
+    assert_near(option->clean.speaker_watts, best, 0.0, "exhaustive scan");
     assert_true(option->within_ratings);
     plw_bias_option exact;
     assert_int_equal(plw_bias_option_solve(stage, c.exact_ohms, &exact, NULL), PLW_OK);
-    assert_true(exact.within_ratings && exact.signal.speaker_watts >= best);
+    assert_true(exact.within_ratings && exact.clean.speaker_watts >= best);
     /* No resistance between the neighbours gives noticeably more. */
     for (int part = 0; part < 300; part++) {
         plw_bias_option option_between;
         const double low = plw_preferred_step(best_ohms, -1, series), high = plw_preferred_step(best_ohms, 1, series);
         if (plw_bias_option_solve(stage, low * pow(high / low, part / 300.0), &option_between, NULL) == PLW_OK &&
             option_between.within_ratings) {
-            assert_true(option_between.signal.speaker_watts <= 1.003 * exact.signal.speaker_watts);
+            assert_true(option_between.clean.speaker_watts <= 1.003 * exact.clean.speaker_watts);
         }
     }
 }
@@ -356,6 +399,8 @@ int main(void) {
         cmocka_unit_test(a_fixed_bias_is_an_option_too),
         cmocka_unit_test(rounding_never_ends_above_the_rating),
         cmocka_unit_test(a_current_rating_stands_in_the_way),
+        cmocka_unit_test(a_driven_rating_is_worth_a_step),
+        cmocka_unit_test(clean_power_keeps_its_distortion),
         cmocka_unit_test(a_voltage_rating_stays_broken_whatever_the_resistor),
         cmocka_unit_test(a_broken_voltage_does_not_hide_a_broken_current),
         cmocka_unit_test(what_cannot_be_reached_is_said),

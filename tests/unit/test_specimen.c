@@ -35,7 +35,7 @@ static plw_quiescent measure_strength(const plw_stage *bogey, double strength, p
     *readings = readings_of(&bench, &q);
     assert_int_equal(plw_quiescent_solve(bogey, &model, NULL), PLW_OK);
     plw_error error = {0};
-    if (plw_specimen_measure(bogey, &model, readings, usual_aim, PLW_E24, specimen, &error) != PLW_OK) {
+    if (plw_specimen_measure(bogey, readings, usual_aim, PLW_E24, specimen, &error) != PLW_OK) {
         fail_msg("%s", error.text);
     }
     return q;
@@ -124,7 +124,7 @@ static void connections_and_parallel_tubes_are_read_alike(void **state) {
         assert_near(s.primary_ohms, stage.primary_ohms, 1e-4 + 1e-6 * stage.primary_ohms, "drop over current");
         /* The cathode alone tells as much where the circuit is as described. */
         const plw_meter_readings cathode_only = {UNKNOWN, UNKNOWN, UNKNOWN, readings.cathode_volts};
-        assert_int_equal(plw_specimen_measure(&stage, &q, &cathode_only, usual_aim, PLW_E24, &s, NULL), PLW_OK);
+        assert_int_equal(plw_specimen_measure(&stage, &cathode_only, usual_aim, PLW_E24, &s, NULL), PLW_OK);
         assert_near(s.off_percent, 20.0, 1e-3, "strength 1.2");
         measured++;
     }
@@ -141,7 +141,7 @@ static void missing_readings_are_filled_in_and_flagged(void **state) {
     plw_specimen s;
     const plw_quiescent q = measure_strength(&stage, 1.2, &readings, &s);
     readings.supply_volts = readings.plate_volts = readings.screen_volts = UNKNOWN;
-    assert_int_equal(plw_specimen_measure(&stage, &q, &readings, usual_aim, PLW_E24, &s, NULL), PLW_OK);
+    assert_int_equal(plw_specimen_measure(&stage, &readings, usual_aim, PLW_E24, &s, NULL), PLW_OK);
     assert_false(s.supply_read || s.plate_read || s.screen_read);
     assert_true(isnan(s.primary_ohms));
     assert_near(s.off_percent, 20.0, 1e-4, "on a stiff supply the rest follows from the cathode");
@@ -161,7 +161,7 @@ static void the_supply_is_taken_as_read(void **state) {
     plw_stage described = stage;
     described.supply = stiff(285.0);
     plw_specimen s;
-    assert_int_equal(plw_specimen_measure(&described, &q, &readings, usual_aim, PLW_E24, &s, NULL), PLW_OK);
+    assert_int_equal(plw_specimen_measure(&described, &readings, usual_aim, PLW_E24, &s, NULL), PLW_OK);
     assert_near(s.off_percent, 0.0, 1e-4, "it is the bogey tube, on more volts");
     plw_quiescent again;
     assert_int_equal(plw_quiescent_solve(&s.stage, &again, NULL), PLW_OK);
@@ -182,7 +182,7 @@ static void the_copper_is_taken_as_read(void **state) {
     plw_stage described = stage;
     described.primary_ohms = 100.0;
     plw_specimen s;
-    assert_int_equal(plw_specimen_measure(&described, &q, &readings, usual_aim, PLW_E24, &s, NULL), PLW_OK);
+    assert_int_equal(plw_specimen_measure(&described, &readings, usual_aim, PLW_E24, &s, NULL), PLW_OK);
     assert_near(s.primary_ohms, 238.5, 1e-3, "drop over the current of both tubes");
     assert_int_equal(plw_quiescent_solve(&s.stage, &again, NULL), PLW_OK);
     assert_near(again.plate_to_ground_volts, readings.plate_volts, 1e-4, "as read");
@@ -208,7 +208,7 @@ static void the_resistor_found_suits_this_tube(void **state) {
     assert_near_relative(q.plate_watts, 0.9 * 12.0, 1e-6, "the aim");
     tube.ratings[0].plate_watts = 120.0;
     const plw_meter_readings same = readings_of(&stage, &q);
-    assert_int_equal(plw_specimen_measure(&stage, &q, &same, usual_aim, PLW_E24, &strong, NULL), PLW_OK);
+    assert_int_equal(plw_specimen_measure(&stage, &same, usual_aim, PLW_E24, &strong, NULL), PLW_OK);
     assert_false(strong.resistor_found);
     assert_non_null(strstr(strong.resistor_obstacle, "out of reach"));
 }
@@ -242,7 +242,7 @@ static void readings_that_contradict_are_refused(void **state) {
                                              wrong[index].cathode};
         plw_specimen s;
         plw_error error = {0};
-        if (plw_specimen_measure(&stage, &q, &readings, usual_aim, PLW_E24, &s, &error) != PLW_E_USAGE) {
+        if (plw_specimen_measure(&stage, &readings, usual_aim, PLW_E24, &s, &error) != PLW_E_USAGE) {
             fail_msg("readings %zu were accepted", index);
         }
         if (strstr(error.text, wrong[index].text) == NULL) {
@@ -253,7 +253,7 @@ static void readings_that_contradict_are_refused(void **state) {
     stage.cathode_resistor_ohms = UNKNOWN;
     plw_specimen s;
     plw_error error = {0};
-    assert_int_equal(plw_specimen_measure(&stage, &q, &good, usual_aim, PLW_E24, &s, &error), PLW_E_USAGE);
+    assert_int_equal(plw_specimen_measure(&stage, &good, usual_aim, PLW_E24, &s, &error), PLW_E_USAGE);
     assert_non_null(strstr(error.text, "fixed bias"));
 }
 

@@ -125,7 +125,7 @@ static void numbers_outside_their_range_are_refused(void **state) {
         double least, most; /* accepted */
         double wrong[3];
     } ranges[] = {
-        {&stage.load_ohms, "load", 1.0, 1e6, {0.99, 1.01e6, UNKNOWN}},
+        {&stage.load_ohms, "load", 50.0, 1e6, {0.99, 1.01e6, UNKNOWN}},
         {&stage.primary_ohms, "primary-ohms", 0.0, 1e5, {-2.385, 1.01e5, UNKNOWN}},
         {&stage.secondary_ohms, "secondary-ohms", 0.0, 1e5, {-2.385, 1.01e5, UNKNOWN}},
         {&stage.cathode_resistor_ohms, "cathode-resistor", 0.1, 1e6, {0.09, 1.01e6, (double)INFINITY}},
