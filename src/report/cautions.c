@@ -62,7 +62,12 @@ static const char *written(double value, plw_unit unit, char text[TEXT_SIZE]) {
     return plw_quantity_format(value, unit, 3, text, TEXT_SIZE);
 }
 
-static void of_ratings(plw_caution_list *l, const plw_bias_option *option) {
+static void of_ratings(plw_caution_list *l, const plw_answer *answer) {
+    const plw_bias_option *option = answer->option;
+    const plw_ratings *ratings =
+        plw_tube_ratings(answer->stage->tube, answer->stage->variant, answer->stage->connection);
+    /* Design-center ratings leave room for mains and tubes by themselves. */
+    const bool room_left = ratings != NULL && ratings->system == PLW_SYSTEM_DESIGN_CENTER;
     for (size_t i = 0; i < option->ratings_count; i++) {
         const plw_rating_check *check = &option->ratings[i];
         char value[TEXT_SIZE];
@@ -75,7 +80,7 @@ static void of_ratings(plw_caution_list *l, const plw_bias_option *option) {
                             limit, check->share_percent,
                             check->when == PLW_AT_IDLE ? "Do not build it so."
                                                        : "Speech and music heat less than this steady tone.");
-        } else if (check->share_percent >= NEAR_PERCENT) {
+        } else if (check->share_percent >= NEAR_PERCENT && check->when == PLW_AT_IDLE && !room_left) {
             plw_caution_say(l, "At %s the %s is %s of a rated %s: nothing is left for high mains or a strong tube.",
                             when, check->name, value, limit);
         }
@@ -188,9 +193,6 @@ static void of_screen(plw_caution_list *l, const plw_answer *answer) {
                 written(driven, PLW_UNIT_WATT, driven_text));
         }
     }
-    plw_caution_say(
-        l, "Never drive the stage without its speaker or a dummy load: plate volts then swing far above the supply and "
-           "the screen overheats.");
 }
 
 static void of_bias(plw_caution_list *l, const plw_answer *answer) {
@@ -205,11 +207,6 @@ static void of_bias(plw_caution_list *l, const plw_answer *answer) {
             "%u tubes share one cathode resistor: one of them may take more than its part and the common voltage "
             "will not show it. A resistor for each tells them apart.",
             stage->parallel);
-    }
-    if (isfinite(stage->cathode_resistor_ohms) && !stage->unbypassed) {
-        char value[TEXT_SIZE];
-        plw_caution_say(l, "Rate the cathode bypass capacitor for twice the bias, %s at least.",
-                        written(2.0 * answer->option->quiescent.cathode_volts, PLW_UNIT_VOLT, value));
     }
 }
 
@@ -285,12 +282,6 @@ static void of_model(plw_caution_list *l, const plw_answer *answer) {
             type, power, distortion);
     }
     const plw_ratings *ratings = plw_tube_ratings(stage->tube, stage->variant, stage->connection);
-    if (ratings != NULL && ratings->provenance.how == PLW_HOW_MEMORY) {
-        plw_caution_say(
-            l,
-            "The ratings of the %.60s were written down from memory of the maker's sheet: compare them with the sheet.",
-            type);
-    }
     if (ratings != NULL && ratings->plate_watts_unpublished) {
         plw_caution_say(l, "The maker prints no plate dissipation for the %.60s: it is not checked.", type);
     }
@@ -336,22 +327,45 @@ void plw_cautions_standing(plw_caution_list *l) {
     plw_caution_say(l, "Local codes and the judgement of a licensed practitioner go before anything said here.");
 }
 
+/* What holds for every stage of its kind, in this stage's figures. */
+static void notes(plw_caution_list *l, const plw_answer *answer) {
+    const plw_stage *stage = answer->stage;
+    const plw_ratings *ratings = plw_tube_ratings(stage->tube, stage->variant, stage->connection);
+    if (stage->tube->model.law.kind == PLW_LAW_PENTODE && !plw_stage_is_triode(stage)) {
+        plw_caution_say(l, "Never drive the stage without its speaker or a dummy load: plate volts then swing far "
+                           "above the supply and "
+                           "the screen overheats.");
+    }
+    if (isfinite(stage->cathode_resistor_ohms) && !stage->unbypassed) {
+        char value[TEXT_SIZE];
+        plw_caution_say(l, "Rate the cathode bypass capacitor for twice the bias, %s at least.",
+                        written(2.0 * answer->option->quiescent.cathode_volts, PLW_UNIT_VOLT, value));
+    }
+    if (ratings != NULL && ratings->provenance.how == PLW_HOW_MEMORY) {
+        plw_caution_say(
+            l,
+            "The ratings of the %.60s were written down from memory of the maker's sheet: compare them with the sheet.",
+            plw_stage_tube_type(stage));
+    }
+}
+
 size_t plw_report_cautions(const plw_answer *answer, char (*lines)[PLW_CAUTION_SIZE], size_t most, size_t *own) {
     plw_caution_list l = {lines, most, 0};
     if (answer->choice != NULL && !answer->choice->aim_reached && answer->choice->obstacle[0] != '\0') {
         plw_caution_say(&l, "The aim is not reached: %s", answer->choice->obstacle);
     }
-    of_ratings(&l, answer->option);
+    of_ratings(&l, answer);
     of_mains(&l, answer);
     of_drive(&l, answer);
     of_screen(&l, answer);
     of_bias(&l, answer);
     of_region(&l, answer);
     of_model(&l, answer);
-    of_voltages(&l, answer);
     if (own != NULL) {
         *own = l.count;
     }
+    notes(&l, answer);
+    of_voltages(&l, answer);
     plw_cautions_standing(&l);
     return l.count;
 }

@@ -9,7 +9,7 @@
 
 enum { PLW_CAUTION_SIZE = 512, PLW_CAUTIONS_MOST = 40 };
 
-/* One sentence or two a line, UTF-8, without a line break; the stage's own first, then the standing ones.
+/* One sentence or two a line, UTF-8, without a line break; the stage's own first, then what holds for every stage of its kind.
  * In:   most: room in lines; PLW_CAUTIONS_MOST is always enough
  * Out:  *own, when not NULL: how many are this stage's own
  * Ret:  how many were written */

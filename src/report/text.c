@@ -394,7 +394,9 @@ static void caution_lines(FILE *out, const plw_answer *a) {
         if (index == 0 || index == own) {
             fputs(index < own ? "\nWARNINGS\n" : "\nCAUTIONS\n", out);
         }
-        plw_put_paragraph(out, index < own ? "  ! " : "  - ", lines[index]);
+        if (strncmp(lines[index], "The aim is not reached", 22) != 0) { /* told at the top */
+            plw_put_paragraph(out, index < own ? "  ! " : "  - ", lines[index]);
+        }
     }
 }
 

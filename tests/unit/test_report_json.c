@@ -564,7 +564,10 @@ static void conditions_have_their_cautions(void **state) {
     assert_true(warned(&s.answer, "Rating exceeded at idle"));
     option.ratings[0].ok = true;
     option.ratings[0].share_percent = 97.3;
+    assert_false(warned(&s.answer, "nothing is left")); /* design-center ratings leave room by themselves */
+    s.ratings.system = PLW_SYSTEM_DESIGN_MAXIMUM;
     assert_true(warned(&s.answer, "nothing is left for high mains"));
+    s.ratings.system = PLW_SYSTEM_DESIGN_CENTER;
     option.signal.grid_current = true;
     assert_true(warned(&s.answer, "goes positive"));
     option.signal.cut_off = true;
