@@ -173,10 +173,11 @@ demo: all
 # ---- coefficients from the printed rows ----------------------------------------------------------------------------
 TUBES := $(sort $(wildcard tubedata/*.xml))
 .PHONY: refit accuracy bench
+# Exit status 1: printed figures of a tube contradict each other; its coefficients are what they give all the same.
 refit: $(PROGRAM)
 	@for tube in $(TUBES); do \
 	  if grep -q 'kind="rectifier"' $$tube; then continue; fi; \
-	  $(PROGRAM) fit $$tube --output $$tube || exit 1; done
+	  $(PROGRAM) fit $$tube --output $$tube || [ $$? -eq 1 ] || exit 1; done
 
 accuracy: $(B)/tests/bench/accuracy
 	@$(B)/tests/bench/accuracy tubedata

@@ -85,6 +85,7 @@ enum {
 #define PLW_FIT_CORRELATION_LEAST 0.95
 #define PLW_FIT_OUTLIER_FALL 25.0       /* of the sum of squares */
 #define PLW_FIT_OUTLIER_SCALED 4.0      /* standard deviations off */
+#define PLW_FIT_GROSS_SCALED 5.0        /* standard deviations of a figure from the fit to all */
 #define PLW_FIT_CONTRADICTION_LEAST 4.0 /* standard deviations apart */
 
 typedef struct {
@@ -96,6 +97,9 @@ typedef struct {
     /* Covariance of the coordinates the fit works in: of each coefficient the logarithm, but of kp that of kp/mu, and
      * the contact volts themselves; rows of plw_law_coefficient_count() numbers. */
     double covariance[PLW_LAW_COEFFICIENTS_MOST * PLW_LAW_COEFFICIENTS_MOST];
+    /* Covariance and relative errors are already widened by it: the root of chi squared per degree of freedom where
+     * that is above 1, else 1. */
+    double error_scale;
     size_t correlations, outliers, contradictions;
     plw_fit_correlation correlation[PLW_FIT_CORRELATIONS_MOST];
     plw_fit_outlier outlier[PLW_FIT_OUTLIERS_MOST]; /* the grossest first; only looked for with leave_out */
@@ -115,6 +119,12 @@ typedef struct {
  * GSL's error handler ends the program when GSL itself finds no memory; gsl_set_error_handler_off() makes that
  * PLW_E_NO_MEMORY.  Nothing else here reaches it. */
 PLW_API plw_status plw_fit_tube(const plw_tube *tube, bool leave_out, plw_fit *fit, plw_error *error) PLW_MUST_USE;
+
+/* Is a figure so far from the fit to all that they cannot be right together? */
+PLW_API bool plw_residual_is_gross(const plw_residual *residual);
+
+/* Does a fit hold such a figure? */
+PLW_API bool plw_fit_is_gross(const plw_fit *fit);
 
 /* Predict a row by a fit, with the standard deviation that each figure has from the coefficients not being known better
  * (the law's own error and the spread of tubes come on top).

@@ -227,6 +227,17 @@ static plw_status take_heads(reader *r, plw_csv *csv, plw_error *error) {
     return PLW_OK;
 }
 
+static const char *separator_name(char separator) {
+    switch (separator) {
+    case '\t':
+        return "tabs";
+    case ';':
+        return "semicolons";
+    default:
+        return "commas";
+    }
+}
+
 static plw_status take_table(reader *r, size_t lines_most, plw_csv *csv, plw_error *error) {
     plw_status status = take_heads(r, csv, error);
     size_t room = 0;
@@ -237,6 +248,12 @@ static plw_status take_table(reader *r, size_t lines_most, plw_csv *csv, plw_err
         status = next_line(r, cells, &count, &number, error);
         if (status != PLW_OK || count == 0) {
             break;
+        }
+        if (count == 1 && csv->columns > 1) {
+            return plw_fail(error, PLW_E_DATA,
+                            "%s:%zu: 1 cell where the first line names %zu columns; separate by %s, as "
+                            "there",
+                            r->name, number, csv->columns, separator_name(r->separator));
         }
         if (count != csv->columns) {
             return plw_fail(error, PLW_E_DATA, "%s:%zu: %zu cells where the first line names %zu columns", r->name,

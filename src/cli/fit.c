@@ -156,12 +156,14 @@ static plw_status draw(const fit_work *work, plw_error *error) {
     return status == PLW_OK ? cli_drawing_tell(&work->drawing, error) : status;
 }
 
-static plw_status fit(fit_work *work, plw_error *error) {
+/* Out:  *gross: figures cannot be right together */
+static plw_status fit(fit_work *work, bool *gross, plw_error *error) {
     const cli_arguments *arguments = work->arguments;
     plw_status status = plw_fit_tube(work->tube, true, work->fit, error);
     if (status != PLW_OK) {
         return plw_fail_at(error, status, "%s", arguments->positional);
     }
+    *gross = plw_fit_is_gross(work->fit);
     work->tube->model = work->fit->model;
     work->tube->has_model = true;
     char *text = NULL;
@@ -194,16 +196,20 @@ static plw_status prepare(fit_work *work, plw_error *error) {
 int cli_run_fit(const cli_arguments *arguments) {
     fit_work work = {.arguments = arguments};
     plw_error error = {.status = PLW_OK};
+    bool gross = false;
     plw_status status = prepare(&work, &error);
     if (status == PLW_OK) {
         status = is_table(arguments->positional) ? read_table(arguments, &work.tube, &error)
                                                  : read_tube(arguments, &work.tube, &error);
     }
     if (status == PLW_OK && work.tube != NULL) {
-        status = fit(&work, &error);
+        status = fit(&work, &gross, &error);
     }
     cli_drawing_free(&work.drawing);
     free(work.fit);
     plw_tube_free(work.tube);
-    return status == PLW_OK ? CLI_DONE : cli_complain(arguments->command, &error);
+    if (status != PLW_OK) {
+        return cli_complain(arguments->command, &error);
+    }
+    return gross ? CLI_NOT_REACHED : CLI_DONE;
 }

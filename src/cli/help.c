@@ -81,9 +81,10 @@ static void put_example(FILE *out, const cli_example *example) {
 }
 
 static void put_exit_status(FILE *out) {
-    fputs("\nExit status: 0 done, and within every rating; 1 done, but a rating is exceeded\n"
-          "or the aim cannot be reached; 2 a mistake in the options or in a file; 3 a file\n"
-          "could not be read or written, or gnuplot failed.\n",
+    fputs("\nExit status: 0 done, and within every rating; 1 done, but a rating is exceeded,\n"
+          "the aim cannot be reached, or printed figures contradict each other; 2 a mistake\n"
+          "in the options or in a file; 3 a file could not be read or written, or gnuplot\n"
+          "failed.\n",
           out);
 }
 

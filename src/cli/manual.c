@@ -109,7 +109,8 @@ static void put_files(FILE *out) {
 static void put_ending(FILE *out) {
     fputs(".SH \"EXIT STATUS\"\n"
           ".TP\n0\ndone, and within every rating\n"
-          ".TP\n1\ndone, but a rating is exceeded or the aim cannot be reached\n"
+          ".TP\n1\ndone, but a rating is exceeded, the aim cannot be reached, or printed figures contradict "
+          "each other\n"
           ".TP\n2\na mistake in the options or in a file\n"
           ".TP\n3\na file could not be read or written, or gnuplot failed\n"
           ".SH ENVIRONMENT\n"

@@ -40,8 +40,12 @@ static void put_header(FILE *file) {
         fprintf(file, ",driven_h%d_percent", h);
     }
     fputs(",drive_limit,uncertainty_idle_plate_amps,uncertainty_idle_plate_watts,uncertainty_idle_cathode_volts,"
-          "uncertainty_driven_speaker_watts,uncertainty_dominated_by,outside_data\n",
+          "uncertainty_driven_speaker_watts,uncertainty_dominated_by,outside_data",
           file);
+    for (size_t i = 0; i < plw_specimen_fields_count; i++) {
+        fprintf(file, ",measured_%s", plw_specimen_fields[i].name);
+    }
+    fputs(",measured_supply_read,measured_plate_read,measured_screen_read,measured_suitable_resistor_ohms\n", file);
 }
 
 static void put_number(FILE *file, double value) {
@@ -58,7 +62,7 @@ static void put_fields(FILE *file, const plw_field *fields, size_t count, const 
 /* One standard deviation of the main figures; only the option chosen has it. */
 static void put_uncertainty(FILE *file, const plw_uncertainty *u) {
     if (u == NULL) {
-        fputs(",,,,,,\n", file);
+        fputs(",,,,,,", file);
         return;
     }
     put_number(file, u->plate_amps.both);
@@ -67,6 +71,21 @@ static void put_uncertainty(FILE *file, const plw_uncertainty *u) {
     put_number(file, u->speaker_watts.both);
     fprintf(file, ",%s,", u->model_dominates ? "model" : "tubes");
     put_text(file, u->outside);
+}
+
+/* The tube on the bench; what was read of it, and what the model lent. */
+static void put_specimen(FILE *file, const plw_specimen *specimen) {
+    for (size_t i = 0; i < plw_specimen_fields_count; i++) {
+        put_number(file, specimen == NULL ? (double)NAN : plw_field_value(&plw_specimen_fields[i], specimen));
+    }
+    if (specimen == NULL) {
+        fputs(",,,,\n", file);
+        return;
+    }
+    fprintf(file, ",%s,%s,%s", specimen->supply_read ? "yes" : "no", specimen->plate_read ? "yes" : "no",
+            specimen->screen_read ? "yes" : "no");
+    const plw_bias_choice *choice = &specimen->choice;
+    put_number(file, specimen->resistor_found ? choice->option[choice->chosen].ohms : (double)NAN);
     fputc('\n', file);
 }
 
@@ -87,6 +106,7 @@ static void put_option(FILE *file, const plw_answer *answer, const plw_bias_opti
     }
     fprintf(file, ",%s", plw_drive_limit_name(option->signal.limit));
     put_uncertainty(file, chosen ? answer->uncertainty : NULL);
+    put_specimen(file, chosen ? answer->specimen : NULL);
 }
 
 plw_status plw_report_csv(const plw_answer *answer, char **text, plw_error *error) {

@@ -33,6 +33,18 @@ const plw_field plw_signal_fields[] = {
 };
 const size_t plw_signal_fields_count = sizeof plw_signal_fields / sizeof plw_signal_fields[0];
 
+#define MEASURED(name)                                                                                                 \
+    { #name, offsetof(plw_specimen, name) }
+
+const plw_field plw_specimen_fields[] = {
+    MEASURED(supply_volts),  MEASURED(plate_to_ground_volts), MEASURED(screen_to_ground_volts),
+    MEASURED(cathode_volts), MEASURED(plate_volts),           MEASURED(screen_volts),
+    MEASURED(grid_volts),    MEASURED(cathode_amps),          MEASURED(plate_amps),
+    MEASURED(screen_amps),   MEASURED(plate_watts),           MEASURED(screen_watts),
+    MEASURED(primary_ohms),  MEASURED(model_cathode_amps),    MEASURED(off_percent),
+};
+const size_t plw_specimen_fields_count = sizeof plw_specimen_fields / sizeof plw_specimen_fields[0];
+
 double plw_field_value(const plw_field *field, const void *record) {
     double value;
     memcpy(&value, (const char *)record + field->offset, sizeof value);

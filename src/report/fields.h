@@ -6,8 +6,9 @@
 #include <stddef.h>
 
 #include "platewright/bias.h"
+#include "platewright/specimen.h"
 
-/* A figure: its name, and where it stands in plw_quiescent or plw_signal. */
+/* A figure: its name, and where it stands in plw_quiescent, plw_signal or plw_specimen. */
 typedef struct {
     const char *name;
     size_t offset;
@@ -17,8 +18,10 @@ extern const plw_field plw_quiescent_fields[];
 extern const size_t plw_quiescent_fields_count;
 extern const plw_field plw_signal_fields[];
 extern const size_t plw_signal_fields_count;
+extern const plw_field plw_specimen_fields[];
+extern const size_t plw_specimen_fields_count;
 
-/* In:   record: the plw_quiescent or plw_signal that the field belongs to */
+/* In:   record: the plw_quiescent, plw_signal or plw_specimen that the field belongs to */
 double plw_field_value(const plw_field *field, const void *record);
 
 /* "grid current", "cut-off", "drive" */

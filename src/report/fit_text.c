@@ -134,6 +134,46 @@ static void put_contradictions(FILE *out, const plw_tube *tube, const plw_fit *f
     }
 }
 
+/* Before anything else: what makes the coefficients below doubtful. */
+static void put_warnings(FILE *out, const plw_tube *tube, const plw_fit *fit) {
+    if (!plw_fit_is_gross(fit)) {
+        return;
+    }
+    fputs("\nWARNINGS\n", out);
+    char text[TEXT];
+    for (size_t i = 0; i < fit->residuals; i++) {
+        const plw_residual *r = &fit->residual[i];
+        char name[NAME];
+        if (!plw_residual_is_gross(r)) {
+            continue;
+        }
+        snprintf(text, sizeof text,
+                 "cannot be right together: %s %s of %s and the others, which make it %s, %.0f times "
+                 "its uncertainty away",
+                 line_name(tube, r->is_row, r->index, name), r->quantity, figure(r->quantity, r->printed).text,
+                 figure(r->quantity, r->predicted).text, fabs(r->scaled));
+        plw_put_paragraph(out, "  ! ", text);
+    }
+    snprintf(text, sizeof text,
+             "the errors of the coefficients are %.1f times as wide as the uncertainties of the figures "
+             "alone would make them; look the figures up again before you trust this model",
+             fit->error_scale);
+    plw_put_paragraph(out, "  ! ", text);
+}
+
+/* Less than gross, yet farther off than their uncertainties admit. */
+static void put_scale(FILE *out, const plw_fit *fit) {
+    if (fit->error_scale >= 1.05 && !plw_fit_is_gross(fit)) {
+        char text[TEXT];
+        snprintf(text, sizeof text,
+                 "The figures scatter more than their uncertainties admit; the errors of the "
+                 "coefficients are widened by %.1f for it.",
+                 fit->error_scale);
+        fputc('\n', out);
+        plw_put_paragraph(out, "", text);
+    }
+}
+
 static void put_residual(FILE *out, const plw_residual *residual) {
     fprintf(out, "  %-5s %3zu  %-30s", residual->is_row ? "row" : "point", residual->index + 1, residual->quantity);
     plw_put_right(out, figure(residual->quantity, residual->printed).text, 12);
@@ -150,7 +190,9 @@ plw_status plw_fit_text(const plw_tube *tube, const plw_fit *fit, char **text, p
         return status;
     }
     fprintf(buffer.file, "%s\n", tube->type);
+    put_warnings(buffer.file, tube, fit);
     plw_put_model(buffer.file, tube);
+    put_scale(buffer.file, fit);
     if (!fit->settled) {
         fputs("\nThe search did not settle: take these coefficients as a first guess\n", buffer.file);
     }

@@ -176,7 +176,9 @@ static void take_tube(plw_builder *work, plw_catalogue *catalogue, plw_stage *st
         plw_error_add(&work->faults, "%s", error.text);
         work->faults.status = status;
     } else if (tube->kind == PLW_KIND_RECTIFIER) {
-        plw_builder_fault(work, entry, "is a rectifier; name an output tube");
+        char fault[96];
+        snprintf(fault, sizeof fault, "%.40s is a rectifier; name an output tube", tube->type);
+        plw_builder_fault(work, entry, fault);
     } else if (!tube->has_model) {
         plw_builder_fault(work, entry,
                           "has no coefficients in its tube file yet; fit them first, or choose another type");

@@ -299,8 +299,9 @@ void plw_put_model(FILE *out, const plw_tube *tube) {
     }
     const plw_model *model = &tube->model;
     char line[LINE] = "";
-    fprintf(out, "\nModel: %s, fitted to %zu rows and %zu points; median errors\n", plw_law_name(model->law.kind),
-            model->rows_fitted, model->points_fitted);
+    fprintf(out, "\nModel: %s, fitted to %zu row%s and %zu point%s; median errors\n", plw_law_name(model->law.kind),
+            model->rows_fitted, model->rows_fitted == 1 ? "" : "s", model->points_fitted,
+            model->points_fitted == 1 ? "" : "s");
     put_errors(out, "fitted", &model->fit_error);
     put_errors(out, "left out", &model->left_out_error);
     for (size_t i = 0; i < plw_law_coefficient_count(model->law.kind); i++) {

@@ -84,6 +84,14 @@ static plw_status best_fit(problem *p, const plw_law *near, plw_law *law, double
     return status;
 }
 
+/* By how much the errors are wider than the stated uncertainties of the figures make them: where the figures lie
+ * farther off than those admit, by the root of chi squared per degree of freedom (Birge, 'The Calculation of Errors by
+ * the Method of Least Squares', Physical Review 40, 1932, p. 207; from memory).  What is expected of each coefficient
+ * beforehand counts as one more figure, so that as many degrees of freedom are left as there are observations. */
+static double error_scale(const plw_least_squares_end *end, size_t observations) {
+    return fmax(1.0, sqrt(end->sum_of_squares / (double)observations));
+}
+
 /* The fit with its covariance and standard errors. */
 static plw_status fit_model(const plw_observations *observations, plw_fit *fit, plw_error *error) {
     plw_least_squares_end end;
@@ -95,13 +103,17 @@ static plw_status fit_model(const plw_observations *observations, plw_fit *fit, 
     if (status != PLW_OK) {
         return status;
     }
+    fit->error_scale = error_scale(&end, observations->count);
     fit->settled = end.settled != PLW_SETTLED_LATE && !end.singular;
     for (size_t index = 0; index < p.coefficients; index++) {
         const double deviation = sqrt(fit->covariance[index * p.coefficients + index]);
         /* Where the rows hardly narrow what was expected beforehand, they do not determine the coefficient. */
         const bool determined = deviation <= 0.8 * prior.deviation[index];
         model->relative_error[index] =
-            determined ? plw_coordinate_error_relative(&model->law, index, deviation) : (double)NAN;
+            determined ? plw_coordinate_error_relative(&model->law, index, fit->error_scale * deviation) : (double)NAN;
+    }
+    for (size_t index = 0; index < p.coefficients * p.coefficients; index++) {
+        fit->covariance[index] *= fit->error_scale * fit->error_scale;
     }
     return PLW_OK;
 }

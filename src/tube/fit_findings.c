@@ -138,6 +138,21 @@ void plw_find_outliers(const plw_observations *observations, plw_fit *fit) {
     free(b);
 }
 
+/* ---- figures that cannot be right together ----------------------------------------------------------------------- */
+
+bool plw_residual_is_gross(const plw_residual *residual) {
+    return !(fabs(residual->scaled) <= PLW_FIT_GROSS_SCALED); /* nor what the law cannot make at all */
+}
+
+bool plw_fit_is_gross(const plw_fit *fit) {
+    for (size_t i = 0; i < fit->residuals; i++) {
+        if (plw_residual_is_gross(&fit->residual[i])) {
+            return true;
+        }
+    }
+    return false;
+}
+
 /* ---- uncertainty of what is predicted ---------------------------------------------------------------------------- */
 
 enum { FIGURES = sizeof(plw_prediction) / sizeof(double) };

@@ -61,6 +61,11 @@ static void say_repeated(char *why, size_t before) {
     SAY(why, "repeats line %zu in every number and would count double; delete one of them", before);
 }
 
+/* Operating points are biased negative; sheets of old leave the sign out.  Only curves go into the positive. */
+static void say_positive(char *why, double grid_volts) {
+    SAY(why, "grid_volts %g is positive: write %g", grid_volts, -grid_volts);
+}
+
 void plw_observation_check_row(plw_tube *tube, const plw_observation_lines *lines, size_t index, size_t first,
                                char why[PLW_OBSERVATION_WHY_SIZE]) {
     plw_row *r = &tube->rows[index];
@@ -72,6 +77,8 @@ void plw_observation_check_row(plw_tube *tube, const plw_observation_lines *line
         SAY(why, "plate_volts: is missing");
     } else if (isnan(r->grid_volts) && isnan(r->cathode_resistor_ohms)) {
         SAY(why, "neither grid_volts nor cathode_resistor_ohms is given; one is needed");
+    } else if (r->grid_volts > 0.0) {
+        say_positive(why, r->grid_volts);
     } else if (isnan(r->plate_amps)) {
         SAY(why, "plate_ma: is missing; a row is worth nothing without its plate current at rest");
     } else if (output && (isnan(r->load_ohms) || isnan(r->drive_peak_volts))) {
@@ -91,6 +98,8 @@ static void check_figures(const plw_tube *tube, const plw_point *p, char *why) {
         SAY(why, "plate_volts: is missing");
     } else if (isnan(p->grid_volts)) {
         SAY(why, "grid_volts: is missing");
+    } else if (p->kind == PLW_POINT_CHARACTERISTICS && p->grid_volts > 0.0) {
+        say_positive(why, p->grid_volts);
     } else if (p->kind == PLW_POINT_INNER_MU) {
         if (isnan(p->mu) || !plw_tube_has_screen(tube)) {
             SAY(why, "inner-mu: %s",
@@ -189,9 +198,9 @@ plw_status plw_observation_check_whole(const plw_tube *tube, plw_error *error) {
     plw_observations_collect(tube, SIZE_MAX, false, &all);
     if (all.count < FIGURES_LEAST || currents(&all) == 0) {
         return plw_fail(error, PLW_E_DATA,
-                        "%zu figures that can be fitted up to here; the least is one row with plate current, gm and "
+                        "%zu figure%s that can be fitted up to here; the least is one row with plate current, gm and "
                         "plate resistance, or three points of curves",
-                        all.count);
+                        all.count, all.count == 1 ? "" : "s");
     }
     if (all.count >= PLW_RESIDUALS_MOST) {
         return plw_fail(error, PLW_E_DATA, "%d figures or more; thin the curves out", (int)PLW_RESIDUALS_MOST);

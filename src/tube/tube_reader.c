@@ -238,6 +238,10 @@ static void read_row(tube_reader *reader, const plw_xml_element *element, const 
     if (plw_xml_attribute(element, "grid") == NULL && plw_xml_attribute(element, "cathode-resistor") == NULL) {
         plw_xml_fault(reader->xml, element, "row: neither 'grid' nor 'cathode-resistor' is given; one is needed");
     }
+    if (row->grid_volts > 0.0) {
+        plw_xml_fault(reader->xml, element, "row: 'grid' %gV is positive: write %gV", row->grid_volts,
+                      -row->grid_volts);
+    }
     if (plw_xml_attribute(element, "power") != NULL) {
         (void)require(reader, element, "load", "a power is worth nothing without its load");
     }

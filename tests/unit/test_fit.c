@@ -159,6 +159,37 @@ static void test_standard_errors_by_their_statistics(void **state) {
     assert_true(chi_squared > figures - COORDINATES - spread && chi_squared < figures + spread);
 }
 
+/* A gross figure is named, and the errors grow by the root of chi squared per degree of freedom; they never shrink. */
+static void test_errors_grow_with_the_scatter(void **state) {
+    (void)state;
+    static plw_fit good;
+    static plw_fit bad;
+    made_triode made;
+    uint64_t seed = 11;
+    const plw_law law = triode_law();
+    make_triode(&made, &law, 0.0, &seed);
+    fit_or_fail(&made.tube, false, &good);
+    assert_near(good.error_scale, 1.0, 0.0, "nothing is off");
+    assert_false(plw_fit_is_gross(&good));
+    made.point[CURVES * ON_CURVE].gm_siemens *= 1.6;
+    fit_or_fail(&made.tube, false, &bad);
+    assert_true(plw_fit_is_gross(&bad));
+    const double per_freedom = bad.chi_squared / (double)bad.residuals;
+    assert_true(bad.error_scale > 1.2);
+    assert_true(bad.error_scale * bad.error_scale > 0.999 * per_freedom); /* with what is expected beforehand */
+    assert_true(bad.error_scale * bad.error_scale < 1.3 * per_freedom);
+    for (size_t i = 0; i < plw_law_coefficient_count(law.kind); i++) {
+        const size_t at = i * (plw_law_coefficient_count(law.kind) + 1);
+        const double wider = sqrt(bad.covariance[at] / good.covariance[at]) / bad.error_scale;
+        assert_true(wider > 0.5 && wider < 2.0); /* the place is another, so are the slopes there */
+    }
+    size_t gross = 0;
+    for (size_t i = 0; i < bad.residuals; i++) {
+        gross += plw_residual_is_gross(&bad.residual[i]) ? 1U : 0U;
+    }
+    assert_true(gross >= 1);
+}
+
 static void test_several_starts_end_alike(void **state) {
     (void)state;
     static plw_fit fit;
@@ -491,6 +522,7 @@ int main(void) {
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(test_exact_data_give_the_coefficients_back),
         cmocka_unit_test(test_standard_errors_by_their_statistics),
+        cmocka_unit_test(test_errors_grow_with_the_scatter),
         cmocka_unit_test(test_several_starts_end_alike),
         cmocka_unit_test(test_order_does_not_matter),
         cmocka_unit_test(test_stated_uncertainty_weighs),

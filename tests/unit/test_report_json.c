@@ -468,7 +468,7 @@ static void the_uncertainty_is_told(void **state) {
     json_decref(root);
     char *text = NULL;
     assert_int_equal(plw_report_csv(&s.answer, &text, &error), PLW_OK);
-    assert_non_null(strstr(text, ",\"plate volts 425 V, the data cover 100 to 200 V\"\n"));
+    assert_non_null(strstr(text, ",\"plate volts 425 V, the data cover 100 to 200 V\","));
     char value[64];
     for (size_t i = 0; i < s.choice.options; i++) {
         column_of(text, "uncertainty_idle_plate_amps", i, value, sizeof value);
