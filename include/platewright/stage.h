@@ -110,11 +110,13 @@ typedef struct {
     double speaker_watts;    /* fundamental, all tubes, behind the copper */
     double thd_percent;      /* harmonics 2..10 over the fundamental */
     double harmonic_percent[PLW_HARMONICS_MOST + 1]; /* [2..10]; signed: negative is in antiphase at the grid's crest */
-    double supply_volts, cathode_volts;              /* averages under drive */
-    double plate_amps, screen_amps, cathode_amps;    /* averages under drive */
-    double plate_watts;                              /* heat of the plate: input less output */
-    double screen_watts;                             /* mean of screen volts times screen current; NaN without */
-    double plate_volts_least, plate_volts_most;      /* to cathode, over the cycle */
+    double supply_volts, cathode_volts;              /* averages under drive; supply NaN where it is not known */
+    double plate_to_ground_volts, screen_to_ground_volts; /* averages under drive; screen NaN without */
+    bool beyond_supply; /* the average current lies where the supply's readings do not reach */
+    double plate_amps, screen_amps, cathode_amps; /* averages under drive */
+    double plate_watts;                           /* heat of the plate: input less output */
+    double screen_watts;                          /* mean of screen volts times screen current; NaN without */
+    double plate_volts_least, plate_volts_most;   /* to cathode, over the cycle */
     double plate_amps_least, plate_amps_most;
     double plate_to_ground_volts_most;
     double screen_amps_most;

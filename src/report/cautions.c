@@ -152,6 +152,10 @@ static void of_drive(plw_caution_list *l, const plw_answer *answer) {
         return;
     }
     written(signal->drive_peak_volts, PLW_UNIT_VOLT, drive);
+    if (signal->beyond_supply) {
+        plw_caution_say(l, "At full drive the stage draws a current that the supply's readings do not reach: power and "
+                           "distortion there are guessed. Take a reading into a heavier load.");
+    }
     if (signal->limit == PLW_DRIVE_GRID_CURRENT && answer->stage->driver_ohms > 0.0) {
         char ohms[TEXT_SIZE];
         plw_caution_say(l, "Full drive is %s peak: beyond it grid current rounds off the crest behind the driver's %s.",

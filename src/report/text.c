@@ -102,28 +102,56 @@ static void bias_lines(FILE *out, const plw_answer *a) {
     }
 }
 
-static void meter_line(FILE *out, const char *name, double rest, double driven) {
-    fprintf(out, "  %-11s", name);
+enum { PINS_SIZE = 32 };
+
+/* Is this pin the electrode wanted?  Of a triode-pentode the pentode's counts. */
+static bool is_electrode(const char *pin, const char *electrode) {
+    const size_t length = strlen(electrode);
+    const char *rest = pin + length;
+    return strncmp(pin, electrode, length) == 0 &&
+           (*rest == '\0' || strncmp(rest, " and ", 5) == 0 || strcmp(rest, ", pentode") == 0);
+}
+
+/* The pins of an electrode, as "pin 3"; nothing where the base is not in the catalogue. */
+static void pin_text(const plw_tube *tube, const char *electrode, char *text, size_t size) {
+    text[0] = '\0';
+    for (size_t index = 0; index < tube->pins_count; index++) {
+        if (is_electrode(tube->pins[index].electrode, electrode)) {
+            const size_t used = strlen(text);
+            snprintf(text + used, size - used, "%s%d", used == 0 ? "pin " : ", ", tube->pins[index].number);
+        }
+    }
+}
+
+static void meter_line(FILE *out, const plw_answer *a, const char *name, const char *electrode, double rest,
+                       double driven) {
+    char pins[PINS_SIZE] = "";
+    if (electrode != NULL) {
+        pin_text(a->stage->tube, electrode, pins, sizeof pins);
+    }
+    fprintf(out, "  %-9s%-10s", name, pins);
     plw_put_right(out, plw_cell_volts(rest).text, 12);
     if (isfinite(driven)) {
-        plw_put_right(out, plw_cell_volts(driven).text, 16);
+        plw_put_right(out, plw_cell_volts(driven).text, 14);
     }
     fputc('\n', out);
 }
 
-/* What a meter reads with its black lead on the chassis. */
+/* What a meter reads with its black lead on the chassis: mean values, as a DC meter gives them. */
 static void meter_lines(FILE *out, const plw_answer *a) {
     const plw_quiescent *q = &a->option->quiescent;
     const plw_signal *s = &a->option->signal;
     const double fixed = a->stage->fixed_bias_volts;
-    fputs("\nA METER READS, to chassis     at rest   at full drive\n", out);
-    meter_line(out, "supply", q->supply_volts, s->supply_volts);
-    meter_line(out, "plate", q->plate_to_ground_volts, (double)NAN);
+    const bool filament = a->stage->tube->directly_heated;
+    fputs("\nA METER READS, to chassis       at rest   driven fully\n", out);
+    meter_line(out, a, "supply", NULL, q->supply_volts, s->supply_volts);
+    meter_line(out, a, "plate", "plate", q->plate_to_ground_volts, s->plate_to_ground_volts);
     if (isfinite(q->screen_to_ground_volts)) {
-        meter_line(out, "screen", q->screen_to_ground_volts, (double)NAN);
+        meter_line(out, a, "screen", "screen", q->screen_to_ground_volts, s->screen_to_ground_volts);
     }
-    meter_line(out, "cathode", q->cathode_volts, s->cathode_volts);
-    meter_line(out, "grid", isfinite(fixed) ? fixed : 0.0, (double)NAN);
+    meter_line(out, a, filament ? "filament" : "cathode", filament ? "filament" : "cathode", q->cathode_volts,
+               s->cathode_volts);
+    meter_line(out, a, "grid", "grid 1", isfinite(fixed) ? fixed : 0.0, (double)NAN);
 }
 
 static void tube_lines(FILE *out, const plw_answer *a) {

@@ -7,6 +7,7 @@
 #include "stage/circuit.h"
 
 #define LEAST_CATHODE_AMPS 1e-6
+#define LEAST_SUPPLY_VOLTS 10.0
 
 /* Starting currents: a usual output stage idles at most of its rated dissipation. */
 static void guess(const plw_stage *stage, plw_instant *point) {
@@ -17,6 +18,14 @@ static void guess(const plw_stage *stage, plw_instant *point) {
     const double watts = ratings != NULL && isfinite(ratings->plate_watts) ? ratings->plate_watts : 10.0;
     point->amps[PLW_OF_PLATE] = 0.8 * watts / volts;
     point->amps[PLW_OF_SCREEN] = stage->tube->model.law.kind == PLW_LAW_PENTODE ? 0.1 * point->amps[PLW_OF_PLATE] : 0.0;
+}
+
+/* What the rest of the amplifier leaves of the supply, in V. */
+static double supply_left(const plw_stage *stage) {
+    double volts;
+    double ohms;
+    plw_supply_at(&stage->supply, stage->other_amps, &volts, &ohms);
+    return volts;
 }
 
 /* The supply's readings must reach the point. */
@@ -109,6 +118,13 @@ plw_status plw_quiescent_solve(const plw_stage *stage, plw_quiescent *quiescent,
     }
     plw_quiescent q;
     fill(&circuit, &point, &q);
+    if (q.cathode_amps < LEAST_CATHODE_AMPS && !(supply_left(stage) >= LEAST_SUPPLY_VOLTS)) {
+        return plw_fail(
+            error, PLW_E_NO_POINT,
+            "other-current: the rest of the amplifier alone pulls the supply down to %.3g V; less of it, or a "
+            "stronger supply, is wanted",
+            supply_left(stage));
+    }
     if (q.cathode_amps < LEAST_CATHODE_AMPS) {
         return plw_fail(error, PLW_E_NO_POINT,
                         "bias: the tube is cut off at this bias (%.3g V at the grid) and draws no current; a smaller "

@@ -20,6 +20,7 @@ static void walk_cycle(const plw_circuit *circuit, const plw_cycle *cycle, plw_s
     s->screen_amps_most = s->grid_amps = s->grid_amps_most = 0.0;
     double plate_watts = 0.0;
     double screen_watts = 0.0;
+    s->plate_to_ground_volts = s->screen_to_ground_volts = 0.0;
     for (int index = 0; index < PLW_CYCLE_INSTANTS; index++) {
         const plw_instant *at = &cycle->instant[index];
         const double weight = (index == 0 || index == PLW_CYCLE_STEPS ? 0.5 : 1.0) / PLW_CYCLE_STEPS;
@@ -36,6 +37,8 @@ static void walk_cycle(const plw_circuit *circuit, const plw_cycle *cycle, plw_s
         const double cathode_volts =
             plw_circuit_cathode_volts(circuit, circuit->stage->unbypassed ? at->amps : cycle->average_amps);
         s->plate_to_ground_volts_most = fmax(s->plate_to_ground_volts_most, plate_volts + cathode_volts);
+        s->plate_to_ground_volts += weight * (plate_volts + cathode_volts);
+        s->screen_to_ground_volts += weight * (at->volts[PLW_AT_SCREEN] + cathode_volts);
         s->path_plate_volts[index] = plate_volts;
         s->path_plate_amps[index] = at->amps[PLW_OF_PLATE];
         s->path_screen_amps[index] = at->amps[PLW_OF_SCREEN];
@@ -43,6 +46,7 @@ static void walk_cycle(const plw_circuit *circuit, const plw_cycle *cycle, plw_s
     }
     s->plate_watts = plate_watts;
     s->screen_watts = circuit->has_screen ? screen_watts : (double)NAN;
+    s->screen_to_ground_volts = circuit->has_screen ? s->screen_to_ground_volts : (double)NAN;
 }
 
 static void fill_harmonics(const plw_circuit *circuit, const plw_cycle *cycle, plw_signal *s) {
@@ -66,14 +70,22 @@ static void fill_harmonics(const plw_circuit *circuit, const plw_cycle *cycle, p
 static void fill_averages(const plw_circuit *circuit, const plw_cycle *cycle, plw_signal *s) {
     const plw_stage *stage = circuit->stage;
     const double *average = cycle->average_amps;
+    const double supply_amps = plw_circuit_supply_amps(circuit, average);
     double ohms;
-    plw_supply_at(&stage->supply, plw_circuit_supply_amps(circuit, average), &s->supply_volts, &ohms);
+    double least_amps;
+    double most_amps;
+    plw_supply_at(&stage->supply, supply_amps, &s->supply_volts, &ohms);
+    plw_supply_range(&stage->supply, &least_amps, &most_amps);
     s->cathode_volts = plw_circuit_cathode_volts(circuit, average);
     s->plate_amps = average[PLW_OF_PLATE];
     s->screen_amps = average[PLW_OF_SCREEN];
     s->cathode_amps = s->plate_amps + s->screen_amps;
     const double input = (s->supply_volts - s->cathode_volts) * s->plate_amps * circuit->tubes;
     s->efficiency_percent = input > 0.0 ? 100.0 * s->power_watts / input : (double)NAN;
+    s->beyond_supply = supply_amps < least_amps || supply_amps > most_amps;
+    if (s->beyond_supply) { /* the line was drawn on for the solution's sake, but nobody has read it there */
+        s->supply_volts = s->plate_to_ground_volts = s->screen_to_ground_volts = (double)NAN;
+    }
 }
 
 plw_status plw_signal_solve(const plw_stage *stage, const plw_quiescent *quiescent, plw_signal *signal,

@@ -218,6 +218,19 @@ static void a_cut_off_tube_has_no_point(void **state) {
     assert_near(q.plate_amps, 2.385, 0.0, "stage.h: not written unless PLW_OK");
 }
 
+static void a_supply_drained_by_the_rest_is_named(void **state) {
+    (void)state;
+    test_tube tube;
+    make_tube(&tube, pentode_law(TEST_BEAM_SMALL));
+    plw_stage stage = simple_stage(&tube, 285.0, 5000.0, 270.0, UNKNOWN);
+    plw_quiescent q;
+    plw_error error = {0};
+    assert_int_equal(plw_supply_source(305.0, 1800.0, &stage.supply, &error), PLW_OK);
+    stage.other_amps = 0.2;
+    assert_int_equal(plw_quiescent_solve(&stage, &q, &error), PLW_E_NO_POINT);
+    assert_non_null(strstr(error.text, "other-current"));
+}
+
 static void readings_that_do_not_reach_are_named(void **state) {
     (void)state;
     test_tube tube;
@@ -267,6 +280,7 @@ int main(void) {
         cmocka_unit_test(kirchhoffs_laws_hold_on_ten_thousand_stages),
         cmocka_unit_test(gsls_root_finder_comes_to_the_same_point),
         cmocka_unit_test(a_cut_off_tube_has_no_point),
+        cmocka_unit_test(a_supply_drained_by_the_rest_is_named),
         cmocka_unit_test(readings_that_do_not_reach_are_named),
         cmocka_unit_test(parallel_tubes_are_one_tube_with_shared_resistances_multiplied),
     };

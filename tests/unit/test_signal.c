@@ -287,6 +287,28 @@ static void a_drive_beyond_shows_grid_current_and_cut_off(void **state) {
     assert_true(within.power_watts < limit.power_watts);
 }
 
+/* Fixed bias near cut-off: driven, the mean current rises far past where the supply was read. */
+static void currents_beyond_the_readings_are_told(void **state) {
+    (void)state;
+    test_tube tube;
+    make_tube(&tube, pentode_law(TEST_BEAM_SMALL));
+    plw_stage stage = simple_stage(&tube, 285.0, 5000.0, UNKNOWN, -24.0);
+    plw_quiescent q;
+    plw_signal s;
+    plw_error error = {0};
+    assert_int_equal(plw_quiescent_solve(&stage, &q, &error), PLW_OK);
+    assert_int_equal(plw_signal_solve(&stage, &q, &s, &error), PLW_OK);
+    assert_false(s.beyond_supply); /* stiff: speaks at every current */
+    assert_near(s.plate_to_ground_volts, 285.0, 1e-6, "no copper: the mean stays at the supply");
+    const plw_reading readings[] = {{290.0, 0.0}, {285.0, 1.1 * q.supply_amps}};
+    assert_true(s.cathode_amps > 1.7 * q.supply_amps);
+    assert_int_equal(plw_supply_readings(readings, 2, &stage.supply, &error), PLW_OK);
+    assert_int_equal(plw_quiescent_solve(&stage, &q, &error), PLW_OK);
+    assert_int_equal(plw_signal_solve(&stage, &q, &s, &error), PLW_OK);
+    assert_true(s.beyond_supply);
+    assert_true(isnan(s.supply_volts));
+}
+
 static void zero_bias_leaves_no_drive(void **state) {
     (void)state;
     test_tube tube;
@@ -479,6 +501,7 @@ int main(void) {
         cmocka_unit_test(without_drive_the_averages_are_those_at_rest),
         cmocka_unit_test(small_signals_follow_the_equivalent_circuit),
         cmocka_unit_test(a_drive_beyond_shows_grid_current_and_cut_off),
+        cmocka_unit_test(currents_beyond_the_readings_are_told),
         cmocka_unit_test(zero_bias_leaves_no_drive),
         cmocka_unit_test(grid_current_loads_the_driver),
         cmocka_unit_test(a_larger_driver_resistance_bends_the_crest_more),
