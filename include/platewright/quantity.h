@@ -32,12 +32,14 @@ typedef enum {
  * and hertz also M G, for ohms also "meg") and an optional unit, with or without a space; and, for ohms, farads and
  * henries, the letter code in which the multiplier stands for the decimal point (4k7, R47, 470R, 4M7, 4L7 for
  * milliohms; 4n7). Prefixes tell case: m is milli, M is mega; k and K are both kilo.  Units do so only where they must:
- * s and S. A plain number and a percentage take no prefix. In:   text (not NULL) in UTF-8, the unit expected Out:
- * *value in the base unit, the double nearest to what is written; not written unless PLW_OK Ret:  PLW_OK; PLW_E_USAGE
- * with a text that says what is wrong and gives an example of what would be right: empty, not a number, a leftover
- * character, another unit, a comma, M where only milli can be meant, infinite, not a number (NaN), out of double's
- * range, longer than 127 bytes Source: IEC 60062:2016, clause on the letter and digit code for resistance and
- * capacitance values; for inductance the same letters by common practice, no source. */
+ * s and S. A plain number and a percentage take no prefix.
+ * In:   text (not NULL) in UTF-8, the unit expected
+ * Out:  *value in the base unit, the double nearest to what is written; not written unless PLW_OK
+ * Ret:  PLW_OK; PLW_E_USAGE with a text that says what is wrong and gives an example of what would be right: empty, not
+ *       a number, a leftover character, another unit, a comma, M where only milli can be meant, infinite, not a number
+ *       (NaN), out of double's range, longer than 127 bytes
+ * Source: IEC 60062:2016, clause on the letter and digit code for resistance and capacitance values; for inductance the
+ *       same letters by common practice, no source. */
 PLW_API plw_status plw_quantity_parse(const char *text, plw_unit unit, double *value, plw_error *error) PLW_MUST_USE;
 
 /* Write a quantity with an SI prefix and `digits` significant digits: 45 mA, 4.7 kΩ, 12.9 V, 0.6 W, 0.22 µF.

@@ -49,12 +49,14 @@ typedef struct {
 /* Find the resistance of the conducting path, and correct the winding's voltage, so that the rectifier's steady states
  * pass through the DC readings: least squares, each reading and the winding's weighed by its error.  A straight line
  * through the off-load reading would overstate the resistance several times, since near no load the voltage falls as
- * the current to the two-thirds. In:   described: winding_rms_volts as read off load (0 or NaN: not read, and then a DC
- * reading off load must stand for it), rectifier, reservoir, filter; path_ohms is not looked at.  readings[count], one
- * loaded at least. Out:  *estimate; not written unless PLW_OK Ret:  PLW_OK; PLW_E_USAGE: none loaded, too many
- * (PLW_READINGS_MOST), a value outside its domain, a loaded reading above the off-load peak, an off-load reading that
- * does not belong to the winding, a reading that rises with current, readings that no source fits (beyond three
- * standard errors), or only a negative one; and as plw_rectifier_steady() */
+ * the current to the two-thirds.
+ * In:   described: winding_rms_volts as read off load (0 or NaN: not read, and then a DC reading off load must stand
+ *       for it), rectifier, reservoir, filter; path_ohms is not looked at.  readings[count], one loaded at least
+ * Out:  *estimate; not written unless PLW_OK
+ * Ret:  PLW_OK; PLW_E_USAGE: none loaded, too many (PLW_READINGS_MOST), a value outside its domain, a loaded reading
+ *       above the off-load peak, an off-load reading that does not belong to the winding, a reading that rises with
+ *       current, readings that no source fits (beyond three standard errors), or only a negative one; and as
+ *       plw_rectifier_steady() */
 PLW_API plw_status plw_source_from_readings(const plw_rectifier *described, const plw_bench_reading *readings,
                                             size_t count, const plw_reading_errors *errors,
                                             plw_source_estimate *estimate, plw_error *error) PLW_MUST_USE;
@@ -64,8 +66,7 @@ PLW_API plw_status plw_source_from_readings(const plw_rectifier *described, cons
 PLW_API plw_status plw_source_predict(const plw_source_estimate *estimate, double amps, double *volts,
                                       double *volts_error, plw_error *error) PLW_MUST_USE;
 
-/* ---- dummy load ---------------------------------------------------------------------------------------------------
- */
+/* ---- dummy load -------------------------------------------------------------------------------------------------- */
 
 typedef struct {
     double exact_ohms;     /* would draw just the current asked for */
@@ -97,8 +98,7 @@ PLW_API plw_status plw_supply_into(const plw_supply *supply, double ohms, double
  * practice, no single source. */
 PLW_API double plw_resistor_seconds(double watts, double rating_watts);
 
-/* ---- bleeder and discharge -----------------------------------------------------------------------------------------
- */
+/* ---- bleeder and discharge --------------------------------------------------------------------------------------- */
 
 /* The touch limit to which a supply is to fall: IEC 60204-1, 6.2.4 (60 V within 5 s of switching off, for machines). */
 #define PLW_SAFE_VOLTS 60.0
@@ -122,7 +122,9 @@ PLW_API double plw_discharge_seconds(const plw_rectifier *supply, double from_vo
 /* The bleeder across the output that brings the supply to 60 V within `seconds`.  A supply that never stands above 60 V
  * needs none: then ohms is infinite.
  * In:   volts > 0: highest voltage it can start from (off load, mains high); seconds > 0; margin >= 1: rating over
- * watts Ret:  PLW_OK; PLW_E_USAGE; PLW_E_NO_POINT: the resistors of the filter alone take longer */
+ *       watts
+ * Out:  *bleeder; not written unless PLW_OK
+ * Ret:  PLW_OK; PLW_E_USAGE; PLW_E_NO_POINT: the resistors of the filter alone take longer */
 PLW_API plw_status plw_bleeder_for(const plw_rectifier *supply, double volts, double seconds, plw_series series,
                                    double margin, plw_bleeder *bleeder, plw_error *error) PLW_MUST_USE;
 

@@ -62,8 +62,10 @@ enum { PLW_SUPPLY_CHECKS_MOST = 24 };
  * With silicon and cold tubes the whole capacitor bank charges to the off-load peak, so capacitors and peak inverse are
  * judged there, at the highest mains.  The least source resistance of a vacuum rectifier is taken in proportion to the
  * winding's voltage below its limit, which keeps the switching-on current the same (common practice, no source).  A
- * choke input is judged by whether its current stops. In:   state: the steady state of the supply at its load Out:
- * checks[*count] Ret:  whether all are kept */
+ * choke input is judged by whether its current stops.
+ * In:   state: the steady state of the supply at its load
+ * Out:  checks[*count]
+ * Ret:  whether all are kept */
 PLW_API bool plw_supply_limits_check(const plw_rectifier *supply, const plw_rectifier_state *state,
                                      const plw_supply_ratings *ratings, plw_supply_check checks[PLW_SUPPLY_CHECKS_MOST],
                                      size_t *count);

@@ -27,10 +27,11 @@ typedef struct {
 /* The transformer that gives wanted DC volts at a current.
  * In:   described: rectifier, reservoir, filter, mains frequency; winding_rms_volts and path_ohms are not looked at;
  *       volts > 0 and amps > 0 at the output; regulation_percent > 0, up to 100: rise of the winding from rated current
- * to no load, as a share of its rated volts (10 is good, 20 to 40 is common in small ones) Out:  *transformer; not
- * written unless PLW_OK Ret:  PLW_OK, PLW_E_USAGE, and as plw_rectifier_steady() Source: regulation of a winding taken
- * as the drop of its RMS current in its copper, primary reflected; the RMS current is that of the rectifier's steady
- * state. */
+ *       to no load, as a share of its rated volts (10 is good, 20 to 40 is common in small ones)
+ * Out:  *transformer; not written unless PLW_OK
+ * Ret:  PLW_OK, PLW_E_USAGE, and as plw_rectifier_steady()
+ * Source: regulation of a winding taken as the drop of its RMS current in its copper, primary reflected; the RMS
+ *       current is that of the rectifier's steady state. */
 PLW_API plw_status plw_transformer_for(const plw_rectifier *described, double volts, double amps,
                                        double regulation_percent, plw_transformer *transformer,
                                        plw_error *error) PLW_MUST_USE;

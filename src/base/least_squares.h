@@ -37,11 +37,10 @@ typedef enum {
 typedef struct {
     double sum_of_squares;
     plw_settled settled;
-    size_t start;      /* which start led here */
-    size_t iterations; /* from that start */
-    double
-        own_share_least; /* of the effects of the coordinates, the least share that the others cannot imitate; 0..1 */
-    bool singular;       /* that share is within rounding: some direction of the coordinates is not determined */
+    size_t start;           /* which start led here */
+    size_t iterations;      /* from that start */
+    double own_share_least; /* of the effects of the coordinates, the least share that the others cannot imitate */
+    bool singular;          /* that share is within rounding: some direction of the coordinates is not determined */
 } plw_least_squares_end;
 
 /* Least sum of squares by Levenberg-Marquardt (GSL multifit_nlinear, trust region, QR) from each start in turn; the
@@ -49,13 +48,14 @@ typedef struct {
  * In:   starts[count * p], one after the other
  * Out:  place[p]; *end; covariance[p * p] of the place for residuals of standard deviation 1, or NULL; rows and columns
  *       of a coordinate that no residual depends on, or that others make up wholly, are NaN, and those of the others.
- * Nothing is written unless PLW_OK Ret:  PLW_OK; PLW_E_USAGE: fewer residuals than coordinates, too many of them, no
- * start, tolerances not above 0; PLW_E_NO_CONVERGENCE: no start lies inside the domain or came to an end;
- * PLW_E_NO_MEMORY Source of the careful way: M. K. Transtrum and J. P. Sethna, "Improvements to the Levenberg-Marquardt
- * algorithm for nonlinear least-squares minimization", arXiv:1201.5885 (2012): geodesic acceleration.  Both ways are
- * checked against certified problems in tests/published/test_nist_regression.c. GSL calls its error handler, which ends
- * the program unless the caller turned it off, for arguments out of range and for lack of memory.  The arguments are
- * checked here first; memory is tried for before GSL asks for it. */
+ *       Nothing is written unless PLW_OK
+ * Ret:  PLW_OK; PLW_E_USAGE: fewer residuals than coordinates, too many of them, no start, tolerances not above 0;
+ *       PLW_E_NO_CONVERGENCE: no start lies inside the domain or came to an end; PLW_E_NO_MEMORY
+ * Source of the careful way: M. K. Transtrum and J. P. Sethna, "Improvements to the Levenberg-Marquardt algorithm for
+ *       nonlinear least-squares minimization", arXiv:1201.5885 (2012): geodesic acceleration.  Both ways are checked
+ *       against certified problems in tests/published/test_nist_regression.c.
+ * GSL calls its error handler, which ends the program unless the caller turned it off, for arguments out of range and
+ * for lack of memory.  The arguments are checked here first; memory is tried for before GSL asks for it. */
 plw_status plw_least_squares_solve(const plw_least_squares *problem, const double *starts, size_t count, double *place,
                                    double *covariance, plw_least_squares_end *end, plw_error *error) PLW_MUST_USE;
 

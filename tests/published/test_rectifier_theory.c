@@ -3,8 +3,8 @@
  * Context: O. H. Schade, "Analysis of rectifier operation", Proc. IRE 31, July 1943, p. 341-361, whose sheets show the
  * same quantities.  No reading of the printed sheets is used.  The closed forms are derived from the circuit; the
  * tables were computed as the exact periodic solution of the circuit with ideal diodes, by an independent program, and
- * are rounded to the digits given here.  A printed sheet can be read to about 0.01. SPDX-License-Identifier:
- * GPL-3.0-or-later */
+ * are rounded to the digits given here.  A printed sheet can be read to about 0.01.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
 #include "platewright/rectifier.h"
 
 #include "near.h"

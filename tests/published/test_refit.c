@@ -1,7 +1,7 @@
 /* The committed coefficients are what the printed rows in the same file give: every type is fitted again.
  * Tolerance: 0.1 % of each determined coefficient and of the currents; the file holds six digits, and another
- * processor's last bits may end the iteration elsewhere within its own tolerance. SPDX-License-Identifier:
- * GPL-3.0-or-later */
+ * processor's last bits may end the iteration elsewhere within its own tolerance.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
 #include "platewright/fit.h"
 #include "rows.h"
 
