@@ -15,6 +15,11 @@ extern "C" {
  *       failure nothing is left behind and an older file of that name is untouched. */
 PLW_API plw_status plw_text_write(const char *path, const char *text, plw_error *error) PLW_MUST_USE;
 
+/* Is there a place to write to, as far as can be told without writing?  To be asked before a first of several files is
+ * written.
+ * Ret:  PLW_OK; PLW_E_FILE with path and reason: no such folder, a folder itself, no leave to write */
+PLW_API plw_status plw_text_may_write(const char *path, plw_error *error) PLW_MUST_USE;
+
 #ifdef __cplusplus
 }
 #endif

@@ -150,7 +150,7 @@ int cli_run_check(const cli_arguments *arguments) {
     plw_meter_readings readings;
     plw_specimen *specimen = NULL;
     bool kept = false;
-    plw_status status = cli_work_open(arguments, &work, &error);
+    plw_status status = cli_work_open(arguments, NULL, &work, &error);
     if (status == PLW_OK) {
         status = read_all_measured(arguments, &readings, &error);
     }

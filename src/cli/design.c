@@ -49,7 +49,7 @@ int cli_run_design(const cli_arguments *arguments) {
     cli_work work;
     plw_error error = {.status = PLW_OK};
     bool kept = false;
-    plw_status status = cli_work_open(arguments, &work, &error);
+    plw_status status = cli_work_open(arguments, NULL, &work, &error);
     if (status == PLW_OK) {
         status = design(&work, &kept, &error);
     }

@@ -124,7 +124,7 @@ int cli_run_plot(const cli_arguments *arguments) {
     const char *name = family ? "family" : plw_plot_name(kind_of(cli_argument(arguments, "kind")));
     plw_status status = cli_drawing_find("output", cli_argument(arguments, "output"), name, &drawing, &error);
     if (status == PLW_OK) {
-        status = cli_work_open(arguments, &work, &error);
+        status = cli_work_open(arguments, &drawing, &work, &error);
     }
     if (status == PLW_OK) {
         status = family ? plot_family(&work, &drawing, &error) : plot(&work, &drawing, &kept, &error);

@@ -201,7 +201,7 @@ int cli_run_supply(const cli_arguments *arguments) {
     cli_work work;
     plw_error error = {.status = PLW_OK};
     findings f = {.finding = {.supply = NULL}};
-    plw_status status = cli_work_open(arguments, &work, &error);
+    plw_status status = cli_work_open(arguments, NULL, &work, &error);
     if (status == PLW_OK) {
         status = supply(&work, &f, &error);
     }

@@ -7,6 +7,7 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "cli/files.h"
 #include "cli/folders.h"
 #include "platewright/text_file.h"
 
@@ -72,7 +73,7 @@ static plw_status read_aim(const char *text, plw_aim *aim, plw_error *error) {
     return PLW_OK;
 }
 
-plw_status cli_work_open(const cli_arguments *arguments, cli_work *work, plw_error *error) {
+plw_status cli_work_open(const cli_arguments *arguments, const cli_drawing *drawing, cli_work *work, plw_error *error) {
     *work = (cli_work){.arguments = arguments, .series = PLW_E24};
     plw_status status = read_aim(cli_argument(arguments, "aim"), &work->aim, error);
     const char *series = cli_argument(arguments, "series");
@@ -85,7 +86,7 @@ plw_status cli_work_open(const cli_arguments *arguments, cli_work *work, plw_err
     if (status == PLW_OK) {
         status = lay_options(arguments, work->description, error);
     }
-    return status;
+    return status == PLW_OK ? cli_files_check(arguments, drawing, error) : status;
 }
 
 plw_status cli_work_build(cli_work *work, plw_error *error) {

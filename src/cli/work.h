@@ -4,6 +4,7 @@
 #define CLI_WORK_H
 
 #include "cli/arguments.h"
+#include "cli/drawing.h"
 #include "platewright/bias.h"
 #include "platewright/report.h"
 #include "platewright/stage_file.h"
@@ -28,9 +29,12 @@ typedef struct {
     plw_hum hum;
 } cli_extras;
 
-/* Read the stage file, if there is one, and lay the options over it; read aim and series.
+/* Read the stage file, if there is one, and lay the options over it; read aim and series; see that what is to be
+ * written has its place.
+ * In:   drawing: what --output stands for in plot, else NULL
  * Out:  *work, to be closed with cli_work_close(), also after an error */
-plw_status cli_work_open(const cli_arguments *arguments, cli_work *work, plw_error *error) PLW_MUST_USE;
+plw_status cli_work_open(const cli_arguments *arguments, const cli_drawing *drawing, cli_work *work,
+                         plw_error *error) PLW_MUST_USE;
 
 /* Make the circuit: work->stage, work->supply. */
 plw_status cli_work_build(cli_work *work, plw_error *error) PLW_MUST_USE;

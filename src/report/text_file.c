@@ -44,39 +44,50 @@ static plw_status write_straight(const char *path, const char *text, plw_error *
     return reason == 0 ? PLW_OK : refuse(path, reason, error);
 }
 
-/* Is the folder of a new file there?  Ret: 0 or the reason. */
+/* Can a new file be put in its folder?  Ret: 0 or the reason. */
 static int folder_fault(const char *path) {
     const char *slash = strrchr(path, '/');
-    if (slash == NULL || slash == path) {
-        return 0;
+    char *folder = NULL;
+    if (slash == NULL) {
+        folder = strdup(".");
+    } else {
+        folder = slash == path ? strdup("/") : strndup(path, (size_t)(slash - path));
     }
-    char *folder = strndup(path, (size_t)(slash - path));
     struct stat status = {0};
     int reason = 0;
     if (folder == NULL || stat(folder, &status) != 0) {
         reason = errno;
     } else if (!S_ISDIR(status.st_mode)) {
         reason = ENOTDIR;
+    } else if (access(folder, W_OK | X_OK) != 0) {
+        reason = errno;
     }
     free(folder);
     return reason;
 }
 
-plw_status plw_text_write(const char *path, const char *text, plw_error *error) {
+plw_status plw_text_may_write(const char *path, plw_error *error) {
     struct stat status = {0};
     const bool exists = stat(path, &status) == 0;
     if (exists && S_ISDIR(status.st_mode)) {
         return plw_fail(error, PLW_E_FILE, "%s: is a folder; name a file in it", path);
     }
-    if (exists && !S_ISREG(status.st_mode)) {
-        return write_straight(path, text, error);
-    }
     if (exists && access(path, W_OK) != 0) {
         return refuse(path, errno, error);
     }
     const int reason = exists ? 0 : folder_fault(path);
-    if (reason != 0) {
-        return refuse(path, reason, error);
+    return reason == 0 ? PLW_OK : refuse(path, reason, error);
+}
+
+plw_status plw_text_write(const char *path, const char *text, plw_error *error) {
+    const plw_status possible = plw_text_may_write(path, error);
+    if (possible != PLW_OK) {
+        return possible;
+    }
+    struct stat status = {0};
+    const bool exists = stat(path, &status) == 0;
+    if (exists && !S_ISREG(status.st_mode)) {
+        return write_straight(path, text, error);
     }
     struct stat link = {0};
     const bool is_link = lstat(path, &link) == 0 && S_ISLNK(link.st_mode);
