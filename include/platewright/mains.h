@@ -3,8 +3,7 @@
 #ifndef PLATEWRIGHT_MAINS_H
 #define PLATEWRIGHT_MAINS_H
 
-#include "platewright/limits.h"
-#include "platewright/stage.h"
+#include "platewright/bias.h"
 
 #ifdef __cplusplus
 extern "C" {
@@ -41,6 +40,14 @@ typedef struct {
  * memory: the maker of the tube answers for supply variation in design-center ratings, the maker of the equipment in
  * the others. */
 PLW_API plw_status plw_mains_solve(const plw_stage *stage, plw_mains *mains, plw_error *error) PLW_MUST_USE;
+
+/* Choose the cathode resistor when no aim is told: as plw_bias_choose() for PLW_AIM_DEFAULT_PERCENT of the rated
+ * dissipation, lowered as far as the ratings of heat and current need that must hold with the mains high.  (Ratings of
+ * voltage no resistor cures.)
+ * Out:  *choice, whose aim is the one taken; *before_percent: 0, or what the aim was before it was lowered
+ * Ret:  as plw_bias_choose() */
+PLW_API plw_status plw_bias_choose_for_mains(const plw_stage *stage, plw_series series, plw_bias_choice *choice,
+                                             double *before_percent, plw_error *error) PLW_MUST_USE;
 
 #ifdef __cplusplus
 }

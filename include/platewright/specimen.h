@@ -45,6 +45,10 @@ typedef struct {
 PLW_API plw_status plw_specimen_measure(const plw_stage *stage, const plw_meter_readings *readings, plw_aim aim,
                                         plw_series series, plw_specimen *specimen, plw_error *error) PLW_MUST_USE;
 
+/* Does this very tube keep its ratings: at rest as measured and, where it could be solved, in the stage as built, at
+ * rest and driven?  The bogey tube of its type may do otherwise. */
+PLW_API bool plw_specimen_keeps_ratings(const plw_specimen *specimen) PLW_MUST_USE;
+
 #ifdef __cplusplus
 }
 #endif

@@ -6,7 +6,6 @@
 
 #include "cli/commands.h"
 #include "cli/work.h"
-#include "platewright/limits.h"
 
 enum { PART_SIZE = 64 };
 
@@ -98,19 +97,6 @@ static plw_status read_all_measured(const cli_arguments *arguments, plw_meter_re
     return status;
 }
 
-/* Does this very tube, as measured at rest, keep its ratings? */
-static bool specimen_keeps_ratings(const plw_specimen *specimen) {
-    const plw_quiescent quiescent = {.plate_volts = specimen->plate_volts,
-                                     .screen_volts = specimen->screen_volts,
-                                     .cathode_volts = specimen->cathode_volts,
-                                     .cathode_amps = specimen->cathode_amps,
-                                     .plate_watts = specimen->plate_watts,
-                                     .screen_watts = specimen->screen_watts};
-    plw_rating_check checks[PLW_RATING_CHECKS_MOST];
-    size_t count = 0;
-    return plw_limits_check(&specimen->stage, &quiescent, NULL, checks, &count);
-}
-
 static plw_status check(cli_work *work, const plw_meter_readings *readings, plw_specimen *specimen, bool *kept,
                         plw_error *error) {
     plw_bias_option option;
@@ -129,15 +115,11 @@ static plw_status check(cli_work *work, const plw_meter_readings *readings, plw_
     }
     cli_extras extras;
     plw_answer answer = {.stage = &work->stage, .option = &option, .specimen = specimen, .series = work->series};
-    *kept = option.within_ratings;
-    if (specimen != NULL) {
-        *kept = specimen_keeps_ratings(specimen);
-    }
+    *kept = specimen == NULL ? option.within_ratings : plw_specimen_keeps_ratings(specimen);
     if (specimen != NULL && specimen->as_built_solved) {
         /* From here on it is this very tube that is judged. */
         answer.stage = &specimen->stage;
         answer.option = &specimen->as_built;
-        *kept = *kept && specimen->as_built.within_ratings;
     }
     cli_work_complete(work, &answer, &extras, kept);
     status = cli_work_save(work, error);

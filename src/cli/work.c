@@ -11,7 +11,7 @@
 #include "cli/folders.h"
 #include "platewright/text_file.h"
 
-enum { PLACE_SIZE = 512, NAME_SIZE = 64, VALUE_SIZE = 32, AIM_ROUNDS = 4 };
+enum { PLACE_SIZE = 512, NAME_SIZE = 64, VALUE_SIZE = 32 };
 
 /* ---- options ----------------------------------------------------------------------------------------------------- */
 
@@ -120,36 +120,15 @@ plw_status cli_work_place(const cli_work *work, plw_error *error) {
 
 /* ---- result ------------------------------------------------------------------------------------------------------ */
 
-/* By how much the worst rating of heat or current is passed with the mains high, where the maker leaves them to the
- * builder; 1 or less: by nothing. */
-static double over_at_high_mains(const plw_stage *stage, double ohms) {
-    plw_stage trial = *stage;
-    plw_mains mains;
-    double worst = 0.0;
-    trial.cathode_resistor_ohms = ohms;
-    if (plw_mains_solve(&trial, &mains, NULL) != PLW_OK || !mains.counted || !mains.high.solved) {
-        return 0.0;
-    }
-    for (size_t i = 0; i < mains.high.ratings_count; i++) {
-        const plw_rating_check *check = &mains.high.ratings[i];
-        if (check->unit != PLW_UNIT_VOLT && check->share_percent > 100.0 * worst) {
-            worst = check->share_percent / 100.0;
-        }
-    }
-    return worst;
-}
-
-/* Unless an aim is told, it is lowered until ratings that must hold at high mains do. */
+/* An aim that is told is taken as it is. */
 static plw_status choose(cli_work *work, plw_bias_choice *choice, plw_error *error) {
-    plw_status status = plw_bias_choose(&work->stage, work->aim, work->series, choice, error);
-    for (int round = 0; round < AIM_ROUNDS && status == PLW_OK; round++) {
-        const double over = over_at_high_mains(&work->stage, choice->option[choice->chosen].ohms);
-        if (cli_argument(work->arguments, "aim") != NULL || over <= 1.0) {
-            break;
-        }
-        work->aim_before_percent = PLW_AIM_DEFAULT_PERCENT;
-        work->aim.value *= 0.995 / over;
-        status = plw_bias_choose(&work->stage, work->aim, work->series, choice, error);
+    if (cli_argument_given(work->arguments, "aim")) {
+        return plw_bias_choose(&work->stage, work->aim, work->series, choice, error);
+    }
+    const plw_status status =
+        plw_bias_choose_for_mains(&work->stage, work->series, choice, &work->aim_before_percent, error);
+    if (status == PLW_OK) {
+        work->aim = choice->aim;
     }
     return status;
 }

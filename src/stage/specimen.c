@@ -222,3 +222,16 @@ plw_status plw_specimen_measure(const plw_stage *stage, const plw_meter_readings
     }
     return PLW_OK;
 }
+
+bool plw_specimen_keeps_ratings(const plw_specimen *specimen) {
+    const plw_quiescent measured = {.plate_volts = specimen->plate_volts,
+                                    .screen_volts = specimen->screen_volts,
+                                    .cathode_volts = specimen->cathode_volts,
+                                    .cathode_amps = specimen->cathode_amps,
+                                    .plate_watts = specimen->plate_watts,
+                                    .screen_watts = specimen->screen_watts};
+    plw_rating_check checks[PLW_RATING_CHECKS_MOST];
+    size_t count = 0;
+    const bool kept = plw_limits_check(&specimen->stage, &measured, NULL, checks, &count);
+    return kept && (!specimen->as_built_solved || specimen->as_built.within_ratings);
+}

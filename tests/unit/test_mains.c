@@ -86,6 +86,65 @@ static void corners_that_are_not_there(void **state) {
     assert_int_equal(plw_mains_solve(&stage, &mains, NULL), PLW_E_USAGE);
 }
 
+/* A stage whose heat goes as the mains: more than a tenth above at a tenth more. */
+static void the_aim_is_lowered_for_the_mains(void **state) {
+    (void)state;
+    const plw_rating_system systems[] = {PLW_SYSTEM_DESIGN_CENTER, PLW_SYSTEM_DESIGN_MAXIMUM, PLW_SYSTEM_ABSOLUTE};
+    const plw_aim usual = {PLW_AIM_DISSIPATION, PLW_AIM_DEFAULT_PERCENT};
+    for (size_t i = 0; i < sizeof systems / sizeof systems[0]; i++) {
+        test_tube tube;
+        make_tube(&tube, pentode_law(TEST_PENTODE_STEEP));
+        rate(&tube, systems[i]);
+        plw_stage stage = simple_stage(&tube, 251.3, 5210.0, UNKNOWN, UNKNOWN);
+        plw_bias_choice plain, choice;
+        plw_mains mains;
+        double before = -2.385;
+        assert_int_equal(plw_bias_choose(&stage, usual, PLW_E96, &plain, NULL), PLW_OK);
+        assert_int_equal(plw_bias_choose_for_mains(&stage, PLW_E96, &choice, &before, NULL), PLW_OK);
+        stage.cathode_resistor_ohms = choice.option[choice.chosen].ohms;
+        assert_int_equal(plw_mains_solve(&stage, &mains, NULL), PLW_OK);
+        assert_true(mains.within_ratings);
+        if (systems[i] == PLW_SYSTEM_DESIGN_CENTER) {
+            assert_true(before == 0.0);
+            assert_true(choice.aim.value == usual.value);
+            assert_true(choice.exact_ohms == plain.exact_ohms);
+            continue;
+        }
+        assert_true(before == usual.value);
+        assert_true(choice.aim.value < usual.value);
+        assert_true(choice.exact_ohms > plain.exact_ohms);
+        /* Not lower than needed: the plate is near its rating, a tenth above nominal. */
+        assert_true(mains.high.quiescent.plate_watts > 0.96 * 12.3);
+        stage.cathode_resistor_ohms = plain.option[plain.chosen].ohms;
+        assert_int_equal(plw_mains_solve(&stage, &mains, NULL), PLW_OK);
+        assert_false(mains.high.within_ratings);
+    }
+}
+
+/* A voltage that is too high at high mains is no reason to starve the tube. */
+static void voltages_do_not_lower_the_aim(void **state) {
+    (void)state;
+    test_tube tube;
+    make_tube(&tube, pentode_law(TEST_PENTODE_STEEP));
+    rate(&tube, PLW_SYSTEM_DESIGN_MAXIMUM);
+    tube.ratings[0].plate_volts = 253.0;
+    tube.ratings[0].cathode_amps = UNKNOWN;
+    const plw_stage stage = simple_stage(&tube, 251.3, 5210.0, UNKNOWN, UNKNOWN);
+    plw_bias_choice choice, wider;
+    double before = -2.385;
+    assert_int_equal(plw_bias_choose_for_mains(&stage, PLW_E24, &choice, &before, NULL), PLW_OK);
+    tube.ratings[0].plate_volts = 1253.0;
+    assert_int_equal(plw_bias_choose_for_mains(&stage, PLW_E24, &wider, &before, NULL), PLW_OK);
+    assert_true(choice.aim.value == wider.aim.value);
+    /* What cannot be chosen at all is told as by plw_bias_choose(). */
+    plw_error error = {0};
+    tube.ratings[0].plate_watts = 1230.0;
+    assert_int_equal(plw_bias_choose_for_mains(&stage, PLW_E24, &choice, &before, &error), PLW_E_NO_POINT);
+    assert_non_null(strstr(error.text, "out of reach"));
+    tube.ratings[0].plate_watts = UNKNOWN;
+    assert_int_equal(plw_bias_choose_for_mains(&stage, PLW_E24, &choice, &before, &error), PLW_E_USAGE);
+}
+
 /* The reading expected means the resistor chosen; higher readings mean higher resistors. */
 static void readings_have_a_meaning(void **state) {
     (void)state;
@@ -119,10 +178,9 @@ static void readings_have_a_meaning(void **state) {
 
 int main(void) {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(corners_are_the_stage_there),
-        cmocka_unit_test(rating_systems_differ),
-        cmocka_unit_test(corners_that_are_not_there),
-        cmocka_unit_test(readings_have_a_meaning),
+        cmocka_unit_test(corners_are_the_stage_there),   cmocka_unit_test(rating_systems_differ),
+        cmocka_unit_test(corners_that_are_not_there),    cmocka_unit_test(the_aim_is_lowered_for_the_mains),
+        cmocka_unit_test(voltages_do_not_lower_the_aim), cmocka_unit_test(readings_have_a_meaning),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

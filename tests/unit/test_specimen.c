@@ -213,6 +213,36 @@ static void the_resistor_found_suits_this_tube(void **state) {
     assert_non_null(strstr(strong.resistor_obstacle, "out of reach"));
 }
 
+/* The verdict is on the tube that was measured: of two in one stage the stronger passes a rating that the bogey keeps. */
+static void the_tube_measured_is_the_one_judged(void **state) {
+    (void)state;
+    test_tube tube;
+    make_rated(&tube, pentode_law(TEST_BEAM_SMALL));
+    const plw_stage stage = pentode_stage(&tube);
+    plw_meter_readings readings;
+    static plw_specimen weak, strong;
+    const plw_quiescent at_weak = measure_strength(&stage, 0.9, &readings, &weak);
+    const plw_quiescent at_strong = measure_strength(&stage, 1.2, &readings, &strong);
+    assert_true(at_weak.plate_watts < at_strong.plate_watts);
+    tube.ratings[0].plate_watts = 1.023 * at_strong.plate_watts; /* above both */
+    measure_strength(&stage, 0.9, &readings, &weak);
+    measure_strength(&stage, 1.2, &readings, &strong);
+    assert_true(plw_specimen_keeps_ratings(&weak) && plw_specimen_keeps_ratings(&strong));
+    tube.ratings[0].plate_watts = 0.5 * (at_weak.plate_watts + at_strong.plate_watts);
+    measure_strength(&stage, 0.9, &readings, &weak);
+    measure_strength(&stage, 1.2, &readings, &strong);
+    assert_true(plw_specimen_keeps_ratings(&weak));
+    assert_false(plw_specimen_keeps_ratings(&strong));
+    /* Measured at rest it is over, also where the stage as built could not be solved. */
+    strong.as_built_solved = false;
+    assert_false(plw_specimen_keeps_ratings(&strong));
+    /* Kept at rest, but not driven. */
+    weak.as_built.within_ratings = false;
+    assert_false(plw_specimen_keeps_ratings(&weak));
+    weak.as_built_solved = false;
+    assert_true(plw_specimen_keeps_ratings(&weak));
+}
+
 /* ---- refusals ---------------------------------------------------------------------------------------------------- */
 
 static void readings_that_contradict_are_refused(void **state) {
@@ -266,6 +296,7 @@ int main(void) {
         cmocka_unit_test(the_supply_is_taken_as_read),
         cmocka_unit_test(the_copper_is_taken_as_read),
         cmocka_unit_test(the_resistor_found_suits_this_tube),
+        cmocka_unit_test(the_tube_measured_is_the_one_judged),
         cmocka_unit_test(readings_that_contradict_are_refused),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
