@@ -17,6 +17,8 @@
 #include <sys/stat.h>
 #include <unistd.h>
 
+#include "base/xml_words.h"
+
 #if LIBXML_VERSION >= 21200
 typedef const xmlError *library_error;
 #else
@@ -50,7 +52,8 @@ struct plw_xml {
     place place_there;   /* ... and the place there */
     bool has_doctype, root_only;
     startElementNsSAX2Func start_element;
-    int facet_line; /* line of the last fault of a facet: the library repeats it in other words */
+    const plw_xml *schema_text; /* while it is checked against one */
+    int facet_line;             /* line of the last fault of a facet: the library repeats it in other words */
 };
 
 /* ---- faults ------------------------------------------------------------------------------------------------------ */
@@ -220,9 +223,11 @@ static void on_schema_error(void *context, library_error fault) {
     if (echo && xml->facet_line == fault->line) {
         return;
     }
-    xml->facet_line = echo ? 0 : fault->line;
+    char message[FAULT_TEXT_SIZE];
     char text[FAULT_TEXT_SIZE];
-    copy_message(text, sizeof text, fault);
+    copy_message(message, sizeof message, fault);
+    xml->facet_line = strstr(message, "[facet") != NULL ? fault->line : 0;
+    plw_xml_words(message, plw_xml_root(xml->schema_text), text, sizeof text);
     xmlNodePtr node = fault->node;
     while (node != NULL && node->type != XML_ELEMENT_NODE) {
         node = node->parent;
@@ -288,12 +293,14 @@ static void validate(plw_xml *xml, const plw_xml_schema *schema) {
         xml->no_memory = true;
         return;
     }
+    xml->schema_text = schema->text;
     xmlSchemaSetValidStructuredErrors(validator, on_schema_error, xml);
     const int result = xmlSchemaValidateDoc(validator, xml->document);
     if (result != 0 && xml->faults.text[0] == '\0' && !xml->no_memory) {
         add_fault(xml, 1, 1, "the schema could not be applied");
     }
     xmlSchemaFreeValidCtxt(validator);
+    xml->schema_text = NULL;
 }
 
 /* ---- bytes ------------------------------------------------------------------------------------------------------- */

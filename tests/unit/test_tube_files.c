@@ -196,7 +196,7 @@ static const bad_file BAD_FILES[] = {
     {"malformed.xml", {"malformed.xml:6:"}},
     {"many_faults.xml", {":5:3: plate-current", ":6:3: plate-current", "more faults"}},
     {"missing_rating.xml", {":4:3: ratings: the attribute 'plate-dissipation' is missing", "'screen-dissipation'"}},
-    {"missing_source.xml", {":5:3: ", "'source' is required"}},
+    {"missing_source.xml", {":5:3: ", "'source' is missing"}},
     {"negative_current.xml", {":5:32: plate-current: -41mA is out of range"}},
     {"no_element.xml", {"no_element.xml:1:1: "}},
     {"no_ratings.xml", {":2:1: tube: the element 'ratings' is missing"}},
@@ -218,7 +218,7 @@ static const bad_file BAD_FILES[] = {
     {"utf16_no_mark.xml", {"UTF-16"}},
     {"variants_differ.xml", {":2:1: tube: the attribute 'variants' must list"}},
     {"wrong_law.xml", {":5:3: model: law: 'parabola' is not the law"}},
-    {"wrong_shape.xml", {":2:1: ", "'colour' is not allowed", ":5:3: ", "'ratings'"}},
+    {"wrong_shape.xml", {":2:1: ", "'colour' is not known", ":5:3: ", "ratings: does not belong here"}},
     {"wrong_unit.xml", {":4:3: plate-dissipation: 11mA is a current", ":5:3: plate-current: 41V is a voltage"}},
     {"zero_byte.xml", {"zero byte"}},
 };
