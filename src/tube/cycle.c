@@ -7,7 +7,7 @@
 #include "tube/network.h"
 
 #define CYCLE_TOLERANCE_AMPS 1e-9
-#define NEAR_AMPS 2e-4         /* from here one step of Newton's is trusted to converge */
+#define NEAR_AMPS 4e-4         /* from here one step of Newton's is trusted to converge */
 #define STEPPED_MOST_AMPS 1e-6 /* an instant further off than this before its last step is not trusted */
 #define SLOPED_AMPS 1e-8       /* averages further off than this get fresh slopes for their next step */
 #define FAR_PART 1e-3          /* averages further off than this part of the current at rest may need damped steps */
