@@ -41,7 +41,7 @@ void plw_covariance_of_coefficients(size_t count, double *covariance) {
 double plw_coordinate_error_relative(const plw_law *law, size_t index, double coordinate_error) {
     if (index == plw_law_signed_coefficient(law->kind)) {
         const double volts = fabs(law->coefficient[index]);
-        return volts > 0.0 ? coordinate_error / volts : (double)NAN;
+        return coordinate_error < volts ? coordinate_error / volts : (double)NAN; /* else not even its sign is known */
     }
     return coordinate_error;
 }
