@@ -4,6 +4,7 @@
 
 #include <math.h>
 #include <stdint.h>
+#include <stdlib.h>
 #include <string.h>
 
 #include "base/least_squares.h"
@@ -170,8 +171,10 @@ static double rounded(double value, int digits) {
     if (!isfinite(value) || value == 0.0) {
         return value;
     }
-    const double unit = pow(10.0, floor(log10(fabs(value))) - digits + 1);
-    return round(value / unit) * unit;
+    /* Powers of ten above one are exact: so the result is the double nearest to the decimal. */
+    const int places = digits - 1 - (int)floor(log10(fabs(value)));
+    const double power = pow(10.0, abs(places));
+    return places >= 0 ? round(value * power) / power : round(value / power) * power;
 }
 
 enum { COEFFICIENT_DIGITS = 6, ERROR_DIGITS = 3 };
