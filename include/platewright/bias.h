@@ -62,7 +62,10 @@ typedef struct {
 PLW_API plw_status plw_bias_choose(const plw_stage *stage, plw_aim aim, plw_series series, plw_bias_choice *choice,
                                    plw_error *error) PLW_MUST_USE;
 
-/* Solve one option: rest, signal and ratings at a resistor (or at the stage's fixed bias when ohms is NaN). */
+/* Solve one option: rest, signal and ratings.
+ * In:   ohms > 0: the cathode resistor, whatever the stage's own; NaN: the stage's bias as it is, resistor or fixed
+ * Out:  *option; not written unless PLW_OK
+ * Ret:  PLW_OK; as plw_quiescent_solve() and plw_signal_solve() */
 PLW_API plw_status plw_bias_option_solve(const plw_stage *stage, double ohms, plw_bias_option *option,
                                          plw_error *error) PLW_MUST_USE;
 

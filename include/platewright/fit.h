@@ -30,7 +30,8 @@ typedef struct {
 PLW_API plw_status plw_predict_row(const plw_law *law, const plw_row *row, plw_prediction *prediction,
                                    plw_error *error) PLW_MUST_USE;
 
-/* Predict a point in the same way (full-drive figures stay NaN).  For an inner mu, mu holds it. */
+/* Predict a point in the same way (full-drive figures stay NaN).  For an inner mu, mu holds it.
+ * Ret:  as plw_predict_row() */
 PLW_API plw_status plw_predict_point(const plw_law *law, const plw_point *point, plw_prediction *prediction,
                                      plw_error *error) PLW_MUST_USE;
 
@@ -135,7 +136,9 @@ PLW_API plw_status plw_fit_predict_row(const plw_fit *fit, const plw_row *row, p
 
 /* The law fitted with one row left out (SIZE_MAX: none), and, if wanted, without any triode-connected row or point of a
  * screened tube.
- * In:   near: a law to start from (the fit to all rows), or NULL: every start is tried */
+ * In:   near: a law to start from (the fit to all rows), or NULL: every start is tried
+ * Out:  *law
+ * Ret:  as plw_fit_tube() */
 PLW_API plw_status plw_fit_without(const plw_tube *tube, size_t row, bool without_triode_connection,
                                    const plw_law *near, plw_law *law, plw_error *error) PLW_MUST_USE;
 

@@ -38,7 +38,8 @@ typedef struct {
     plw_source_estimate estimate;
 } plw_plate_supply;
 
-/* A supply that is no more than a line. */
+/* A supply that is no more than a line.
+ * Ret:  without parts or readings */
 PLW_API plw_plate_supply plw_plate_supply_of(const plw_supply *line);
 
 /* Find winding and source resistance from the readings, where there are parts and readings, and draw the line.
@@ -50,11 +51,13 @@ PLW_API plw_status plw_plate_supply_settle(plw_plate_supply *supply, double most
 
 /* The same supply at another mains voltage: of a network of resistances volts and amperes grow together, so the line is
  * drawn out from the origin.  Exact but for the drop of the diodes.
- * In:   mains_percent: of nominal, > 0 (90, 110) */
+ * In:   mains_percent: of nominal, > 0 (90, 110)
+ * Ret:  a copy, drawn out */
 PLW_API plw_supply plw_supply_at_mains(const plw_supply *supply, double mains_percent);
 
 /* The supply that gives `volts` into `ohms`: all its voltages in one proportion higher or lower.
  * In:   volts > 0, ohms > 0
+ * Out:  *implied; not written unless PLW_OK
  * Ret:  PLW_OK, PLW_E_USAGE */
 PLW_API plw_status plw_supply_implied(const plw_supply *supply, double volts, double ohms, plw_supply *implied,
                                       plw_error *error) PLW_MUST_USE;
@@ -69,7 +72,8 @@ typedef struct {
     double bleeder_seconds; /* within which a bleeder is to bring it to 60 V */
 } plw_supply_question;
 
-/* Usual: E24, no transformer wanted, no rating known, 30 s (common practice, no source). */
+/* The usual question at a current.
+ * Ret:  E24, no transformer wanted, no rating known, 30 s (common practice, no source) */
 PLW_API plw_supply_question plw_supply_question_usual(double amps);
 
 enum { PLW_ANSWER_LINE_POINTS = 13 };

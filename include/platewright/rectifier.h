@@ -109,7 +109,8 @@ typedef struct {
 PLW_API double plw_path_ohms(double secondary_ohms, double primary_ohms, double primary_volts, double secondary_volts);
 
 /* A silicon rectifier of the 1 A class: 0.7 V and 0.23 ohm, so 0.93 V at 1 A (1N4007 data sheet, typical; from memory,
- * confidence high). */
+ * confidence high).
+ * Ret:  it */
 PLW_API plw_diode plw_diode_silicon(void);
 
 /* A vacuum rectifier by its published drop.
@@ -123,7 +124,8 @@ PLW_API plw_diode plw_diode_vacuum(double volts, double amps);
 PLW_API plw_status plw_rectifier_validate(const plw_rectifier *supply, plw_error *error) PLW_MUST_USE;
 
 /* The same supply at another mains voltage.
- * In:   mains_percent: of nominal, > 0 (90, 110) */
+ * In:   mains_percent: of nominal, > 0 (90, 110)
+ * Ret:  a copy, its winding higher or lower in proportion */
 PLW_API plw_rectifier plw_rectifier_at_mains(const plw_rectifier *supply, double mains_percent);
 
 /* The periodic steady state, found directly: one mains period (half of one, when both halves are alike) is mapped onto
@@ -144,7 +146,9 @@ PLW_API plw_status plw_rectifier_steady(const plw_rectifier *supply, plw_dc_load
                                         plw_error *error) PLW_MUST_USE;
 
 /* The same with waveforms: count instants at equal distances over one mains period, the first at the zero of the EMF.
- * In:   count >= 2 */
+ * In:   count >= 2
+ * Out:  instants[count], *state; not written unless PLW_OK
+ * Ret:  as plw_rectifier_steady() */
 PLW_API plw_status plw_rectifier_waveform(const plw_rectifier *supply, plw_dc_load load,
                                           plw_rectifier_instant *instants, size_t count, plw_rectifier_state *state,
                                           plw_error *error) PLW_MUST_USE;

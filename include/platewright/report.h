@@ -35,10 +35,12 @@ typedef struct {
  * Ret:  PLW_OK or PLW_E_NO_MEMORY */
 PLW_API plw_status plw_report_text(const plw_answer *answer, char **text, plw_error *error) PLW_MUST_USE;
 
-/* The same as JSON, schema "platewright/1": units in the names, null for what is not known. */
+/* The same as JSON, schema "platewright/1": units in the names, null for what is not known.
+ * Out, Ret: as plw_report_text(); PLW_E_NO_MEMORY also for a name that is not UTF-8 */
 PLW_API plw_status plw_report_json(const plw_answer *answer, char **text, plw_error *error) PLW_MUST_USE;
 
-/* The same as CSV: one header line with units in the column names, one line for each option. */
+/* The same as CSV: one header line with units in the column names, one line for each option.
+ * Out, Ret: as plw_report_text() */
 PLW_API plw_status plw_report_csv(const plw_answer *answer, char **text, plw_error *error) PLW_MUST_USE;
 
 /* ---- the plate supply -------------------------------------------------------------------------------------------- */
@@ -54,14 +56,18 @@ typedef struct {
     const plw_hum *hum;
 } plw_supply_finding;
 
+/* As text for the bench and as JSON.
+ * Out, Ret: as plw_report_text() and plw_report_json() */
 PLW_API plw_status plw_report_supply_text(const plw_supply_finding *finding, char **text,
                                           plw_error *error) PLW_MUST_USE;
 PLW_API plw_status plw_report_supply_json(const plw_supply_finding *finding, char **text,
                                           plw_error *error) PLW_MUST_USE;
 
-/* The regulation line as CSV: one line a point. */
+/* The regulation line as CSV: one line a point.
+ * Out, Ret: as plw_report_text() */
 PLW_API plw_status plw_report_supply_csv(const plw_supply_finding *finding, char **text, plw_error *error) PLW_MUST_USE;
 
+/* Free a text that this library gave; NULL is allowed. */
 PLW_API void plw_text_free(char *text);
 
 /* Gnuplot scripts: self-contained, no path or machine in them. */
@@ -69,15 +75,19 @@ typedef enum { PLW_PLOT_LOAD_LINE, PLW_PLOT_TRANSFER, PLW_PLOT_SUPPLY, PLW_PLOT_
 typedef enum { PLW_PLOT_SVG, PLW_PLOT_PNG, PLW_PLOT_PDF } plw_plot_format;
 
 /* In:   answer; output: the file name that the script is to draw into (its last part only is kept)
- * Out:  *text, to be freed with plw_text_free() */
+ * Out:  *text, to be freed with plw_text_free(); not written unless PLW_OK
+ * Ret:  PLW_OK; PLW_E_USAGE: no such kind of plot; PLW_E_NO_MEMORY */
 PLW_API plw_status plw_plot_script(const plw_answer *answer, plw_plot_kind kind, plw_plot_format format,
                                    const char *output, char **text, plw_error *error) PLW_MUST_USE;
 
-/* The plate family of one tube with its published points and rows, in pentode or triode connection. */
+/* The plate family of one tube with its published points and rows, in pentode or triode connection.
+ * Out:  *text, to be freed with plw_text_free(); not written unless PLW_OK
+ * Ret:  PLW_OK; PLW_E_USAGE: a rectifier, a tube without a law, a connection that it has not; PLW_E_NO_MEMORY */
 PLW_API plw_status plw_plot_family(const plw_tube *tube, plw_connection connection, plw_plot_format format,
                                    const char *output, char **text, plw_error *error) PLW_MUST_USE;
 
-PLW_API const char *plw_plot_name(plw_plot_kind kind); /* "load-line", "transfer", "supply" */
+/* Ret:  "load-line", "transfer" or "supply"; NULL for any other */
+PLW_API const char *plw_plot_name(plw_plot_kind kind);
 
 #ifdef __cplusplus
 }

@@ -38,12 +38,22 @@ typedef struct {
     double tangent_ohms[PLW_LINE_POINTS_MOST]; /* -dV/dI at each point; rectifier only */
 } plw_supply;
 
+/* A supply that holds its voltage.
+ * In:   volts > 0: loaded
+ * Out:  *supply; not written unless PLW_OK
+ * Ret:  PLW_OK; PLW_E_USAGE */
 PLW_API plw_status plw_supply_stiff(double volts, plw_supply *supply, plw_error *error) PLW_MUST_USE;
+
+/* A supply of an off-load voltage behind a resistance.
+ * In:   off_load_volts > 0; ohms >= 0
+ * Out:  *supply; not written unless PLW_OK
+ * Ret:  PLW_OK; PLW_E_USAGE */
 PLW_API plw_status plw_supply_source(double off_load_volts, double ohms, plw_supply *supply,
                                      plw_error *error) PLW_MUST_USE;
 
 /* A supply given by its readings, in any order.
  * In:   readings[count], count >= 1, volts > 0, amps >= 0
+ * Out:  *supply; not written unless PLW_OK
  * Ret:  PLW_OK; PLW_E_USAGE: two readings at one current that differ, a reading that rises with current, none loaded
  *       (one loaded reading is taken as stiff around it), too many */
 PLW_API plw_status plw_supply_readings(const plw_reading *readings, size_t count, plw_supply *supply,
@@ -51,8 +61,7 @@ PLW_API plw_status plw_supply_readings(const plw_reading *readings, size_t count
 
 /* Voltage and slope at a current.
  * In:   amps, any finite value: beyond the range of plw_supply_range() the last straight line goes on
- * Out:  *volts; *ohms = -dV/dI >= 0
- */
+ * Out:  *volts; *ohms = -dV/dI >= 0 */
 PLW_API void plw_supply_at(const plw_supply *supply, double amps, double *volts, double *ohms);
 
 /* The currents for which the supply speaks.  Readings: from the least to 1.5 times the largest reading, and down to

@@ -15,8 +15,7 @@
 extern "C" {
 #endif
 
-/* ---- source resistance from readings ------------------------------------------------------------------------------
- */
+/* ---- source resistance from readings ----------------------------------------------------------------------------- */
 
 /* One DC reading at the output of the supply. */
 typedef struct {
@@ -32,7 +31,8 @@ typedef struct {
     double load_percent;          /* of a resistor's value or of a current */
 } plw_reading_errors;
 
-/* 1 % each: an ordinary meter, a measured resistor. */
+/* An ordinary meter, a measured resistor (common practice, no source).
+ * Ret:  1 % each */
 PLW_API plw_reading_errors plw_reading_errors_usual(void);
 
 /* What the readings say of the supply. */
@@ -62,7 +62,9 @@ PLW_API plw_status plw_source_from_readings(const plw_rectifier *described, cons
                                             plw_source_estimate *estimate, plw_error *error) PLW_MUST_USE;
 
 /* Voltage at a current, and its standard error from those of the readings.
- * In:   amps >= 0 */
+ * In:   amps >= 0
+ * Out:  *volts, *volts_error
+ * Ret:  PLW_OK; as plw_rectifier_steady() */
 PLW_API plw_status plw_source_predict(const plw_source_estimate *estimate, double amps, double *volts,
                                       double *volts_error, plw_error *error) PLW_MUST_USE;
 
@@ -80,12 +82,14 @@ typedef struct {
 
 /* The resistor that makes the supply see what a stage will draw.
  * In:   amps > 0; margin >= 1: rating over watts (2 is usual)
+ * Out:  *load; not written unless PLW_OK
  * Ret:  PLW_OK; PLW_E_USAGE; PLW_E_NO_POINT: the supply has no voltage left at that current */
 PLW_API plw_status plw_dummy_load_for(const plw_supply *supply, double amps, plw_series series, double margin,
                                       plw_dummy_load *load, plw_error *error) PLW_MUST_USE;
 
 /* The voltage and current at which a resistor and a supply meet.
  * In:   ohms > 0
+ * Out:  *volts, *amps
  * Ret:  PLW_OK, PLW_E_USAGE */
 PLW_API plw_status plw_supply_into(const plw_supply *supply, double ohms, double *volts, double *amps,
                                    plw_error *error) PLW_MUST_USE;

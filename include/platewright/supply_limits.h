@@ -30,13 +30,16 @@ typedef struct {
     double mains_high_percent;               /* highest mains, of nominal; NaN: 110 */
 } plw_supply_ratings;
 
-/* All NaN: nothing known. */
+/* Nothing known.
+ * Ret:  all NaN */
 PLW_API plw_supply_ratings plw_supply_ratings_unknown(void);
 
-/* The ratings of a vacuum rectifier of the catalogue, the rest unknown. */
+/* The ratings of a vacuum rectifier of the catalogue.
+ * Ret:  its limits; the rest, and what its sheet does not give, NaN */
 PLW_API plw_supply_ratings plw_supply_ratings_of(const plw_rectifier_data *rectifier);
 
 /* Those of a 1 A silicon diode of 1000 V (1N4007 class): 1000 V, 1 A, 10 A repetitive, 30 A surge.
+ * Ret:  these; the rest NaN
  * Source: makers' data sheets of 1N4001-1N4007, from memory, confidence high. */
 PLW_API plw_supply_ratings plw_supply_ratings_silicon(void);
 

@@ -38,6 +38,7 @@ PLW_API plw_status plw_transformer_for(const plw_rectifier *described, double vo
 
 /* The usual secondary voltages, ascending (each half when centre-tapped).
  * Out:  *count
+ * Ret:  V, [*count]
  * Source: common practice, no source. */
 PLW_API const double *plw_usual_secondaries(size_t *count);
 

@@ -1,4 +1,4 @@
-/* Small numeric helpers: softplus, monotone cubic, two linear equations.
+/* Numeric aids: softplus, monotone cubic, two linear equations.
  * SPDX-License-Identifier: GPL-3.0-or-later */
 #ifndef BASE_NUMERIC_H
 #define BASE_NUMERIC_H

@@ -140,8 +140,8 @@ static void keep_place(plw_xml *xml, xmlParserCtxtPtr parser, xmlNodePtr node) {
         xml->places_size = size;
     }
     xml->places[xml->places_count++] = place_of(xml, tag_offset(xml, parser));
-    node->_private = (void *)(uintptr_t)xml->places_count; /* NOLINT(performance-no-int-to-ptr): an index, not used as
-                                                              a pointer */
+    /* an index, not used as a pointer */
+    node->_private = (void *)(uintptr_t)xml->places_count; /* NOLINT(performance-no-int-to-ptr) */
 }
 
 void plw_xml_place(const plw_xml *xml, const plw_xml_element *element, long *line, long *column) {
@@ -196,6 +196,17 @@ static void copy_message(char *text, size_t size, library_error fault) {
     }
 }
 
+/* What stops the parser for size alone is told in the library's own terms: say what it means for the file. */
+static const char *said_plainly(const char *message) {
+    if (strstr(message, "depth") != NULL) {
+        return "elements stand within elements far too deep; is this the right file?";
+    }
+    if (strstr(message, "XML_PARSE_HUGE") != NULL || strstr(message, "too long") != NULL) {
+        return "a text or a name is far too long; is this the right file?";
+    }
+    return message;
+}
+
 static void on_parser_error(void *context, library_error fault) {
     xmlParserCtxtPtr parser = context;
     plw_xml *xml = parser->_private;
@@ -208,7 +219,7 @@ static void on_parser_error(void *context, library_error fault) {
     }
     char text[FAULT_TEXT_SIZE];
     copy_message(text, sizeof text, fault);
-    add_fault(xml, fault->line, fault->int2 > 0 ? fault->int2 : 1, text);
+    add_fault(xml, fault->line, fault->int2 > 0 ? fault->int2 : 1, said_plainly(text));
 }
 
 static void on_schema_error(void *context, library_error fault) {

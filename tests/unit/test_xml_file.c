@@ -134,17 +134,90 @@ static void deep_nesting_is_refused_not_followed(void **state) {
     }
     plw_xml *xml = NULL;
     plw_error error = {.status = PLW_OK};
-    assert_int_equal(plw_xml_read_memory("deep", text, 30000, schema, &xml, &error), PLW_E_DATA);
+    /* 300 deep is refused for its depth, not only for what the schema allows */
+    static const size_t sizes[] = {900, 30000};
+    for (size_t i = 0; i < 2; i++) {
+        assert_int_equal(plw_xml_read_memory("deep", text, sizes[i], schema, &xml, &error), PLW_E_DATA);
+        assert_null(xml);
+        assert_non_null(strstr(error.text, "elements stand within elements far too deep"));
+        assert_null(strstr(error.text, "XML_PARSE"));
+    }
+    plw_xml_schema_free(schema);
+}
+
+/* Faults of values beyond line 65535, each with its own place; one on a line of its own is no echo of the one above. */
+static void faults_far_down_are_all_told(void **state) {
+    (void)state;
+    static const char values[] =
+        "<xs:schema xmlns:xs=\"http://www.w3.org/2001/XMLSchema\"><xs:element "
+        "name=\"list\"><xs:complexType><xs:sequence>"
+        "<xs:element name=\"a\" maxOccurs=\"unbounded\"><xs:complexType><xs:attribute name=\"v\"><xs:simpleType>"
+        "<xs:restriction base=\"xs:string\"><xs:enumeration value=\"yes\"/></xs:restriction></xs:simpleType>"
+        "</xs:attribute><xs:attribute name=\"n\" type=\"xs:integer\"/></xs:complexType></xs:element>"
+        "</xs:sequence></xs:complexType></xs:element></xs:schema>";
+    plw_xml_schema *schema = NULL;
+    assert_int_equal(plw_xml_schema_parse(values, &schema, NULL), PLW_OK);
+    static char text[80000];
+    memset(text, '\n', sizeof text);
+    memcpy(text, "<list>", 6);
+    static const char end[] = " <a v='no'/>\n  <a n='few'/>\n</list>";
+    memcpy(text + 70006, end, sizeof end - 1);
+    plw_xml *xml = NULL;
+    plw_error error = {.status = PLW_OK};
+    assert_int_equal(plw_xml_read_memory("list", text, sizeof text, schema, &xml, &error), PLW_E_DATA);
+    assert_non_null(strstr(error.text, "list:70001:2: "));
+    assert_non_null(strstr(error.text, "list:70002:3: "));
+    assert_null(xml);
+    plw_xml_schema_free(schema);
+}
+
+/* Entities that would grow a thousandfold, and one that would read a file: refused at the DOCTYPE. */
+static void entities_are_refused_before_they_grow(void **state) {
+    (void)state;
+    static const char *const texts[] = {
+        "<!DOCTYPE list [<!ENTITY x 'xxxxxxxxxx'><!ENTITY y '&x;&x;&x;&x;&x;&x;&x;&x;&x;&x;'>"
+        "<!ENTITY z '&y;&y;&y;&y;&y;&y;&y;&y;&y;&y;'>]>\n<list><a v='&z;'/></list>",
+        "<!DOCTYPE list [<!ENTITY x SYSTEM '" TUBEDATA "/EL84.xml'>]>\n<list>&x;</list>",
+        "<!DOCTYPE list SYSTEM '" TUBEDATA "/none.dtd'>\n<list/>"};
+    plw_xml_schema *schema = good_schema();
+    for (size_t i = 0; i < sizeof texts / sizeof texts[0]; i++) {
+        plw_xml *xml = NULL;
+        plw_error error = {.status = PLW_OK};
+        assert_int_equal(plw_xml_read_memory("list", texts[i], strlen(texts[i]), schema, &xml, &error), PLW_E_DATA);
+        assert_null(xml);
+        assert_string_equal(strchr(error.text, ' '), " a DOCTYPE is not allowed here; remove it");
+    }
+    plw_xml_schema_free(schema);
+}
+
+static void too_long_a_name_is_said_plainly(void **state) {
+    (void)state;
+    plw_xml_schema *schema = good_schema();
+    enum { LONG = 60000 };
+    static char text[LONG + 4];
+    memset(text, 'a', sizeof text);
+    text[0] = '<';
+    memcpy(text + LONG, "/>", 2);
+    plw_xml *xml = NULL;
+    plw_error error = {.status = PLW_OK};
+    assert_int_equal(plw_xml_read_memory("list", text, LONG + 2, schema, &xml, &error), PLW_E_DATA);
+    assert_null(strstr(error.text, "XML_PARSE"));
     assert_null(xml);
     plw_xml_schema_free(schema);
 }
 
 int main(void) {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(what_is_no_schema_is_refused),         cmocka_unit_test(references_in_attributes_are_replaced),
-        cmocka_unit_test(an_unknown_reference_is_a_fault),      cmocka_unit_test(elements_are_walked_by_name_or_all),
-        cmocka_unit_test(places_are_those_of_the_tag),          cmocka_unit_test(places_far_down_are_true),
+        cmocka_unit_test(what_is_no_schema_is_refused),
+        cmocka_unit_test(references_in_attributes_are_replaced),
+        cmocka_unit_test(an_unknown_reference_is_a_fault),
+        cmocka_unit_test(elements_are_walked_by_name_or_all),
+        cmocka_unit_test(places_are_those_of_the_tag),
+        cmocka_unit_test(places_far_down_are_true),
         cmocka_unit_test(deep_nesting_is_refused_not_followed),
+        cmocka_unit_test(faults_far_down_are_all_told),
+        cmocka_unit_test(entities_are_refused_before_they_grow),
+        cmocka_unit_test(too_long_a_name_is_said_plainly),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
