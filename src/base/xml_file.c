@@ -219,7 +219,11 @@ static void on_parser_error(void *context, library_error fault) {
     }
     char text[FAULT_TEXT_SIZE];
     copy_message(text, sizeof text, fault);
-    add_fault(xml, fault->line, fault->int2 > 0 ? fault->int2 : 1, said_plainly(text));
+    const char *said = said_plainly(text);
+    add_fault(xml, fault->line, fault->int2 > 0 ? fault->int2 : 1, said);
+    if (said != text) {
+        xmlStopParser(parser); /* what would follow is only of this making */
+    }
 }
 
 static void on_schema_error(void *context, library_error fault) {
