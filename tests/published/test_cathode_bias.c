@@ -78,6 +78,53 @@ static void the_screens_current_counts(void **state) {
     assert_near(q.cathode_volts, 12.5, 1e-5, "RCA Receiving Tube Manual: 12.5 V / 49.5 mA = 252.5 ohm");
 }
 
+/* A pentode that draws `milliamps` of plate and screen together at equal plate and screen volts. */
+static void pentode_through(test_tube *tube, double plate_volts, double grid_volts, double milliamps) {
+    make_tube(tube, pentode_law(TEST_BEAM_SMALL));
+    plw_law *law = &tube->tube.model.law;
+    plw_currents c;
+    plw_law_evaluate(law, plate_volts, plate_volts, grid_volts, &c);
+    plw_law_scale(law, 1e-3 * milliamps / (c.plate_amps + c.screen_amps));
+}
+
+/* RCA's printed resistor of the 6L6 (170 ohm, 75 + 5.4 mA) and Philips' of the EL84 (135 ohm, 48 + 5.5 mA): plate and
+ * screen current together make 13.67 V (printed -14 V) and 7.22 V (printed -7.3 V). */
+static void both_currents_make_the_printed_bias(void **state) {
+    (void)state;
+    static const struct {
+        double ohms, milliamps, cathode_volts;
+        const char *source;
+    } cases[] = {{170.0, 80.4, 13.67, "RCA Receiving Tube Manual, 6L6: 170 ohm x 80.4 mA"},
+                 {135.0, 53.5, 7.22, "Philips data sheet EL84: 135 ohm x 53.5 mA"}};
+    for (size_t i = 0; i < sizeof cases / sizeof cases[0]; i++) {
+        const double cathode_volts = 1e-3 * cases[i].ohms * cases[i].milliamps;
+        test_tube tube;
+        pentode_through(&tube, 250.0, -cathode_volts, cases[i].milliamps);
+        const plw_stage stage = simple_stage(&tube, 250.0 + cathode_volts, 5000.0, cases[i].ohms, UNKNOWN);
+        const plw_quiescent q = rest_of(&stage);
+        assert_near(q.cathode_volts, cases[i].cathode_volts, 0.005, cases[i].source);
+        assert_near(1e3 * (q.plate_amps + q.screen_amps), cases[i].milliamps, 1e-5, cases[i].source);
+        assert_true(q.screen_amps > 1e-3);
+    }
+}
+
+/* A printed point of the 300B: 425 V, -93 V, 65 mA: 27.6 W ("28 W"), 1431 ohm. */
+static void the_printed_point_wants_1431_ohm(void **state) {
+    (void)state;
+    static const char *const sheet = "WE data sheet 300B, quoted: 425 V, -93 V, 65 mA";
+    test_tube tube;
+    tube_through(&tube, 425.0, -93.0, 65.0);
+    const plw_stage stage = simple_stage(&tube, 425.0 + 93.0, 3000.0, UNKNOWN, UNKNOWN);
+    plw_bias_choice choice;
+    assert_int_equal(plw_bias_choose(&stage, (plw_aim){PLW_AIM_CURRENT, 65e-3}, PLW_E192, &choice, NULL), PLW_OK);
+    assert_near(choice.exact_ohms, 1431.0, 0.5, sheet);
+    plw_stage built = stage;
+    built.cathode_resistor_ohms = choice.exact_ohms;
+    const plw_quiescent q = rest_of(&built);
+    assert_near(q.plate_watts, 27.6, 0.05, sheet);
+    assert_near(q.cathode_volts, 93.0, 1e-3, sheet);
+}
+
 /* Teaching case from a builders' forum: 250 V, 40 mA, 10 V wants 250 ohm. */
 static void the_teaching_case_is_250_ohm(void **state) {
     (void)state;
@@ -112,6 +159,8 @@ int main(void) {
         cmocka_unit_test(ten_percent_mains_is_a_fifth_more_heat),
         cmocka_unit_test(the_printed_resistor_holds_the_printed_point),
         cmocka_unit_test(the_screens_current_counts),
+        cmocka_unit_test(both_currents_make_the_printed_bias),
+        cmocka_unit_test(the_printed_point_wants_1431_ohm),
         cmocka_unit_test(the_teaching_case_is_250_ohm),
         cmocka_unit_test(two_tubes_on_one_resistor),
     };
