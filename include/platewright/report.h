@@ -39,6 +39,12 @@ PLW_API plw_status plw_report_text(const plw_answer *answer, char **text, plw_er
  * Out, Ret: as plw_report_text(); PLW_E_NO_MEMORY also for a name that is not UTF-8 */
 PLW_API plw_status plw_report_json(const plw_answer *answer, char **text, plw_error *error) PLW_MUST_USE;
 
+/* What the same schema says when no resistor serves: the aim, and null for the point of rest.
+ * In:   obstacle: why none serves, as plw_bias_choose() says it
+ * Out, Ret: as plw_report_json() */
+PLW_API plw_status plw_report_json_unreached(plw_aim aim, const char *obstacle, char **text,
+                                             plw_error *error) PLW_MUST_USE;
+
 /* The same as CSV: one header line with units in the column names, one line for each option.
  * Out, Ret: as plw_report_text() */
 PLW_API plw_status plw_report_csv(const plw_answer *answer, char **text, plw_error *error) PLW_MUST_USE;

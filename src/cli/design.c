@@ -32,6 +32,9 @@ static plw_status design(cli_work *work, bool *kept, plw_error *error) {
     }
     if (status == PLW_OK) {
         status = cli_work_choose(work, &choice, error);
+        if (status != PLW_OK) {
+            return cli_work_unreached(work, error);
+        }
     }
     if (status != PLW_OK) {
         return status;

@@ -101,18 +101,23 @@ void cli_work_close(cli_work *work) {
     plw_catalogue_free(work->catalogue);
 }
 
-/* "load: ..." becomes "--load: ..." or "stage.xml:4:3: load: ...". */
+/* "load: ..." becomes "--load: ..." or "stage.xml:4:3: load: ...".  What has no point is placed only where it is the
+ * option itself that asks too much, as --aim and --current do: of a stage no single quantity is at fault. */
 plw_status cli_work_place(const cli_work *work, plw_error *error) {
     char place[PLACE_SIZE];
     char text[PLW_ERROR_TEXT_SIZE];
     snprintf(text, sizeof text, "%s", error->text);
     const size_t length = strcspn(text, ":");
-    if (error->status != PLW_E_USAGE || text[length] == '\0' || length >= NAME_SIZE) {
+    const bool no_point = error->status == PLW_E_NO_POINT;
+    if ((error->status != PLW_E_USAGE && !no_point) || text[length] == '\0' || length >= NAME_SIZE) {
         return error->status;
     }
     text[length] = '\0';
+    const cli_option *option = text[0] == '-' || length < 2 ? NULL : cli_option_find(text, CLI_EVERY);
+    if (no_point && (option == NULL || option->stage)) {
+        return error->status;
+    }
     if (work->description == NULL || plw_stage_described(work->description, text, place, sizeof place) == NULL) {
-        const cli_option *option = text[0] == '-' || length < 2 ? NULL : cli_option_find(text, CLI_EVERY);
         snprintf(place, sizeof place, "%s%.*s", option == NULL ? "" : "--", NAME_SIZE, text);
     }
     return plw_fail(error, error->status, "%s:%s", place, text + length + 1);
@@ -202,6 +207,16 @@ plw_status cli_work_answer(const cli_work *work, const plw_answer *answer, plw_e
     } else {
         status = plw_report_csv(answer, &text, error);
     }
+    return status == PLW_OK ? cli_work_put(work, text, error) : status;
+}
+
+plw_status cli_work_unreached(const cli_work *work, plw_error *error) {
+    const char *format = cli_argument(work->arguments, "format");
+    char *text = NULL;
+    if (error->status != PLW_E_NO_POINT || format == NULL || strcmp(format, "json") != 0) {
+        return error->status;
+    }
+    const plw_status status = plw_report_json_unreached(work->aim, error->text, &text, error);
     return status == PLW_OK ? cli_work_put(work, text, error) : status;
 }
 

@@ -53,6 +53,11 @@ void cli_work_complete(const cli_work *work, plw_answer *answer, cli_extras *ext
 /* Render in the format that --format asks for, and put it where --output says. */
 plw_status cli_work_answer(const cli_work *work, const plw_answer *answer, plw_error *error) PLW_MUST_USE;
 
+/* No resistor serves: where --format asks for JSON, that is the answer; else it stays an error.
+ * In:   error: why
+ * Ret:  PLW_OK when it was answered; else the status in error */
+plw_status cli_work_unreached(const cli_work *work, plw_error *error) PLW_MUST_USE;
+
 /* The same for a text already rendered.  In: text, which is given up */
 plw_status cli_work_put(const cli_work *work, char *text, plw_error *error) PLW_MUST_USE;
 

@@ -8,6 +8,7 @@
 #include <string.h>
 
 #include "report/fields.h"
+#include "report/text_buffer.h"
 
 /* From here a rating is called near.  Mains 5 % high raise the dissipation by about 10 %: both volts and current rise.
  * Common practice, no source. */
@@ -41,19 +42,7 @@ void plw_caution_say(plw_caution_list *l, const char *format, ...) {
     va_start(arguments, format);
     vsnprintf(line, PLW_CAUTION_SIZE, format, arguments);
     va_end(arguments);
-    size_t length = strlen(line);
-    size_t start = length;
-    while (start > 0 && ((unsigned char)line[start - 1] & 0xC0U) == 0x80U) {
-        start--;
-    }
-    if (start == 0) {
-        return;
-    }
-    const unsigned char lead = (unsigned char)line[start - 1];
-    const size_t wanted = lead >= 0xF0U ? 4 : lead >= 0xE0U ? 3 : lead >= 0xC0U ? 2 : 1;
-    if (wanted > 1 && length - (start - 1) < wanted) {
-        line[start - 1] = '\0';
-    }
+    line[plw_text_whole_length(line)] = '\0';
 }
 
 enum { TEXT_SIZE = 48 };

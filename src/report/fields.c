@@ -2,12 +2,15 @@
  * SPDX-License-Identifier: GPL-3.0-or-later */
 #include "report/fields.h"
 
+#include <math.h>
 #include <string.h>
 
-#define AT_REST(name)                                                                                                  \
-    { #name, offsetof(plw_quiescent, name) }
-#define DRIVEN(name)                                                                                                   \
-    { #name, offsetof(plw_signal, name) }
+/* The circuit counts a screen current of 0 for a triode, which has no screen and so no heat there either. */
+#define FIELD(record, name, known_by)                                                                                  \
+    { #name, offsetof(record, name), offsetof(record, known_by) }
+#define AT_REST(name) FIELD(plw_quiescent, name, name)
+#define DRIVEN(name) FIELD(plw_signal, name, name)
+#define MEASURED(name) FIELD(plw_specimen, name, name)
 
 const plw_field plw_quiescent_fields[] = {
     AT_REST(supply_volts),
@@ -17,7 +20,7 @@ const plw_field plw_quiescent_fields[] = {
     AT_REST(cathode_volts),
     AT_REST(grid_volts),
     AT_REST(plate_amps),
-    AT_REST(screen_amps),
+    FIELD(plw_quiescent, screen_amps, screen_watts),
     AT_REST(cathode_amps),
     AT_REST(plate_watts),
     AT_REST(screen_watts),
@@ -28,27 +31,38 @@ const plw_field plw_quiescent_fields[] = {
 const size_t plw_quiescent_fields_count = sizeof plw_quiescent_fields / sizeof plw_quiescent_fields[0];
 
 const plw_field plw_signal_fields[] = {
-    DRIVEN(drive_peak_volts), DRIVEN(power_watts), DRIVEN(speaker_watts), DRIVEN(thd_percent), DRIVEN(plate_amps),
-    DRIVEN(screen_amps),      DRIVEN(plate_watts), DRIVEN(screen_watts),  DRIVEN(grid_amps),   DRIVEN(grid_amps_most),
+    DRIVEN(drive_peak_volts), DRIVEN(power_watts),  DRIVEN(speaker_watts),
+    DRIVEN(thd_percent),      DRIVEN(plate_amps),   FIELD(plw_signal, screen_amps, screen_watts),
+    DRIVEN(plate_watts),      DRIVEN(screen_watts), DRIVEN(grid_amps),
+    DRIVEN(grid_amps_most),
 };
 const size_t plw_signal_fields_count = sizeof plw_signal_fields / sizeof plw_signal_fields[0];
 
-#define MEASURED(name)                                                                                                 \
-    { #name, offsetof(plw_specimen, name) }
-
 const plw_field plw_specimen_fields[] = {
-    MEASURED(supply_volts),  MEASURED(plate_to_ground_volts), MEASURED(screen_to_ground_volts),
-    MEASURED(cathode_volts), MEASURED(plate_volts),           MEASURED(screen_volts),
-    MEASURED(grid_volts),    MEASURED(cathode_amps),          MEASURED(plate_amps),
-    MEASURED(screen_amps),   MEASURED(plate_watts),           MEASURED(screen_watts),
-    MEASURED(primary_ohms),  MEASURED(model_cathode_amps),    MEASURED(off_percent),
+    MEASURED(supply_volts),
+    MEASURED(plate_to_ground_volts),
+    MEASURED(screen_to_ground_volts),
+    MEASURED(cathode_volts),
+    MEASURED(plate_volts),
+    MEASURED(screen_volts),
+    MEASURED(grid_volts),
+    MEASURED(cathode_amps),
+    MEASURED(plate_amps),
+    FIELD(plw_specimen, screen_amps, screen_watts),
+    MEASURED(plate_watts),
+    MEASURED(screen_watts),
+    MEASURED(primary_ohms),
+    MEASURED(model_cathode_amps),
+    MEASURED(off_percent),
 };
 const size_t plw_specimen_fields_count = sizeof plw_specimen_fields / sizeof plw_specimen_fields[0];
 
 double plw_field_value(const plw_field *field, const void *record) {
     double value;
+    double known;
     memcpy(&value, (const char *)record + field->offset, sizeof value);
-    return value;
+    memcpy(&known, (const char *)record + field->known_by, sizeof known);
+    return isnan(known) ? known : value;
 }
 
 const char *plw_drive_limit_name(plw_drive_limit limit) {

@@ -12,6 +12,7 @@
 typedef struct {
     const char *name;
     size_t offset;
+    size_t known_by; /* where the figure stands without which this one is not known either; mostly itself */
 } plw_field;
 
 extern const plw_field plw_quiescent_fields[];
@@ -21,7 +22,8 @@ extern const size_t plw_signal_fields_count;
 extern const plw_field plw_specimen_fields[];
 extern const size_t plw_specimen_fields_count;
 
-/* In:   record: the plw_quiescent, plw_signal or plw_specimen that the field belongs to */
+/* In:   record: the plw_quiescent, plw_signal or plw_specimen that the field belongs to
+ * Ret:  NaN: not known, or the tube has no such electrode */
 double plw_field_value(const plw_field *field, const void *record);
 
 /* "grid current", "cut-off", "drive" */

@@ -48,6 +48,19 @@ static void put_bias(const plw_json_sink *root, const plw_answer *answer) {
     plw_json_put_number(&bias, "fixed_bias_volts", answer->stage->fixed_bias_volts);
 }
 
+/* before: 0, or the aim in percent before it was lowered for the mains; obstacle: empty: none */
+static void put_aim(const plw_json_sink *root, plw_aim aim, double before, bool reached, const char *obstacle) {
+    static const char *const kinds[] = {
+        [PLW_AIM_DISSIPATION] = "dissipation", [PLW_AIM_CURRENT] = "current", [PLW_AIM_POWER] = "power"};
+    const plw_json_sink s = plw_json_object_in(root, "aim");
+    const size_t length = plw_text_whole_length(obstacle);
+    plw_json_put(&s, "kind", json_string(kinds[aim.kind]));
+    plw_json_put_number(&s, "value", aim.kind == PLW_AIM_POWER ? (double)NAN : aim.value);
+    plw_json_put_number(&s, "before_percent", before > 0.0 ? before : (double)NAN);
+    plw_json_put(&s, "reached", json_boolean(reached));
+    plw_json_put(&s, "obstacle", length == 0 ? json_null() : json_stringn(obstacle, length));
+}
+
 static void put_quiescent(const plw_json_sink *parent, const plw_quiescent *rest, unsigned tubes) {
     const plw_json_sink s = plw_json_object_in(parent, "quiescent");
     put_fields(&s, plw_quiescent_fields, plw_quiescent_fields_count, rest);
@@ -55,7 +68,7 @@ static void put_quiescent(const plw_json_sink *parent, const plw_quiescent *rest
     const double n = (double)tubes;
     plw_json_put_number(&total, "supply_amps", rest->supply_amps);
     plw_json_put_number(&total, "plate_amps", n * rest->plate_amps);
-    plw_json_put_number(&total, "screen_amps", n * rest->screen_amps);
+    plw_json_put_number(&total, "screen_amps", isnan(rest->screen_watts) ? (double)NAN : n * rest->screen_amps);
     plw_json_put_number(&total, "cathode_amps", n * rest->cathode_amps);
     plw_json_put_number(&total, "plate_watts", n * rest->plate_watts);
     plw_json_put_number(&total, "screen_watts", n * rest->screen_watts);
@@ -73,15 +86,17 @@ static void put_signal(const plw_json_sink *parent, const char *name, const plw_
     plw_json_put(&s, "limit", json_string(plw_drive_limit_name(signal->limit)));
 }
 
-/* One rating; `ok` is told apart, since a design-center rating leaves room for the mains by itself. */
-static void put_rating(json_t *ratings, const plw_rating_check *check, bool ok, const char *at, bool *failed) {
+/* One rating.  counted: it bears on the verdict; a design-center rating leaves room for the mains by itself, and what
+ * comes of them is told but not held against the stage. */
+static void put_rating(json_t *ratings, const plw_rating_check *check, bool counted, const char *at, bool *failed) {
     const plw_json_sink s = {json_object(), failed};
     plw_json_put(&s, "name", json_string(check->name));
     plw_json_put_number(&s, "value", check->value);
     plw_json_put_number(&s, "limit", check->limit);
     plw_json_put(&s, "unit", json_string(plw_json_unit_name(check->unit)));
     plw_json_put_number(&s, "share_percent", check->share_percent);
-    plw_json_put(&s, "ok", json_boolean(ok));
+    plw_json_put(&s, "ok", json_boolean(check->ok));
+    plw_json_put(&s, "counted", json_boolean(counted));
     plw_json_put(&s, "at", json_string(at));
     plw_json_append(ratings, s.object, failed);
 }
@@ -92,9 +107,18 @@ static void put_mains_ratings(json_t *ratings, const plw_mains *mains, bool *fai
         char at[48];
         snprintf(at, sizeof at, "idle, mains %+.3g %%", corners[k]->mains_percent - 100.0);
         for (size_t i = 0; i < corners[k]->ratings_count; i++) {
-            const plw_rating_check *check = &corners[k]->ratings[i];
-            put_rating(ratings, check, check->ok || !mains->counted, at, failed);
+            put_rating(ratings, &corners[k]->ratings[i], mains->counted, at, failed);
         }
+    }
+}
+
+/* The parts of the supply are held to their ratings always. */
+static void put_supply_ratings(json_t *ratings, const plw_supply_answer *supply, bool *failed) {
+    size_t index = json_array_size(ratings);
+    plw_json_append_supply_ratings(ratings, supply, failed);
+    for (; index < json_array_size(ratings); index++) {
+        const plw_json_sink s = {json_array_get(ratings, index), failed};
+        plw_json_put(&s, "counted", json_true());
     }
 }
 
@@ -103,13 +127,13 @@ static void put_ratings(const plw_json_sink *root, const plw_answer *answer) {
     const plw_bias_option *option = answer->option;
     for (size_t i = 0; i < option->ratings_count; i++) {
         const plw_rating_check *check = &option->ratings[i];
-        put_rating(ratings, check, check->ok, check->when == PLW_AT_IDLE ? "idle" : "full drive", root->failed);
+        put_rating(ratings, check, true, check->when == PLW_AT_IDLE ? "idle" : "full drive", root->failed);
     }
     if (answer->mains != NULL) {
         put_mains_ratings(ratings, answer->mains, root->failed);
     }
     if (answer->supply != NULL) {
-        plw_json_append_supply_ratings(ratings, answer->supply, root->failed);
+        put_supply_ratings(ratings, answer->supply, root->failed);
     }
     plw_json_put(root, "ratings", ratings);
 }
@@ -211,7 +235,7 @@ static void put_specimen(const plw_json_sink *root, const plw_specimen *specimen
         {"grid_volts", specimen->grid_volts},
         {"cathode_amps", specimen->cathode_amps},
         {"plate_amps", specimen->plate_amps},
-        {"screen_amps", specimen->screen_amps},
+        {"screen_amps", isnan(specimen->screen_watts) ? (double)NAN : specimen->screen_amps},
         {"plate_watts", specimen->plate_watts},
         {"screen_watts", specimen->screen_watts},
         {"model_cathode_amps", specimen->model_cathode_amps},
@@ -250,6 +274,10 @@ plw_status plw_report_json(const plw_answer *answer, char **text, plw_error *err
     plw_json_put(&root, "schema", json_string("platewright/1"));
     put_tube(&root, answer->stage);
     put_bias(&root, answer);
+    if (answer->choice != NULL) {
+        const plw_bias_choice *choice = answer->choice;
+        put_aim(&root, choice->aim, answer->aim_before_percent, choice->aim_reached, choice->obstacle);
+    }
     put_supply(&root, answer);
     put_quiescent(&root, &answer->option->quiescent, answer->stage->parallel);
     put_signal(&root, "signal", &answer->option->signal);
@@ -260,5 +288,14 @@ plw_status plw_report_json(const plw_answer *answer, char **text, plw_error *err
     put_uncertainty(&root, answer->uncertainty);
     put_hum(&root, answer->hum);
     put_cautions(&root, answer);
+    return plw_json_text(root.object, failed, text, error);
+}
+
+plw_status plw_report_json_unreached(plw_aim aim, const char *obstacle, char **text, plw_error *error) {
+    bool failed = false;
+    const plw_json_sink root = {json_object(), &failed};
+    plw_json_put(&root, "schema", json_string("platewright/1"));
+    put_aim(&root, aim, 0.0, false, obstacle);
+    plw_json_put(&root, "quiescent", json_null());
     return plw_json_text(root.object, failed, text, error);
 }

@@ -56,3 +56,17 @@ void plw_text_number(FILE *file, double value, int digits, const char *absent) {
 void plw_text_free(char *text) {
     free(text);
 }
+
+size_t plw_text_whole_length(const char *text) {
+    const size_t length = strlen(text);
+    size_t start = length;
+    while (start > 0 && ((unsigned char)text[start - 1] & 0xC0U) == 0x80U) {
+        start--;
+    }
+    if (start == 0) {
+        return length;
+    }
+    const unsigned char lead = (unsigned char)text[start - 1];
+    const size_t wanted = lead >= 0xF0U ? 4 : lead >= 0xE0U ? 3 : lead >= 0xC0U ? 2 : 1;
+    return wanted > 1 && length - (start - 1) < wanted ? start - 1 : length;
+}

@@ -26,4 +26,7 @@ plw_status plw_text_end(plw_text_buffer *buffer, plw_status status, char **text,
  * In:   digits 1..17; absent: what stands for NaN and the infinities */
 void plw_text_number(FILE *file, double value, int digits, const char *absent);
 
+/* The length of a text in UTF-8 without its last character where that was cut short, as by a buffer too small. */
+size_t plw_text_whole_length(const char *text);
+
 #endif

@@ -55,12 +55,10 @@ static int folder_fault(const char *path) {
     }
     struct stat status = {0};
     int reason = 0;
-    if (folder == NULL || stat(folder, &status) != 0) {
+    if (folder == NULL || stat(folder, &status) != 0 || access(folder, W_OK | X_OK) != 0) {
         reason = errno;
     } else if (!S_ISDIR(status.st_mode)) {
         reason = ENOTDIR;
-    } else if (access(folder, W_OK | X_OK) != 0) {
-        reason = errno;
     }
     free(folder);
     return reason;
