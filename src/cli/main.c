@@ -83,6 +83,30 @@ static int run_option(const char *word, const char *next) {
     return cli_complain(NULL, &error);
 }
 
+/* Is this a command that is promised but not written? */
+static bool is_planned(const char *name) {
+    static const char *const planned[] = {"sweep", "spread", "survey", "sheet"};
+    for (size_t i = 0; i < sizeof planned / sizeof planned[0]; i++) {
+        if (strcmp(name, planned[i]) == 0) {
+            return true;
+        }
+    }
+    return false;
+}
+
+static int refuse_command(const char *name) {
+    plw_error error = {.status = PLW_OK};
+    const char *nearest = cli_command_nearest(name);
+    if (is_planned(name)) {
+        (void)plw_fail(&error, PLW_E_USAGE, "%s: is not there yet", name);
+    } else if (nearest == NULL) {
+        (void)plw_fail(&error, PLW_E_USAGE, "%.*s: is no command", SHOWN_LENGTH, name);
+    } else {
+        (void)plw_fail(&error, PLW_E_USAGE, "%.*s: is no command; is it %s?", SHOWN_LENGTH, name, nearest);
+    }
+    return cli_complain(NULL, &error);
+}
+
 int main(int argc, char **argv) {
     (void)gsl_set_error_handler_off();
     cli_remember_program(argc > 0 ? argv[0] : NULL);
@@ -97,10 +121,5 @@ int main(int argc, char **argv) {
     if (command != NULL) {
         return run_command(command, argv + 2, (size_t)argc - 2);
     }
-    plw_error error = {.status = PLW_OK};
-    const char *nearest = cli_command_nearest(argv[1]);
-    (void)(nearest == NULL
-               ? plw_fail(&error, PLW_E_USAGE, "%.*s: is no command", SHOWN_LENGTH, argv[1])
-               : plw_fail(&error, PLW_E_USAGE, "%.*s: is no command; is it %s?", SHOWN_LENGTH, argv[1], nearest));
-    return cli_complain(NULL, &error);
+    return refuse_command(argv[1]);
 }

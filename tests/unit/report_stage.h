@@ -3,6 +3,7 @@
 #ifndef TESTS_UNIT_REPORT_STAGE_H
 #define TESTS_UNIT_REPORT_STAGE_H
 
+#include <stdio.h>
 #include <string.h>
 
 #include "near.h"
