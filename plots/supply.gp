@@ -1419,7 +1419,7 @@ set mytics 2
 set ylabel 'supply, V' textcolor rgb '#2b2b2b'
 plot $low using 1:2 with lines linecolor rgb '#3f8f5f' dashtype (10,4,2,4) linewidth 1.3 title 'mains 10 % low and high', \
      $high using 1:2 with lines linecolor rgb '#3f8f5f' dashtype (10,4,2,4) linewidth 1.3 notitle, \
-     $line using 1:2 with lines linecolor rgb '#10171e' dashtype 1 linewidth 2.4 title 'supply, by the readings through its rectifier: 320 Ω in the path', \
+     $line using 1:2 with lines linecolor rgb '#10171e' dashtype 1 linewidth 2.4 title 'supply, by the readings through its rectifier: 317 Ω in the path', \
      $demand using 1:2 with lines linecolor rgb '#00618f' dashtype (16,5) linewidth 1.4 title 'what the stage draws', \
      $readings using 1:2 with points pointtype 9 pointsize mark*1.9 linecolor rgb '#c2360c' linewidth 1.6 title 'reading on the bench', \
      $rest using 1:2 with points pointtype 7 pointsize mark*1.5 linecolor rgb '#10171e' linewidth 1.6 title 'at rest: 246 V, 56 mA'
@@ -1438,7 +1438,7 @@ set ylabel 'winding, mA' textcolor rgb '#2b2b2b'
 set y2range [-10:10]
 set y2tics 5
 set y2label 'ripple, V' textcolor rgb '#2b2b2b'
-plot $winding using 1:2 with lines linecolor rgb '#c2360c' dashtype 1 linewidth 4.2 title 'winding, both ways upward, peak 205 mA', \
+plot $winding using 1:2 with lines linecolor rgb '#c2360c' dashtype 1 linewidth 4.2 title 'winding, rectified: peak 205 mA', \
      $ripple0 using 1:2 axes x1y2 with lines linecolor rgb '#10171e' dashtype 1 linewidth 2.4 title 'capacitor 1: 10 V of ripple', \
      $ripple1 using 1:2 axes x1y2 with lines linecolor rgb '#00618f' dashtype (16,5) linewidth 1.4 title 'capacitor 2: 2 V of ripple'
 unset multiplot

@@ -28,6 +28,7 @@ typedef struct {
     bool has_parts;
     bool has_winding;       /* winding_rms_volts and path_ohms of `parts` are known: the line is that of the parts */
     bool reservoir_assumed; /* none told: parts.reservoir_farads is boundless */
+    bool transformerless;   /* fed straight from the mains, the heaters in a string: the chassis may be live */
     bool copper_assumed;    /* neither copper nor readings told: parts.path_ohms is 0 */
     plw_rectifier parts;
     const plw_tube *rectifier_tube; /* NULL: silicon */

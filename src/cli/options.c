@@ -54,6 +54,9 @@ static const cli_option options[] = {
     {STAGE_OPTION("diode", CLI_GROUP_SUPPLY, CLI_STAGE, "TYPE", "silicon (default) or a rectifier tube, e.g. GZ34")},
     {STAGE_OPTION("reservoir", CLI_GROUP_SUPPLY, CLI_STAGE, "FARADS",
                   "first capacitor behind the rectifier, e.g. 47uF; else so large that no ripple is left")},
+    {STAGE_SWITCH("transformerless", CLI_GROUP_SUPPLY,
+                  "the rectifier hangs straight on the mains and the heaters stand in a string; --winding is then the "
+                  "mains voltage: the chassis may be live")},
     {STAGE_OPTION("winding-ohms", CLI_GROUP_SUPPLY, CLI_STAGE, "OHMS",
                   "copper of a conducting path: half or whole secondary with the primary reflected, e.g. 95")},
     {STAGE_OPTION("mains", CLI_GROUP_SUPPLY, CLI_STAGE, "HERTZ", "mains frequency, 50Hz (default) or 60Hz")},

@@ -66,6 +66,10 @@ static picture compose(const plw_answer *answer) {
         most = fmax(most, PLW_MAINS_HIGH_PERCENT / 100.0 * line_volts(p.line, p.least_amps));
     }
     least = fmin(least, line_volts(p.line, p.most_amps));
+    if (p.line->kind != PLW_SUPPLY_STIFF) { /* the line with the mains low, down to its end */
+        const plw_supply low = plw_supply_at_mains(p.line, PLW_MAINS_LOW_PERCENT);
+        least = fmin(least, line_volts(&low, p.most_amps));
+    }
     const double room = fmax(0.03 * (most - least), 0.01 * most);
     const double step = plw_round_step((most - least + 2.0 * room) / 5.0);
     p.volts = (plw_scale){step * floor((least - room) / step), step * ceil((most + room) / step), step};
@@ -127,10 +131,10 @@ static void line_title(const picture *p, char text[ENTRY_SIZE]) {
     char ohms[48];
     if (p->parts != NULL && p->parts->estimated) {
         snprintf(text, ENTRY_SIZE, "supply, by the readings through its rectifier: %s in the path",
-                 plw_script_value(p->parts->estimate.path_ohms, PLW_UNIT_OHM, 2, ohms, sizeof ohms));
+                 plw_script_value(p->parts->estimate.path_ohms, PLW_UNIT_OHM, 3, ohms, sizeof ohms));
     } else if (p->parts != NULL && p->parts->has_winding) {
         snprintf(text, ENTRY_SIZE, "supply, by its parts: %s in the path",
-                 plw_script_value(p->parts->parts.path_ohms, PLW_UNIT_OHM, 2, ohms, sizeof ohms));
+                 plw_script_value(p->parts->parts.path_ohms, PLW_UNIT_OHM, 3, ohms, sizeof ohms));
     } else {
         snprintf(text, ENTRY_SIZE, "supply%s", p->line->kind == PLW_SUPPLY_STIFF ? ", taken as stiff" : "");
     }
@@ -237,7 +241,7 @@ static void lower_panel(FILE *file, const picture *p, const plw_rectifier_state 
     fputs("plot ", file);
     char value[48];
     char text[ENTRY_SIZE];
-    snprintf(text, sizeof text, "winding, both ways upward, peak %s",
+    snprintf(text, sizeof text, "winding, rectified: peak %s",
              plw_script_value(state->diode_peak_amps, PLW_UNIT_AMPERE, 3, value, sizeof value));
     plw_plot_line(file, "winding", PLW_INK_SWING, text);
     if (ripple) {

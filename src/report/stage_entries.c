@@ -39,6 +39,7 @@ static const plw_entry_type types[] = {
     {.name = "rectifier", .kind = PLW_ENTRY_CHOICE, .choices = rectifiers, .example = "full-wave"},
     {.name = "diode", .kind = PLW_ENTRY_TUBE, .example = "GZ34"},
     QUANTITY("reservoir", PLW_UNIT_FARAD, 1e-7, 0.1, "47uF"),
+    SWITCH("transformerless"),
     QUANTITY("winding-ohms", PLW_UNIT_OHM, 0, 1e5, "95"),
     QUANTITY("mains", PLW_UNIT_HERTZ, 10, 1000, "50Hz"),
     PART("dropper", PLW_UNIT_OHM, 0.1, 1e6, "470"),

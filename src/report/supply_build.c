@@ -11,6 +11,10 @@ enum { TEXT_SIZE = 512 };
 
 #define MAINS_HERTZ 50.0
 
+/* Mains voltages of the world, at their widest. */
+#define MAINS_LEAST_VOLTS 90.0
+#define MAINS_MOST_VOLTS 260.0
+
 /* What only a supply of parts has. */
 static const char *const part_names[] = {"winding", "rectifier", "diode",      "reservoir", "winding-ohms", "mains",
                                          "dropper", "choke",     "choke-ohms", "smoothing", "bleeder"};
@@ -150,6 +154,15 @@ static void take_rectifier(plw_builder *work, plw_plate_supply *supply) {
     plw_builder_fault_choice(work, entry);
 }
 
+/* Cathodes (or filaments) that a rectifier tube brings out apart from each other. */
+static size_t cathodes(const plw_tube *tube) {
+    size_t count = 0;
+    for (size_t i = 0; i < tube->pins_count; i++) {
+        count += strncmp(tube->pins[i].electrode, "cathode", 7) == 0 ? 1U : 0U;
+    }
+    return count;
+}
+
 static void take_diode(plw_builder *work, plw_catalogue *catalogue, plw_plate_supply *supply) {
     const plw_stage_entry *entry = plw_builder_entry(work, "diode");
     supply->parts.diode = plw_diode_silicon();
@@ -169,6 +182,10 @@ static void take_diode(plw_builder *work, plw_catalogue *catalogue, plw_plate_su
         plw_builder_fault(work, entry, "is no rectifier; write silicon or a rectifier tube, e.g. GZ34");
     } else if (!(tube->rectifier.perveance > 0)) {
         plw_builder_fault(work, entry, "has no voltage drop in its tube file; add it there, or choose another type");
+    } else if (supply->parts.connection == PLW_BRIDGE && cathodes(tube) < 2) {
+        plw_builder_fault(work, entry,
+                          "its plates share one cathode; a bridge wants separate cathodes or silicon: write --diode "
+                          "silicon, or --rectifier full-wave on a centre-tapped winding");
     } else {
         supply->rectifier_tube = tube;
         supply->parts.diode = (plw_diode){.kind = PLW_DIODE_VACUUM, .perveance = tube->rectifier.perveance};
@@ -257,6 +274,26 @@ static void take_parts(plw_builder *work, plw_catalogue *catalogue, plw_plate_su
     plw_builder_take(work, "bleeder", &parts->bleeder_ohms);
 }
 
+/* Fed from the mains without a transformer: half-wave, or a bridge; a centre tap there is none. */
+static void take_transformerless(plw_builder *work, plw_plate_supply *supply) {
+    const plw_stage_entry *entry = plw_builder_entry(work, "transformerless");
+    const plw_stage_entry *winding = plw_builder_entry(work, "winding");
+    const plw_stage_entry *rectifier = plw_builder_entry(work, "rectifier");
+    double volts = (double)NAN;
+    if (entry == NULL || entry->text[0] == 'n') {
+        return;
+    }
+    supply->transformerless = true;
+    if (rectifier != NULL && supply->parts.connection == PLW_FULL_WAVE) {
+        plw_builder_fault(work, entry,
+                          "a full-wave rectifier wants the centre tap of a transformer; write --rectifier half-wave");
+    }
+    if (winding != NULL && plw_quantity_parse(winding->text, PLW_UNIT_VOLT, &volts, NULL) == PLW_OK &&
+        !(volts >= MAINS_LEAST_VOLTS && volts <= MAINS_MOST_VOLTS)) {
+        plw_builder_fault(work, entry, "the winding is then the mains itself: give 90 V to 260 V");
+    }
+}
+
 /* ---- the supply -------------------------------------------------------------------------------------------------- */
 
 static void exclusions(plw_builder *work) {
@@ -329,6 +366,7 @@ void plw_builder_take_supply(plw_builder *work, plw_catalogue *catalogue, double
     if (parts) {
         take_parts(work, catalogue, supply);
     }
+    take_transformerless(work, supply);
     if (plw_builder_entry(work, "supply") != NULL) {
         take_voltage(work, supply);
     } else if (plw_builder_entry(work, "winding") == NULL && supply->readings == 0) {

@@ -49,10 +49,24 @@ static void of_check(plw_caution_list *l, const plw_supply_check *check) {
     }
 }
 
+/* Half-wave sets are mostly those without a transformer. */
+static void of_mains(plw_caution_list *l, const plw_plate_supply *supply) {
+    if (supply->transformerless) {
+        plw_caution_say(l,
+                        "Without a transformer the chassis may be live: work on it from an isolating transformer only, "
+                        "and never earth it. A tube that is pulled opens the heater string: lift the plate supply "
+                        "lead instead.");
+    } else if (supply->has_parts && supply->parts.connection == PLW_HALF_WAVE) {
+        plw_caution_say(l, "Half-wave: if this rectifier hangs straight on the mains, the chassis may be live; tell "
+                           "--transformerless, and the steps on the bench are those for such a set.");
+    }
+}
+
 void plw_cautions_of_supply(plw_caution_list *list, const plw_supply_answer *answer) {
     for (size_t i = 0; i < answer->checks_count; i++) {
         of_check(list, &answer->checks[i]);
     }
+    of_mains(list, answer->supply);
     if (answer->supply->copper_assumed) {
         plw_caution_say(list,
                         "The copper of the winding is not told and taken as none: the loaded voltage will be lower. "
@@ -104,6 +118,17 @@ static void of_dummy(plw_caution_list *l, const plw_supply_answer *a) {
     }
 }
 
+/* Those of every chassis; of a live one, that of earthing is turned round. */
+static void standing(plw_caution_list *l, bool live) {
+    const size_t first = l->count;
+    plw_cautions_standing(l);
+    for (size_t i = first; i < l->count && i < l->most && live; i++) {
+        if (strstr(l->lines[i], "earth the chassis") != NULL) {
+            snprintf(l->lines[i], PLW_CAUTION_SIZE, "Fuse the mains. Never earth this chassis.");
+        }
+    }
+}
+
 size_t plw_supply_cautions(const plw_supply_finding *finding, char (*lines)[PLW_CAUTION_SIZE], size_t most,
                            size_t *own) {
     plw_caution_list l = {lines, most, 0};
@@ -114,6 +139,6 @@ size_t plw_supply_cautions(const plw_supply_finding *finding, char (*lines)[PLW_
     if (own != NULL) {
         *own = l.count;
     }
-    plw_cautions_standing(&l);
+    standing(&l, finding->supply->supply->transformerless);
     return l.count;
 }

@@ -1,5 +1,6 @@
 /* The plate supply in words, for the bench: loaded volts first, then what the parts stand, the dummy load, the
- * procedure. SPDX-License-Identifier: GPL-3.0-or-later */
+ * procedure.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
 #include <math.h>
 #include <stdio.h>
 #include <string.h>
@@ -72,6 +73,11 @@ static void parts_line(FILE *out, const plw_supply_answer *a) {
 static void off_load_line(FILE *out, const plw_supply_answer *a) {
     if (!isfinite(a->off_load_volts)) {
         fputs("OFF LOAD          not known: read it before capacitors are bought\n", out);
+        if (a->has_transformer) {
+            const double peak = sqrt(2.0) * a->transformer.off_load_rms_volts;
+            fprintf(out, INDENT "the transformer below would give %s, %s with the mains up\n",
+                    plw_cell_volts(peak).text, plw_cell_volts(a->mains_high_percent / 100.0 * peak).text);
+        }
         return;
     }
     fprintf(out, "OFF LOAD          %s; %s with the mains %.3g %% up: capacitors must stand it\n",
@@ -145,7 +151,11 @@ void plw_put_supply_ratings(FILE *out, const plw_supply_answer *a) {
         char name[64];
         fprintf(out, "  %-38s", plw_supply_check_name(check, name, sizeof name));
         plw_put_right(out, plw_cell_quantity(check->value, check->unit, 3).text, 10);
-        fprintf(out, " %4.0f %%%s", check->share_percent, check->ok ? "   " : " !!");
+        if (check->at_least) { /* a share of the least would read upside down */
+            fprintf(out, "       %s", check->ok ? "   " : " !!");
+        } else {
+            fprintf(out, " %4.0f %%%s", check->share_percent, check->ok ? "   " : " !!");
+        }
         plw_put_right(out, plw_cell_quantity(check->limit, check->unit, 3).text, 9);
         fprintf(out, "%s%s\n", check->at_least ? " or more" : "",
                 check->when == PLW_SUPPLY_OFF_LOAD_HIGH ? " (off load)" : "");
@@ -273,6 +283,21 @@ static void dummy_lines(FILE *out, const plw_supply_finding *f) {
     meaning_lines(out, f);
 }
 
+/* What the meter must stand across the output. */
+static double meter_volts(const plw_supply_answer *a) {
+    if (isfinite(a->off_load_high_volts)) {
+        return a->off_load_high_volts;
+    }
+    const double peak = a->has_transformer ? sqrt(2.0) * a->transformer.off_load_rms_volts : 0.0;
+    return fmax(1.5 * a->volts, a->mains_high_percent / 100.0 * peak);
+}
+
+static void put_step(FILE *out, int *number, const char *text) {
+    char mark[16];
+    snprintf(mark, sizeof mark, "%3d. ", ++*number);
+    plw_put_paragraph(out, mark, text);
+}
+
 /* The test on the bench, each step with what keeps it safe. */
 static void bench_lines(FILE *out, const plw_supply_finding *f) {
     const plw_supply_answer *a = f->supply;
@@ -280,29 +305,40 @@ static void bench_lines(FILE *out, const plw_supply_finding *f) {
         return;
     }
     char step[512];
+    int number = 0;
+    const bool live = a->supply->transformerless;
     fputs("\nON THE BENCH\n", out);
-    plw_put_paragraph(out, "  1. ",
-                      "Unplug. Let the capacitors discharge and verify with the meter, at each of them, that "
-                      "less than 60 V is left.");
-    plw_put_paragraph(out, "  2. ",
-                      "Take out every tube that this supply feeds, so that nothing but the dummy load draws; a "
-                      "rectifier tube stays.");
+    if (live) {
+        put_step(
+            out, &number,
+            "Feed the set from an isolating transformer and from nothing else: without one its chassis may stand at "
+            "the mains. Never earth the chassis, nor clip an earthed instrument to it.");
+    }
+    put_step(out, &number,
+             "Unplug. Let the capacitors discharge and verify with the meter, at each of them, that less than 60 V is "
+             "left.");
+    put_step(out, &number,
+             live
+                 ? "Leave every tube in its socket: one that is pulled opens the heater string. Lift the lead by which "
+                   "this supply feeds plates and screens, so that nothing but the dummy load draws."
+                 : "Take out every tube that this supply feeds, so that nothing but the dummy load draws; a rectifier "
+                   "tube stays.");
     snprintf(step, sizeof step,
              "Clip %s across the output of the supply, and the meter, set for at least %s DC, across it; black lead on "
-             "the chassis. No hand holds a probe.",
-             plw_cell_ohms(a->dummy.ohms).text,
-             plw_cell_volts(isfinite(a->off_load_high_volts) ? a->off_load_high_volts : 1.5 * a->volts).text);
-    plw_put_paragraph(out, "  3. ", step);
+             "%s. Keep both hands off while it is on.",
+             plw_cell_ohms(a->dummy.ohms).text, plw_cell_volts(meter_volts(a)).text,
+             live ? "the minus of the reservoir, which need not be the chassis" : "the chassis");
+    put_step(out, &number, step);
     snprintf(step, sizeof step,
              "Plug in, wait until the reading stands still, and read; about %s is expected. The mains voltage belongs "
              "to the reading: write it down too. Unplug.",
              plw_cell_volts(a->dummy.expected_volts).text);
-    plw_put_paragraph(out, "  4. ", step);
+    put_step(out, &number, step);
     snprintf(step, sizeof step,
              "The dummy load empties the capacitors: watch the meter fall below 60 V before a clip is moved. Then tell "
              "the reading: --reading VOLTS@%s",
              plw_resistor_code(a->dummy.ohms, (char[PLW_CELL_SIZE]){0}, PLW_CELL_SIZE));
-    plw_put_paragraph(out, "  5. ", step);
+    put_step(out, &number, step);
 }
 
 /* ---- bleeder, transformer, heaters ------------------------------------------------------------------------------- */
@@ -331,8 +367,9 @@ static void transformer_lines(FILE *out, const plw_supply_answer *a) {
     const plw_transformer *t = &a->transformer;
     const bool halves = t->supply.connection == PLW_FULL_WAVE;
     const char *each = halves ? " each half" : "";
-    fprintf(out, "\nTRANSFORMER       %s at %s RMS%s, %s off load, %.3g VA\n", plw_cell_volts(t->rated_rms_volts).text,
-            plw_cell_amps(t->rms_amps).text, each, plw_cell_volts(t->off_load_rms_volts).text, t->secondary_va);
+    fprintf(out, "\nTRANSFORMER       %s at %s RMS%s, %s RMS off load, %.3g VA\n",
+            plw_cell_volts(t->rated_rms_volts).text, plw_cell_amps(t->rms_amps).text, each,
+            plw_cell_volts(t->off_load_rms_volts).text, t->secondary_va);
     fprintf(out, INDENT "gives %s at %s, with %s in the conducting path\n", plw_cell_volts(t->volts).text,
             plw_cell_amps(a->amps).text, plw_cell_ohms(t->path_ohms).text);
     fprintf(out, INDENT "nearest usual winding: %s%s, which gives %s\n", plw_cell_volts(t->usual_rms_volts).text, each,
@@ -361,6 +398,11 @@ static void heater_lines(FILE *out, const plw_supply_finding *f) {
                 plw_cell_volts(rectifier->heater_volts).text, plw_cell_amps(rectifier->heater_amps).text);
     }
     fputc('\n', out);
+    if (f->supply->supply->transformerless) {
+        plw_put_paragraph(out, INDENT,
+                          "heater to cathode: not known: the string may stand at the mains peak, so the tube nearest "
+                          "to it must bear that");
+    }
 }
 
 static void caution_lines(FILE *out, const plw_supply_finding *f) {

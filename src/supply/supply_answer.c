@@ -3,6 +3,8 @@
 #include <math.h>
 
 #include "platewright/plate_supply.h"
+#include "platewright/preferred.h"
+#include "platewright/quantity.h"
 
 #define MAINS_HIGH_PERCENT 110.0
 #define BLEEDER_SECONDS 30.0
@@ -54,10 +56,27 @@ static void fill_off_load(const plw_plate_supply *supply, plw_supply_answer *a) 
     }
 }
 
+/* What to do about a current that the readings do not reach: into which resistor to read again. */
+static plw_status beyond_readings(const plw_plate_supply *supply, double amps, double most_amps, plw_error *error) {
+    char ohms[32];
+    double volts = 0;
+    double slope = 0;
+    plw_supply_at(&supply->line, most_amps, &volts, &slope);
+    const double exact = fmax(volts - slope * (amps - most_amps), 0.2 * volts) / amps;
+    return plw_fail(error, PLW_E_NO_POINT,
+                    "current: %.4g mA is beyond the readings, which speak for no more than %.4g mA: read again into "
+                    "about %s, or describe --winding and --rectifier",
+                    1e3 * amps, 1e3 * most_amps,
+                    plw_quantity_format(plw_preferred_nearest(exact, PLW_E12), PLW_UNIT_OHM, 2, ohms, sizeof ohms));
+}
+
 static plw_status fill_state(const plw_plate_supply *supply, plw_supply_answer *a, plw_error *error) {
     double least;
     double most;
     plw_supply_range(&supply->line, &least, &most);
+    if (a->amps > most && supply->line.kind == PLW_SUPPLY_READINGS && !supply->has_winding) {
+        return beyond_readings(supply, a->amps, most, error);
+    }
     if (a->amps < least || a->amps > most) {
         return plw_fail(error, PLW_E_NO_POINT,
                         "current: %.4g mA lies outside the %.4g to %.4g mA for which this supply speaks", 1e3 * a->amps,

@@ -95,7 +95,11 @@ static void rectifier_tubes_are_looked_up(void **state) {
     plw_plate_supply supply;
     assert_int_equal(plw_catalogue_open(folders, 1, &catalogue, NULL), PLW_OK);
     plw_stage_description *description = described(PARTS);
+    plw_error error = {.status = PLW_OK};
     say(description, "diode", "5AR4");
+    assert_int_equal(plw_plate_supply_build(description, catalogue, 0.11, &supply, &error), PLW_E_USAGE);
+    assert_non_null(strstr(error.text, "its plates share one cathode; a bridge wants separate cathodes or silicon"));
+    say(description, "rectifier", "full-wave");
     assert_int_equal(plw_plate_supply_build(description, catalogue, 0.11, &supply, NULL), PLW_OK);
     assert_string_equal(supply.rectifier_tube->type, "GZ34");
     assert_near_relative(supply.parts.diode.perveance, 0.225 / pow(17.0, 1.5), 1e-4, "17 V at 225 mA (RCA)");
@@ -184,6 +188,10 @@ static void faults_are_named(void **state) {
         {"<supply value='285V'/><source-ohms value='1k'/><rectifier value='bridge'/>",
          "source-ohms: cannot stand together with "},
         {"<supply value='285V'/><winding-ohms value='100'/>", "winding-ohms: cannot stand together with "},
+        {"<winding value='231V'/><rectifier value='full-wave'/><transformerless value='yes'/>",
+         "transformerless: a full-wave rectifier wants the centre tap of a transformer"},
+        {"<winding value='331V'/><rectifier value='half-wave'/><transformerless value='yes'/>",
+         "transformerless: the winding is then the mains itself: give 90 V to 260 V"},
         {"<winding value='231V'/><rectifier value='bridge'/><bleeder value='1'/>", "bleeder: 1 is out of range"},
         {"<winding value='231V'/><rectifier value='bridge'/><dropper value='0'/><smoothing value='47uF'/>",
          "dropper: 0 is out of range"},
