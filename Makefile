@@ -39,10 +39,12 @@ ALL_CFLAGS = -std=c17 -D_POSIX_C_SOURCE=200809L $(WARN) $(WERROR) $(CFLAGS) -ffp
 LINK = $(CC) $(SANITIZE_FLAGS) $(LDFLAGS)
 
 ifeq ($(shell uname -s),Darwin)
-  SHARED := $(B)/libplatewright.dylib
-  SHARED_FLAGS := -dynamiclib -install_name @rpath/libplatewright.dylib
+  SHARED := $(B)/libplatewright.0.dylib
+  SHARED_LINK := libplatewright.dylib
+  SHARED_FLAGS := -dynamiclib -install_name @rpath/libplatewright.0.dylib
 else
   SHARED := $(B)/libplatewright.so.0
+  SHARED_LINK := libplatewright.so
   SHARED_FLAGS := -shared -Wl,-soname,libplatewright.so.0
 endif
 
@@ -244,7 +246,7 @@ install: all
 	  $(DESTDIR)$(PREFIX)/share/bash-completion/completions
 	install -m 755 $(PROGRAM) $(DESTDIR)$(PREFIX)/bin/
 	install -m 644 $(STATIC) $(SHARED) $(DESTDIR)$(PREFIX)/lib/
-	ln -sf $(notdir $(SHARED)) $(DESTDIR)$(PREFIX)/lib/libplatewright.so
+	ln -sf $(notdir $(SHARED)) $(DESTDIR)$(PREFIX)/lib/$(SHARED_LINK)
 	install -m 644 $(B)/platewright.pc $(DESTDIR)$(PREFIX)/lib/pkgconfig/
 	install -m 644 include/platewright/*.h $(DESTDIR)$(PREFIX)/include/platewright/
 	install -m 644 tubedata/*.xml tubedata/*.xsd $(DESTDIR)$(PREFIX)/share/platewright/tubedata/

@@ -286,7 +286,9 @@ static void what_is_no_readable_file_is_said(void **state) {
     if (geteuid() != 0) { /* root reads everything */
         expect_file_error(path, "cannot be opened");
     }
-    expect_file_error("/proc/self/mem", "cannot be read");
+    if (access("/proc/self/mem", F_OK) == 0) { /* not every system has it */
+        expect_file_error("/proc/self/mem", "cannot be read");
+    }
     folder_remove(&folder);
 }
 
