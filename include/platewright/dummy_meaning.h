@@ -18,12 +18,13 @@ typedef struct {
 
 enum { PLW_DUMMY_MEANINGS = 5 };
 
+#define PLW_DUMMY_STEP_PERCENT 5.0
+
 /* Readings at, and in steps of PLW_DUMMY_STEP_PERCENT below and above the one expected, ascending; each taken as a
  * supply all of whose voltages are higher or lower in one proportion, on which the resistor is chosen anew.
  * In:   a stage with cathode bias
  * Out:  meaning[PLW_DUMMY_MEANINGS]
  * Ret:  PLW_OK; PLW_E_USAGE: fixed bias, or a dummy load outside its domain */
-#define PLW_DUMMY_STEP_PERCENT 5.0
 PLW_API plw_status plw_dummy_meanings(const plw_stage *stage, const plw_dummy_load *dummy, plw_aim aim,
                                       plw_series series, plw_dummy_meaning meaning[PLW_DUMMY_MEANINGS],
                                       plw_error *error) PLW_MUST_USE;

@@ -33,7 +33,8 @@ typedef struct {
     double grid_by_grid;
 } plw_currents;
 
-/* How many coefficients a kind of law has, and what each is called in tube files and reports. */
+/* How many coefficients a kind of law has, and what each and the law are called in tube files and reports.
+ * Ret:  the number; constants, NULL beyond the last */
 PLW_API size_t plw_law_coefficient_count(plw_law_kind kind);
 PLW_API const char *plw_law_coefficient_name(plw_law_kind kind, size_t index);
 PLW_API const char *plw_law_name(plw_law_kind kind);
@@ -50,7 +51,8 @@ PLW_API plw_status plw_law_validate(const plw_law *law, plw_error *error) PLW_MU
 PLW_API void plw_law_evaluate(const plw_law *law, double plate_volts, double screen_volts, double grid_volts,
                               plw_currents *currents);
 
-/* The plate current alone: the same number as plw_law_evaluate() gives, without the derivatives. */
+/* The plate current alone: the same number as plw_law_evaluate() gives, without the derivatives.
+ * Ret:  A */
 PLW_API double plw_law_plate_amps(const plw_law *law, double plate_volts, double screen_volts, double grid_volts);
 
 /* The grid voltage at which the cathode current is `cathode_amps`, plate and screen volts held.

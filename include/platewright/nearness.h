@@ -75,10 +75,12 @@ PLW_API size_t plw_nearest_tubes(plw_tube_entry wanted, const plw_tube_entry *ca
 /* Beyond it one type says nothing of the other. */
 #define PLW_NEAR_DISTANCE_MOST 5.0
 
-/* Ratings that hold for the entry (those of the main connection); NULL when it has none. */
+/* Ratings that hold for the entry (those of the main connection).
+ * Ret:  NULL when it has none */
 PLW_API const plw_ratings *plw_tube_entry_ratings(plw_tube_entry entry);
 
-/* Designation and heater, the variant's own where it has them. */
+/* Designation and heater, the variant's own where it has them.
+ * Ret:  text; V and A, NaN where not known */
 PLW_API const char *plw_tube_entry_type(plw_tube_entry entry);
 PLW_API double plw_tube_entry_heater_volts(plw_tube_entry entry);
 PLW_API double plw_tube_entry_heater_amps(plw_tube_entry entry);

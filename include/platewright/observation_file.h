@@ -35,7 +35,8 @@ extern "C" {
  *       a fit or too many, currents alone that all lie on one line of voltages */
 PLW_API plw_status plw_observation_file_read(const char *path, plw_tube *tube, plw_error *error) PLW_MUST_USE;
 
-/* The same from memory; `name` stands for the file in messages. */
+/* The same from memory; `name` stands for the file in messages.
+ * Out, Ret: as plw_observation_file_read(); never PLW_E_FILE */
 PLW_API plw_status plw_observation_file_read_memory(const char *name, const char *text, size_t size, plw_tube *tube,
                                                     plw_error *error) PLW_MUST_USE;
 

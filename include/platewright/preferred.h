@@ -21,7 +21,8 @@ PLW_API plw_status plw_series_parse(const char *text, plw_series *series, plw_er
  * Source: IEC 60063:2015, tables of the E series. */
 PLW_API double plw_preferred_nearest(double value, plw_series series);
 
-/* The least member >= value, and the greatest member <= value (a member itself up to 1e-9 relative counts as equal). */
+/* The least member >= value, and the greatest member <= value (a member itself up to 1e-9 relative counts as equal).
+ * Ret:  as plw_preferred_nearest() */
 PLW_API double plw_preferred_at_least(double value, plw_series series);
 PLW_API double plw_preferred_at_most(double value, plw_series series);
 

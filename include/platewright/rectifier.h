@@ -157,13 +157,14 @@ PLW_API plw_status plw_rectifier_waveform(const plw_rectifier *supply, plw_dc_lo
  * Ret:  V */
 PLW_API double plw_rectifier_peak_volts(const plw_rectifier *supply);
 
+enum { PLW_LINE_POINTS = 50 };
+
 /* The regulation line of the output from 0 to most_amps as a supply of kind PLW_SUPPLY_RECTIFIER, PLW_LINE_POINTS
  * points closer together near no load, where the voltage falls as the current to the two-thirds power.
  * In:   most_amps > 0
  * Out:  *line; one that falls to nothing before most_amps ends where the output is a quarter of its off-load voltage or
  *       more
  * Ret:  as plw_rectifier_steady(); PLW_E_NO_POINT when not even a hundredth of most_amps can be had */
-enum { PLW_LINE_POINTS = 50 };
 PLW_API plw_status plw_rectifier_line(const plw_rectifier *supply, double most_amps, plw_supply *line,
                                       plw_error *error) PLW_MUST_USE;
 

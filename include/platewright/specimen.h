@@ -46,7 +46,8 @@ PLW_API plw_status plw_specimen_measure(const plw_stage *stage, const plw_meter_
                                         plw_series series, plw_specimen *specimen, plw_error *error) PLW_MUST_USE;
 
 /* Does this very tube keep its ratings: at rest as measured and, where it could be solved, in the stage as built, at
- * rest and driven?  The bogey tube of its type may do otherwise. */
+ * rest and driven?  The bogey tube of its type may do otherwise.
+ * Ret:  true: all that are known */
 PLW_API bool plw_specimen_keeps_ratings(const plw_specimen *specimen) PLW_MUST_USE;
 
 #ifdef __cplusplus

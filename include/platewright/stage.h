@@ -137,7 +137,8 @@ PLW_API plw_status plw_signal_solve(const plw_stage *stage, const plw_quiescent 
                                     plw_error *error) PLW_MUST_USE;
 
 /* The distortion up to which makers print the power of an output stage: about 5 % for triodes (RCA receiving tube
- * manuals), about 10 % for pentodes and beam tubes (the same, and Philips data sheets). */
+ * manuals), about 10 % for pentodes and beam tubes (the same, and Philips data sheets).
+ * Ret:  percent, of the two the one that goes with the stage's connection */
 #define PLW_CLEAN_PERCENT_TRIODE 5.0
 #define PLW_CLEAN_PERCENT_SCREENED 10.0
 PLW_API double plw_stage_clean_percent(const plw_stage *stage);

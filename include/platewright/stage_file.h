@@ -37,7 +37,8 @@ typedef struct {
     const char *const *choices; /* NULL-terminated; PLW_ENTRY_CHOICE */
 } plw_entry_type;
 
-/* All of them, in the order in which they are written to a file.  Ret: NULL beyond the last. */
+/* All of them, in the order in which they are written to a file, and one by its name.
+ * Ret:  NULL beyond the last, and for a name that is none */
 PLW_API const plw_entry_type *plw_entry_type_at(size_t index);
 PLW_API const plw_entry_type *plw_entry_type_find(const char *name);
 
@@ -56,7 +57,8 @@ PLW_API void plw_stage_description_free(plw_stage_description *description);
 PLW_API plw_status plw_stage_file_read(const char *path, plw_stage_description **description,
                                        plw_error *error) PLW_MUST_USE;
 
-/* The same from memory; `name` stands for the file in messages. */
+/* The same from memory; `name` stands for the file in messages.
+ * Out, Ret: as plw_stage_file_read(); never PLW_E_FILE */
 PLW_API plw_status plw_stage_file_read_memory(const char *name, const char *text, size_t size,
                                               plw_stage_description **description, plw_error *error) PLW_MUST_USE;
 
@@ -77,7 +79,8 @@ PLW_API void plw_stage_undescribe(plw_stage_description *description, const char
 PLW_API const char *plw_stage_described(const plw_stage_description *description, const char *name, char *place,
                                         size_t place_size);
 
-/* Does an entry stem from a file? */
+/* Does an entry stem from a file?
+ * Ret:  false also when there is no such entry */
 PLW_API bool plw_stage_described_in_file(const plw_stage_description *description, const char *name);
 
 /* The remark of a stage file.  Ret: NULL when there is none */
@@ -94,7 +97,8 @@ PLW_API plw_status plw_stage_build(const plw_stage_description *description, plw
                                    plw_error *error) PLW_MUST_USE;
 
 /* The same, and the plate supply whose line is the stage's.
- * Out:  *supply, when not NULL */
+ * Out:  *stage; *supply, when not NULL
+ * Ret:  as plw_stage_build() */
 PLW_API plw_status plw_stage_build_supplied(const plw_stage_description *description, plw_catalogue *catalogue,
                                             plw_stage *stage, plw_plate_supply *supply, plw_error *error) PLW_MUST_USE;
 
@@ -106,7 +110,8 @@ PLW_API plw_status plw_plate_supply_build(const plw_stage_description *descripti
 
 /* The description as the text of a stage file: the same entries always give the same bytes, and read again the same
  * entries.
- * Out:  *text, to be freed with plw_text_free() (platewright/report.h) */
+ * Out:  *text, to be freed with plw_text_free() (platewright/report.h); not written unless PLW_OK
+ * Ret:  PLW_OK or PLW_E_NO_MEMORY */
 PLW_API plw_status plw_stage_file_text(const plw_stage_description *description, char **text,
                                        plw_error *error) PLW_MUST_USE;
 

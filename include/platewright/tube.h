@@ -186,6 +186,8 @@ PLW_API void plw_tube_free(plw_tube *tube);
  * Ret:  never NULL for a tube from the catalogue */
 PLW_API const plw_ratings *plw_tube_ratings(const plw_tube *tube, int variant, plw_connection connection);
 
+/* What each is called in tube files and reports.
+ * Ret:  a constant; "unknown" for a number that is none of them */
 PLW_API const char *plw_connection_name(plw_connection connection);
 PLW_API const char *plw_tube_kind_name(plw_tube_kind kind);
 PLW_API const char *plw_rating_system_name(plw_rating_system system);

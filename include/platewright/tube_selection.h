@@ -18,7 +18,8 @@ typedef struct {
     double heater_volts;            /* within 5 %, as heaters are rated for; NaN: any */
 } plw_tube_filter;
 
-/* All that passes. */
+/* Every tube passes.
+ * Ret:  nothing asked for */
 PLW_API plw_tube_filter plw_tube_filter_none(void);
 
 /* How many entries the tubes have: each type, and each of its variants. */
