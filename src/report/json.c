@@ -112,16 +112,6 @@ static void put_mains_ratings(json_t *ratings, const plw_mains *mains, bool *fai
     }
 }
 
-/* The parts of the supply are held to their ratings always. */
-static void put_supply_ratings(json_t *ratings, const plw_supply_answer *supply, bool *failed) {
-    size_t index = json_array_size(ratings);
-    plw_json_append_supply_ratings(ratings, supply, failed);
-    for (; index < json_array_size(ratings); index++) {
-        const plw_json_sink s = {json_array_get(ratings, index), failed};
-        plw_json_put(&s, "counted", json_true());
-    }
-}
-
 static void put_ratings(const plw_json_sink *root, const plw_answer *answer) {
     json_t *ratings = json_array();
     const plw_bias_option *option = answer->option;
@@ -133,7 +123,7 @@ static void put_ratings(const plw_json_sink *root, const plw_answer *answer) {
         put_mains_ratings(ratings, answer->mains, root->failed);
     }
     if (answer->supply != NULL) {
-        put_supply_ratings(ratings, answer->supply, root->failed);
+        plw_json_append_supply_ratings(ratings, answer->supply, root->failed);
     }
     plw_json_put(root, "ratings", ratings);
 }

@@ -108,6 +108,7 @@ void plw_json_append_supply_ratings(json_t *ratings, const plw_supply_answer *a,
         plw_json_put(&s, "unit", json_string(plw_json_unit_name(check->unit)));
         plw_json_put_number(&s, "share_percent", check->share_percent);
         plw_json_put(&s, "ok", json_boolean(check->ok));
+        plw_json_put(&s, "counted", json_true());
         plw_json_put(&s, "at", json_string(check->when == PLW_SUPPLY_AT_LOAD ? "idle" : "off load, mains high"));
         plw_json_append(ratings, s.object, failed);
     }

@@ -251,13 +251,13 @@ static void seconds_words(const plw_dummy_load *d, char *text, size_t size) {
 
 /* The largest usual part that is smaller than the heat, for who has no larger one.  Ret: W; NaN: none */
 static double smaller_part(double watts) {
-    for (double share = 0.9; share > 0.2; share *= 0.8) {
-        const double rating = plw_resistor_rating_watts(share * watts, 1.0);
-        if (rating < watts) {
-            return rating;
-        }
+    double share = 0.9;
+    double rating = watts;
+    while (share > 0.2 && !(rating < watts)) {
+        rating = plw_resistor_rating_watts(share * watts, 1.0);
+        share *= 0.8;
     }
-    return (double)NAN;
+    return rating < watts ? rating : (double)NAN;
 }
 
 static void dummy_lines(FILE *out, const plw_supply_finding *f) {

@@ -138,7 +138,7 @@ plw_status plw_signal_within(const plw_stage *stage, const plw_quiescent *quiesc
     /* Distortion grows with drive; where it does not quite, the halving still ends at a place where it crosses. */
     for (int halving = 0; halving < 60 && (!found || beyond - within > 1e-4 * beyond); halving++) {
         driven.drive_peak_volts = 0.5 * (within + beyond);
-        plw_signal trial;
+        plw_signal trial = *full;
         const plw_status status = plw_signal_solve(&driven, quiescent, &trial, error);
         if (status != PLW_OK) {
             return status;
