@@ -75,8 +75,10 @@ static void off_load_line(FILE *out, const plw_supply_answer *a) {
         fputs("OFF LOAD          not known: read it before capacitors are bought\n", out);
         if (a->has_transformer) {
             const double peak = sqrt(2.0) * a->transformer.off_load_rms_volts;
-            fprintf(out, INDENT "the transformer below would give %s, %s with the mains up\n",
-                    plw_cell_volts(peak).text, plw_cell_volts(a->mains_high_percent / 100.0 * peak).text);
+            char text[128];
+            snprintf(text, sizeof text, "the transformer below gives %s, %s at high mains", plw_cell_volts(peak).text,
+                     plw_cell_volts(a->mains_high_percent / 100.0 * peak).text);
+            plw_put_paragraph(out, INDENT, text);
         }
         return;
     }

@@ -250,20 +250,20 @@ static void put_rows(FILE *out, const plw_tube *tube, source_list *sources) {
         return;
     }
     fputs("\nPublished rows\n"
-          "               plate  screen   grid  cathode   plate  screen           power   thd\n"
-          "  connection       V       V      V      ohm      mA      mA    load       W     %  source\n",
+          "              plate screen   grid cathode plate screen         power   thd\n"
+          "  connection      V      V      V     ohm    mA     mA    load     W     %  from\n",
           out);
     for (size_t i = 0; i < tube->rows_count; i++) {
         const plw_row *row = &tube->rows[i];
         fprintf(out, "  %-11s", plw_connection_name(row->connection));
-        right(out, short_number(row->plate_volts).text, 7);
-        right(out, short_number(row->screen_volts).text, 8);
+        right(out, short_number(row->plate_volts).text, 6);
+        right(out, short_number(row->screen_volts).text, 7);
         right(out, short_number(row->grid_volts).text, 7);
-        right(out, short_number(row->cathode_resistor_ohms).text, 9);
-        right(out, short_number(1000.0 * row->plate_amps).text, 8);
-        right(out, short_number(1000.0 * row->screen_amps).text, 8);
+        right(out, short_number(row->cathode_resistor_ohms).text, 8);
+        right(out, short_number(1000.0 * row->plate_amps).text, 6);
+        right(out, short_number(1000.0 * row->screen_amps).text, 7);
         right(out, quantity(row->load_ohms, PLW_UNIT_OHM, 3).text, 8);
-        right(out, short_number(row->power_watts).text, 8);
+        right(out, short_number(row->power_watts).text, 6);
         right(out, short_number(row->thd_percent).text, 6);
         fprintf(out, "  %s\n", cite(sources, &row->provenance).text);
     }
@@ -274,7 +274,7 @@ static void put_errors(FILE *out, const char *name, const plw_model_errors *erro
     const struct {
         const char *figure, *unit;
         double value;
-    } known[] = {{"plate current", "%", errors->plate_current_percent},
+    } known[] = {{"plate", "%", errors->plate_current_percent},
                  {"screen", "%", errors->screen_current_percent},
                  {"power", "%", errors->power_percent},
                  {"distortion", "points", errors->distortion_points}};
