@@ -284,9 +284,6 @@ static void of_voltages(plw_caution_list *l, const plw_answer *answer) {
     const plw_supply *supply = &answer->stage->supply;
     const plw_signal *signal = &answer->option->signal;
     char high[TEXT_SIZE];
-    if (answer->supply != NULL) {
-        plw_cautions_of_supply(l, answer->supply);
-    }
     const double off_load_volts = answer->supply != NULL ? answer->supply->off_load_volts : supply->volts;
     if (supply->kind != PLW_SUPPLY_STIFF && isfinite(off_load_volts)) {
         char off_load[TEXT_SIZE];
@@ -308,7 +305,7 @@ static void of_voltages(plw_caution_list *l, const plw_answer *answer) {
     }
 }
 
-void plw_cautions_standing(plw_caution_list *l) {
+void plw_cautions_standing(plw_caution_list *l, bool live_chassis) {
     plw_caution_say(
         l, "These voltages kill. Unplug, let the capacitors discharge through a resistor, and verify with a meter that "
            "each is below 60 V before touching anything.");
@@ -316,7 +313,8 @@ void plw_cautions_standing(plw_caution_list *l) {
         l,
         "Do no work on a live chassis. Clip the meter on with the power off; where a live reading cannot be avoided, "
         "one hand only, insulated leads, and never alone.");
-    plw_caution_say(l, "Fuse the mains and earth the chassis.");
+    plw_caution_say(l, live_chassis ? "Fuse the mains. Never earth this chassis: it may be live."
+                                    : "Fuse the mains and earth the chassis.");
     plw_caution_say(l, "Local codes and the judgement of a licensed practitioner go before anything said here.");
 }
 
@@ -347,6 +345,9 @@ size_t plw_report_cautions(const plw_answer *answer, char (*lines)[PLW_CAUTION_S
     if (answer->choice != NULL && !answer->choice->aim_reached && answer->choice->obstacle[0] != '\0') {
         plw_caution_say(&l, "The aim is not reached: %s", answer->choice->obstacle);
     }
+    if (answer->supply != NULL) {
+        plw_cautions_of_supply(&l, answer->supply);
+    }
     of_ratings(&l, answer);
     of_mains(&l, answer);
     of_drive(&l, answer);
@@ -359,6 +360,6 @@ size_t plw_report_cautions(const plw_answer *answer, char (*lines)[PLW_CAUTION_S
     }
     notes(&l, answer);
     of_voltages(&l, answer);
-    plw_cautions_standing(&l);
+    plw_cautions_standing(&l, answer->supply != NULL && answer->supply->supply->transformerless);
     return l.count;
 }

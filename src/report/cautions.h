@@ -3,6 +3,7 @@
 #ifndef REPORT_CAUTIONS_H
 #define REPORT_CAUTIONS_H
 
+#include <stdbool.h>
 #include <stddef.h>
 
 #include "platewright/report.h"
@@ -28,7 +29,7 @@ typedef struct {
 void plw_caution_say(plw_caution_list *list, const char *format, ...) PLW_PRINTF(2, 3);
 
 /* Those of every chassis. */
-void plw_cautions_standing(plw_caution_list *list);
+void plw_cautions_standing(plw_caution_list *list, bool live_chassis);
 
 /* Of the plate supply: a rating of its parts exceeded, parts that were not told. */
 void plw_cautions_of_supply(plw_caution_list *list, const plw_supply_answer *answer);

@@ -118,17 +118,6 @@ static void of_dummy(plw_caution_list *l, const plw_supply_answer *a) {
     }
 }
 
-/* Those of every chassis; of a live one, that of earthing is turned round. */
-static void standing(plw_caution_list *l, bool live) {
-    const size_t first = l->count;
-    plw_cautions_standing(l);
-    for (size_t i = first; i < l->count && i < l->most && live; i++) {
-        if (strstr(l->lines[i], "earth the chassis") != NULL) {
-            snprintf(l->lines[i], PLW_CAUTION_SIZE, "Fuse the mains. Never earth this chassis.");
-        }
-    }
-}
-
 size_t plw_supply_cautions(const plw_supply_finding *finding, char (*lines)[PLW_CAUTION_SIZE], size_t most,
                            size_t *own) {
     plw_caution_list l = {lines, most, 0};
@@ -139,6 +128,6 @@ size_t plw_supply_cautions(const plw_supply_finding *finding, char (*lines)[PLW_
     if (own != NULL) {
         *own = l.count;
     }
-    standing(&l, finding->supply->supply->transformerless);
+    plw_cautions_standing(&l, finding->supply->supply->transformerless);
     return l.count;
 }
