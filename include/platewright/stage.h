@@ -26,6 +26,8 @@ typedef struct {
     unsigned parallel; /* equal tubes, 1..PLW_PARALLEL_MOST */
 
     plw_supply supply;
+    bool transformerless; /* fed straight from the mains, the heaters in a string: the chassis may be live, and how far
+                           * a heater stands from its cathode is not known */
     double other_amps; /* drawn from the same supply by the rest of the amplifier */
 
     double load_ohms;      /* the speaker seen through the transformer's ratio, without copper */

@@ -347,6 +347,8 @@ size_t plw_report_cautions(const plw_answer *answer, char (*lines)[PLW_CAUTION_S
     }
     if (answer->supply != NULL) {
         plw_cautions_of_supply(&l, answer->supply);
+    } else if (answer->stage->transformerless) {
+        plw_caution_live_chassis(&l);
     }
     of_ratings(&l, answer);
     of_mains(&l, answer);
@@ -360,6 +362,6 @@ size_t plw_report_cautions(const plw_answer *answer, char (*lines)[PLW_CAUTION_S
     }
     notes(&l, answer);
     of_voltages(&l, answer);
-    plw_cautions_standing(&l, answer->supply != NULL && answer->supply->supply->transformerless);
+    plw_cautions_standing(&l, answer->stage->transformerless);
     return l.count;
 }

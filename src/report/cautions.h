@@ -28,6 +28,9 @@ typedef struct {
 
 void plw_caution_say(plw_caution_list *list, const char *format, ...) PLW_PRINTF(2, 3);
 
+/* What a set without a mains transformer wants. */
+void plw_caution_live_chassis(plw_caution_list *list);
+
 /* Those of every chassis. */
 void plw_cautions_standing(plw_caution_list *list, bool live_chassis);
 

@@ -360,6 +360,7 @@ plw_status plw_stage_build_supplied(const plw_stage_description *description, pl
     plw_builder_take(&work, "other-current", &made.other_amps);
     plw_builder_take_supply(&work, catalogue, most_amps(&made), &plate_supply);
     made.supply = plate_supply.line;
+    made.transformerless = plate_supply.transformerless;
     take_load(&work, &made);
     take_bias(&work, &made);
     plw_builder_take(&work, "drive", &made.drive_peak_volts);

@@ -49,13 +49,17 @@ static void of_check(plw_caution_list *l, const plw_supply_check *check) {
     }
 }
 
+void plw_caution_live_chassis(plw_caution_list *list) {
+    plw_caution_say(list,
+                    "Without a transformer the chassis may be live: work on it from an isolating transformer only, "
+                    "and never earth it. A tube that is pulled opens the heater string: lift the plate supply lead "
+                    "instead.");
+}
+
 /* Half-wave sets are mostly those without a transformer. */
 static void of_mains(plw_caution_list *l, const plw_plate_supply *supply) {
     if (supply->transformerless) {
-        plw_caution_say(l,
-                        "Without a transformer the chassis may be live: work on it from an isolating transformer only, "
-                        "and never earth it. A tube that is pulled opens the heater string: lift the plate supply "
-                        "lead instead.");
+        plw_caution_live_chassis(l);
     } else if (supply->has_parts && supply->parts.connection == PLW_HALF_WAVE) {
         plw_caution_say(l, "Half-wave: if this rectifier hangs straight on the mains, the chassis may be live; tell "
                            "--transformerless, and the steps on the bench are those for such a set.");

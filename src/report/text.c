@@ -213,6 +213,9 @@ static void rating_lines(FILE *out, const plw_answer *a) {
         }
         fputc('\n', out);
     }
+    if (a->stage->transformerless) {
+        fputs("  heater to cathode           not known: the string may stand at the mains peak\n", out);
+    }
     char source[512];
     snprintf(source, sizeof source, "%s, %s", plw_rating_system_name(ratings->system), ratings->provenance.source);
     plw_put_paragraph(out, "  ", source);

@@ -54,7 +54,7 @@ bool plw_limits_check(const plw_stage *stage, const plw_quiescent *quiescent, co
     compare(&t, "screen voltage", quiescent->screen_volts, r->screen_volts, PLW_UNIT_VOLT, PLW_AT_IDLE);
     compare_load(&t, r, both_as_triode, quiescent->plate_watts, quiescent->screen_watts, quiescent->cathode_amps,
                  PLW_AT_IDLE);
-    if (!stage->tube->directly_heated) {
+    if (!stage->tube->directly_heated && !stage->transformerless) {
         compare(&t, "heater to cathode", quiescent->cathode_volts, r->heater_cathode_volts, PLW_UNIT_VOLT, PLW_AT_IDLE);
     }
     if (signal != NULL) {

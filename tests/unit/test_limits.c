@@ -179,6 +179,21 @@ static void a_filament_has_no_heater_to_cathode_voltage(void **state) {
     assert_null(find(checks, count, "heater to cathode", PLW_AT_IDLE));
 }
 
+/* In a string fed from the mains nobody knows how far the heater stands from the cathode: no check rather than a good
+ * one. */
+static void a_heater_string_is_not_judged(void **state) {
+    (void)state;
+    plw_stage stage = begin(koren_triode(KOREN_2A3));
+    tube.ratings[0].heater_cathode_volts = 90.0;
+    plw_rating_check checks[PLW_RATING_CHECKS_MOST];
+    size_t count;
+    (void)plw_limits_check(&stage, &rest, NULL, checks, &count);
+    assert_non_null(find(checks, count, "heater to cathode", PLW_AT_IDLE));
+    stage.transformerless = true;
+    (void)plw_limits_check(&stage, &rest, NULL, checks, &count);
+    assert_null(find(checks, count, "heater to cathode", PLW_AT_IDLE));
+}
+
 static void a_variant_has_its_own_ratings(void **state) {
     (void)state;
     plw_stage stage = begin(pentode_law(TEST_BEAM_SMALL));
@@ -220,6 +235,7 @@ int main(void) {
         cmocka_unit_test(a_triode_has_no_screen_checks),
         cmocka_unit_test(a_rated_triode_connection_counts_both),
         cmocka_unit_test(a_filament_has_no_heater_to_cathode_voltage),
+        cmocka_unit_test(a_heater_string_is_not_judged),
         cmocka_unit_test(a_variant_has_its_own_ratings),
         cmocka_unit_test(the_last_digits_do_not_condemn),
     };
