@@ -28,7 +28,7 @@ typedef struct {
     plw_supply supply;
     bool transformerless; /* fed straight from the mains, the heaters in a string: the chassis may be live, and how far
                            * a heater stands from its cathode is not known */
-    double other_amps; /* drawn from the same supply by the rest of the amplifier */
+    double other_amps;    /* drawn from the same supply by the rest of the amplifier */
 
     double load_ohms;      /* the speaker seen through the transformer's ratio, without copper */
     double ratio;          /* primary to secondary turns; NaN when only load_ohms is known */
