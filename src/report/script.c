@@ -10,6 +10,7 @@
 
 /* No printer or screen shows more; fewer than a double holds, so that the last bit of a library's pow() is not seen. */
 enum { SCRIPT_DIGITS = 6 };
+#define SCRIPT_ZERO 1e-9 /* V, mA, ms: far below what a drawing shows */
 
 /* Gnuplot reads '' inside single quotes as one quote, but not at the beginning nor twice in a row: such a text would
  * fall into two.  So quotes that are only to be read become typographic ones. */
@@ -89,7 +90,8 @@ void plw_script_finish(FILE *file) {
 }
 
 void plw_script_number(FILE *file, double value) {
-    plw_text_number(file, value, SCRIPT_DIGITS, "NaN");
+    /* What is left of a zero after rounding is drawn, and written, as zero: the same digits on every processor. */
+    plw_text_number(file, fabs(value) < SCRIPT_ZERO ? 0.0 : value, SCRIPT_DIGITS, "NaN");
 }
 
 char *plw_script_value(double value, plw_unit unit, int digits, char *buffer, size_t size) {
