@@ -81,7 +81,6 @@ void plw_circuit_prepare(const plw_stage *stage, plw_circuit *circuit) {
     instantaneous_ohms(circuit, circuit->feed.ohms);
     circuit->feed.average_volts = average_volts;
     circuit->feed.context = circuit;
-    circuit->feed.load_ohms = circuit->load_ohms;
     circuit->feed.tap = circuit->tap;
     circuit->feed.driver_ohms = tubes * stage->driver_ohms;
 }

@@ -65,15 +65,6 @@ static plw_status within_supply(const plw_stage *stage, double amps, plw_error *
                     drawn, amps < least ? "from" : "up to", reach, load, watts);
 }
 
-static void small_signal(const plw_circuit *circuit, const plw_currents *c, plw_quiescent *q) {
-    const double tap = circuit->tap;
-    q->gm_siemens = c->plate_by_grid + tap * c->screen_by_grid;
-    const double conductance =
-        c->plate_by_plate + tap * (c->plate_by_screen + c->screen_by_plate) + tap * tap * c->screen_by_screen;
-    q->plate_resistance_ohms = conductance > 0.0 ? 1.0 / conductance : (double)NAN;
-    q->mu = q->gm_siemens * q->plate_resistance_ohms;
-}
-
 static void fill(const plw_circuit *circuit, const plw_instant *point, plw_quiescent *q) {
     const plw_stage *stage = circuit->stage;
     const double unknown = (double)NAN;
@@ -100,7 +91,10 @@ static void fill(const plw_circuit *circuit, const plw_instant *point, plw_quies
     }
     q->screen_resistor_watts = stage->screen_resistor_ohms * q->screen_amps * q->screen_amps;
     q->residual_amps = fabs(q->plate_amps - point->law.plate_amps) + fabs(q->screen_amps - point->law.screen_amps);
-    small_signal(circuit, &point->law, q);
+    const plw_small_signal small = plw_small_signal_at(&point->law, circuit->tap);
+    q->gm_siemens = small.gm_siemens;
+    q->plate_resistance_ohms = small.plate_resistance_ohms;
+    q->mu = small.mu;
 }
 
 plw_status plw_quiescent_solve(const plw_stage *stage, plw_quiescent *quiescent, plw_error *error) {

@@ -52,12 +52,10 @@ static void walk_cycle(const plw_circuit *circuit, const plw_cycle *cycle, plw_s
 static void fill_harmonics(const plw_circuit *circuit, const plw_cycle *cycle, plw_signal *s) {
     const double *harmonic = cycle->harmonic_amps;
     const double peak = harmonic[1];
-    double squares = 0.0;
     for (int order = 0; order <= PLW_HARMONICS; order++) {
         s->harmonic_percent[order] = order < 2 || !(peak > 0.0) ? (double)NAN : 100.0 * harmonic[order] / peak;
-        squares += order < 2 ? 0.0 : harmonic[order] * harmonic[order];
     }
-    s->thd_percent = peak > 0.0 ? 100.0 * sqrt(squares) / peak : (double)NAN;
+    s->thd_percent = plw_distortion_percent(harmonic);
     /* One tube's current in N times the resistance is one tube's share; all N give N times that. */
     const double square = 0.5 * peak * peak * circuit->tubes;
     s->power_watts = square * (circuit->load_ohms + circuit->primary_ohms);

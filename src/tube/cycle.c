@@ -495,3 +495,11 @@ plw_status plw_dynamic_cycle(const plw_law *law, const plw_feed *feed, const plw
     }
     return status;
 }
+
+double plw_distortion_percent(const double harmonic[PLW_HARMONICS + 1]) {
+    double squares = 0.0;
+    for (int order = 2; order <= PLW_HARMONICS; order++) {
+        squares += harmonic[order] * harmonic[order];
+    }
+    return harmonic[1] > 0.0 ? 100.0 * sqrt(squares) / harmonic[1] : (double)NAN;
+}

@@ -103,3 +103,13 @@ plw_status plw_dynamic_rest(const plw_law *law, const plw_feed *feed, plw_instan
     plw_balance b;
     return plw_balance_point(&net, REST_TOLERANCE_AMPS, point, &b);
 }
+
+plw_small_signal plw_small_signal_at(const plw_currents *c, double tap) {
+    const double conductance =
+        c->plate_by_plate + tap * (c->plate_by_screen + c->screen_by_plate) + tap * tap * c->screen_by_screen;
+    plw_small_signal s;
+    s.gm_siemens = c->plate_by_grid + tap * c->screen_by_grid;
+    s.plate_resistance_ohms = conductance > 0.0 ? 1.0 / conductance : (double)NAN;
+    s.mu = s.gm_siemens * s.plate_resistance_ohms;
+    return s;
+}

@@ -25,7 +25,6 @@ typedef struct {
     void (*average_volts)(const void *context, const double average_amps[PLW_FLOWS], double volts[PLW_ELECTRODES],
                           double by_average[PLW_ELECTRODES][PLW_FLOWS]);
     const void *context;
-    double load_ohms;   /* across the whole primary; a tap of the screen carries its share */
     double driver_ohms; /* resistance of what drives the grid: grid current makes the crest soft; 0: none */
     double tap;         /* 0: screen not on the primary; 1: triode connection; between: ultralinear */
 } plw_feed;
@@ -42,6 +41,17 @@ typedef struct {
  * Out:  *point
  * Ret:  PLW_OK: the currents into each node add up within 1e-10 A; PLW_E_NO_CONVERGENCE */
 plw_status plw_dynamic_rest(const plw_law *law, const plw_feed *feed, plw_instant *point) PLW_MUST_USE;
+
+/* Small-signal constants at a point, of the current that the load sees: with a tap the screen takes part in proportion.
+ * Out:  plate resistance NaN where the current does not rise with the plate volts */
+typedef struct {
+    double gm_siemens, plate_resistance_ohms, mu;
+} plw_small_signal;
+plw_small_signal plw_small_signal_at(const plw_currents *currents, double tap);
+
+/* Total harmonic distortion of a cosine series, harmonics 2 to PLW_HARMONICS over the fundamental, in percent; NaN without
+ * a fundamental. */
+double plw_distortion_percent(const double harmonic[PLW_HARMONICS + 1]);
 
 typedef enum { PLW_LIMIT_DRIVE, PLW_LIMIT_GRID_CURRENT, PLW_LIMIT_CUT_OFF } plw_limit;
 

@@ -45,7 +45,6 @@ static plw_feed row_feed(const row_circuit *circuit) {
         .ohms = {{load, tap * load}, {tap * load, tap * tap * load}, {0.0, 0.0}},
         .average_volts = row_volts,
         .context = circuit,
-        .load_ohms = load,
         .tap = tap,
     };
 }
@@ -66,23 +65,18 @@ static row_circuit row_conditions(const plw_law *law, const plw_row *row) {
 }
 
 static void small_signal(const plw_currents *c, double tap, plw_prediction *p) {
-    p->gm_siemens = c->plate_by_grid + tap * c->screen_by_grid;
-    const double conductance =
-        c->plate_by_plate + tap * (c->plate_by_screen + c->screen_by_plate) + tap * tap * c->screen_by_screen;
-    p->plate_resistance_ohms = conductance > 0.0 ? 1.0 / conductance : UNKNOWN;
-    p->mu = p->gm_siemens * p->plate_resistance_ohms;
+    const plw_small_signal s = plw_small_signal_at(c, tap);
+    p->gm_siemens = s.gm_siemens;
+    p->plate_resistance_ohms = s.plate_resistance_ohms;
+    p->mu = s.mu;
 }
 
 static void driven(const plw_cycle *cycle, const row_circuit *circuit, bool has_screen, plw_prediction *p) {
     const double *harmonic = cycle->harmonic_amps;
     const double peak = harmonic[1];
-    double squares = 0.0;
-    for (int order = 2; order <= PLW_HARMONICS; order++) {
-        squares += harmonic[order] * harmonic[order];
-    }
     p->power_watts = 0.5 * peak * peak * circuit->load_ohms;
     if (peak > 0.0) {
-        p->thd_percent = 100.0 * sqrt(squares) / peak;
+        p->thd_percent = plw_distortion_percent(harmonic);
         p->h2_percent = 100.0 * fabs(harmonic[2]) / peak;
         p->h3_percent = 100.0 * fabs(harmonic[3]) / peak;
     }

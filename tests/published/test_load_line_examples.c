@@ -126,7 +126,7 @@ static void cycle_on_paper(const plw_law *law, double plate_volts, double bias, 
                            plw_cycle *cycle) {
     *rest_amps = plw_law_plate_amps(law, plate_volts, 0.0, bias);
     const paper_line line = {{plate_volts + load * *rest_amps, 0.0, bias}};
-    plw_feed feed = {.average_volts = paper_volts, .context = &line, .load_ohms = load};
+    plw_feed feed = {.average_volts = paper_volts, .context = &line};
     feed.ohms[PLW_AT_PLATE][PLW_OF_PLATE] = load;
     plw_instant rest = {.amps = {0.01, 0.0}};
     assert_int_equal(plw_dynamic_rest(law, &feed, &rest), PLW_OK);
@@ -214,7 +214,7 @@ static void the_stage_is_the_line_on_paper_lifted(void **state) {
         double mean = q.plate_amps;
         for (int round = 0; round < 60; round++) {
             const paper_line line = {{v->plate_volts + v->load * mean, 0.0, v->bias}};
-            plw_feed feed = {.average_volts = paper_volts, .context = &line, .load_ohms = v->load};
+            plw_feed feed = {.average_volts = paper_volts, .context = &line};
             feed.ohms[PLW_AT_PLATE][PLW_OF_PLATE] = v->load;
             assert_int_equal(plw_dynamic_cycle(&tube.tube.model.law, &feed, &rest, -v->bias, &cycle), PLW_OK);
             mean = cycle.harmonic_amps[0];

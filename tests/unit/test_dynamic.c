@@ -32,7 +32,7 @@ static void feed_volts(const void *context, const double average_amps[PLW_FLOWS]
 }
 
 static plw_feed feed_of(const simple_feed *simple) {
-    plw_feed feed = {.average_volts = feed_volts, .context = simple, .load_ohms = simple->load_ohms};
+    plw_feed feed = {.average_volts = feed_volts, .context = simple};
     feed.ohms[PLW_AT_PLATE][PLW_OF_PLATE] = simple->load_ohms;
     return feed;
 }
