@@ -243,6 +243,28 @@ static void the_tube_measured_is_the_one_judged(void **state) {
     assert_true(plw_specimen_keeps_ratings(&weak));
 }
 
+/* Far outside what tubes of a type differ by, it is not the tube: said, not swallowed; within it nothing is said. */
+static void readings_no_tube_explains_are_doubted(void **state) {
+    (void)state;
+    test_tube tube;
+    make_rated(&tube, pentode_law(TEST_BEAM_SMALL));
+    plw_stage stage = pentode_stage(&tube);
+    plw_meter_readings readings;
+    plw_specimen s;
+    measure_strength(&stage, 1.4, &readings, &s);
+    assert_string_equal(s.doubt, "");
+    assert_true(s.as_built_solved);
+    assert_near_relative(s.as_built.quiescent.cathode_volts, readings.cathode_volts, 1e-6, "the stage as it was read");
+    measure_strength(&stage, 1.8, &readings, &s);
+    assert_non_null(strstr(s.doubt, "this much current"));
+    measure_strength(&stage, 0.4, &readings, &s);
+    assert_non_null(strstr(s.doubt, "this little current"));
+    measure_strength(&stage, 1.0, &readings, &s);
+    readings.plate_volts -= 20.0; /* 20 V more across the primary: several times the copper told */
+    assert_int_equal(plw_specimen_measure(&stage, &readings, usual_aim, PLW_E24, &s, NULL), PLW_OK);
+    assert_non_null(strstr(s.doubt, "Between supply and plate"));
+}
+
 /* ---- refusals ---------------------------------------------------------------------------------------------------- */
 
 static void readings_that_contradict_are_refused(void **state) {
@@ -257,7 +279,9 @@ static void readings_that_contradict_are_refused(void **state) {
         const char *text;
     } wrong[] = {
         {good.supply_volts, good.plate_volts, good.screen_volts, UNKNOWN, "cathode"},
-        {good.supply_volts, good.plate_volts, good.screen_volts, 0.0, "cathode"},
+        {good.supply_volts, good.plate_volts, good.screen_volts, 0.0, "no current flows"},
+        {UNKNOWN, 1.08 * good.supply_volts, UNKNOWN, good.cathode_volts, "that feed it"},
+        {UNKNOWN, UNKNOWN, 1.08 * good.supply_volts, good.cathode_volts, "that feed it"},
         {good.supply_volts, good.plate_volts, good.screen_volts, -12.6, "cathode"},
         {good.supply_volts, good.plate_volts, good.screen_volts, 5001.0, "cathode"},
         {good.supply_volts, 1.05 * good.supply_volts, good.screen_volts, good.cathode_volts, "plate"},
@@ -297,6 +321,7 @@ int main(void) {
         cmocka_unit_test(the_copper_is_taken_as_read),
         cmocka_unit_test(the_resistor_found_suits_this_tube),
         cmocka_unit_test(the_tube_measured_is_the_one_judged),
+        cmocka_unit_test(readings_no_tube_explains_are_doubted),
         cmocka_unit_test(readings_that_contradict_are_refused),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
