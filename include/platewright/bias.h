@@ -29,6 +29,10 @@ typedef struct {
 /* A resistor of the wattage wanted is this many times what it dissipates.  Common practice: at least twice. */
 #define PLW_RESISTOR_MARGIN 2.0
 
+/* A rating broken only under drive is worth this much more resistance, where that cures it.  Common practice, no
+ * source. */
+#define PLW_DRIVEN_RAISE_MOST 1.15
+
 /* One value, solved again after rounding. */
 typedef struct {
     double ohms;

@@ -14,11 +14,13 @@ extern "C" {
 #define PLW_MAINS_LOW_PERCENT 90.0
 #define PLW_MAINS_HIGH_PERCENT 110.0
 
-/* The stage at rest at one mains voltage. */
+/* The stage at one mains voltage, at rest and driven: as far as the drive told, or fully. */
 typedef struct {
     double mains_percent;
     bool solved; /* else the supply's readings do not reach there, or the tube is cut off: nothing below holds */
     plw_quiescent quiescent;
+    bool driven; /* else no signal was found there: signal does not hold, and the ratings are those at rest alone */
+    plw_signal signal;
     plw_rating_check ratings[PLW_RATING_CHECKS_MOST];
     size_t ratings_count;
     bool within_ratings;
@@ -43,7 +45,8 @@ PLW_API plw_status plw_mains_solve(const plw_stage *stage, plw_mains *mains, plw
 
 /* Choose the cathode resistor when no aim is told: as plw_bias_choose() for PLW_AIM_DEFAULT_PERCENT of the rated
  * dissipation, lowered as far as the ratings of heat and current need that must hold with the mains high.  (Ratings of
- * voltage no resistor cures.)
+ * voltage no resistor cures.)  A rating that only full drive at high mains breaks is worth up to PLW_DRIVEN_RAISE_MOST times the
+ * resistance, where that cures it.
  * Out:  *choice, whose aim is the one taken; *before_percent: 0, or what the aim was before it was lowered
  * Ret:  as plw_bias_choose() */
 PLW_API plw_status plw_bias_choose_for_mains(const plw_stage *stage, plw_series series, plw_bias_choice *choice,

@@ -76,14 +76,22 @@ static void of_ratings(plw_caution_list *l, const plw_answer *answer) {
     }
 }
 
-static bool broken_at_rest(const plw_bias_option *option, const char *name) {
+/* Is the rating broken at nominal mains too, driven alike? */
+static bool broken_anyhow(const plw_bias_option *option, const plw_rating_check *at_mains) {
     for (size_t i = 0; i < option->ratings_count; i++) {
-        if (!option->ratings[i].ok && option->ratings[i].when == PLW_AT_IDLE &&
-            strcmp(option->ratings[i].name, name) == 0) {
+        const plw_rating_check *check = &option->ratings[i];
+        if (!check->ok && check->when == at_mains->when && strcmp(check->name, at_mains->name) == 0) {
             return true;
         }
     }
     return false;
+}
+
+static const char *mains_remedy(const plw_rating_check *check) {
+    if (check->when == PLW_AT_FULL_DRIVE) {
+        return "Speech and music heat less than this steady tone; a higher resistor or a lower supply cures it.";
+    }
+    return check->unit == PLW_UNIT_VOLT ? "A lower supply cures it." : "A higher resistor or a lower aim cures it.";
 }
 
 /* Where the rating system leaves the mains to the builder, each rating broken there that is kept at nominal mains. */
@@ -94,17 +102,16 @@ static void of_mains(plw_caution_list *l, const plw_answer *answer) {
     }
     for (size_t i = 0; i < mains->high.ratings_count; i++) {
         const plw_rating_check *check = &mains->high.ratings[i];
-        if (!check->ok && !broken_at_rest(answer->option, check->name)) {
+        if (!check->ok && !broken_anyhow(answer->option, check)) {
             char value[TEXT_SIZE];
             char limit[TEXT_SIZE];
-            plw_caution_say(l,
-                            "With the mains 10 %% up the %s is %s, the limit %s (%.0f %%): a %s rating must hold there "
-                            "too. %s",
-                            check->name, written(check->value, check->unit, value),
-                            written(check->limit, check->unit, limit), check->share_percent,
-                            plw_rating_system_name(mains->system),
-                            check->unit == PLW_UNIT_VOLT ? "A lower supply cures it."
-                                                         : "A higher resistor or a lower aim cures it.");
+            plw_caution_say(
+                l,
+                "With the mains 10 %% up the %s%s is %s, the limit %s (%.0f %%): a %s rating must hold there "
+                "too. %s",
+                check->name, check->when == PLW_AT_IDLE ? "" : " at full drive",
+                written(check->value, check->unit, value), written(check->limit, check->unit, limit),
+                check->share_percent, plw_rating_system_name(mains->system), mains_remedy(check));
         }
     }
 }

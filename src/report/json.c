@@ -104,10 +104,12 @@ static void put_rating(json_t *ratings, const plw_rating_check *check, bool coun
 static void put_mains_ratings(json_t *ratings, const plw_mains *mains, bool *failed) {
     const plw_mains_corner *corners[] = {&mains->low, &mains->high};
     for (size_t k = 0; k < 2; k++) {
-        char at[48];
-        snprintf(at, sizeof at, "idle, mains %+.3g %%", corners[k]->mains_percent - 100.0);
         for (size_t i = 0; i < corners[k]->ratings_count; i++) {
-            put_rating(ratings, &corners[k]->ratings[i], mains->counted, at, failed);
+            const plw_rating_check *check = &corners[k]->ratings[i];
+            char at[48];
+            snprintf(at, sizeof at, "%s, mains %+.3g %%", check->when == PLW_AT_IDLE ? "idle" : "full drive",
+                     corners[k]->mains_percent - 100.0);
+            put_rating(ratings, check, mains->counted, at, failed);
         }
     }
 }

@@ -199,8 +199,13 @@ void plw_put_mains(FILE *out, const plw_mains *mains, const plw_quiescent *rest)
     plw_put_right(out, plw_cell_volts(rest->supply_volts).text, 9);
     fputc('\n', out);
     bool starred = false;
+    bool driven = false;
     for (size_t i = 0; i < names->ratings_count; i++) {
-        fprintf(out, "  %-24s", names->ratings[i].name);
+        if (!driven && names->ratings[i].when == PLW_AT_FULL_DRIVE) {
+            fputs("  at full drive\n", out);
+            driven = true;
+        }
+        fprintf(out, driven ? "    %-22s" : "  %-24s", names->ratings[i].name);
         mains_cell(out, &mains->low, i, mains->counted, false);
         mains_cell(out, &mains->high, i, mains->counted, true);
         fputc('\n', out);

@@ -13,7 +13,6 @@
 #define MOST_OHMS 1e6
 #define SCAN_STEPS_PER_DECADE 12
 #define STEPS_UP_MOST 240
-#define DRIVEN_RAISE_MOST 1.15 /* a rating broken only under drive is worth this much more resistance */
 
 plw_status plw_bias_option_solve(const plw_stage *stage, double ohms, plw_bias_option *option, plw_error *error) {
     plw_stage trial = *stage;
@@ -196,7 +195,7 @@ static void step_into_driven_ratings(const plw_stage *stage, plw_series series, 
     while (!trial.within_ratings) {
         plw_error ignored = {0};
         const double next = plw_preferred_step(trial.ohms, 1, series);
-        if (!(next <= DRIVEN_RAISE_MOST * option->ohms) ||
+        if (!(next <= PLW_DRIVEN_RAISE_MOST * option->ohms) ||
             plw_bias_option_solve(stage, next, &trial, &ignored) != PLW_OK) {
             return;
         }

@@ -34,6 +34,16 @@ static void corners_are_the_stage_there(void **state) {
         assert_true(corners[i]->solved);
         assert_near_relative(corners[i]->quiescent.plate_amps, rest.plate_amps, 1e-9, "the stage solved there");
         assert_near_relative(corners[i]->quiescent.screen_volts, rest.screen_volts, 1e-9, "the stage solved there");
+        plw_signal signal;
+        assert_int_equal(plw_signal_solve(&there, &rest, &signal, NULL), PLW_OK);
+        assert_true(corners[i]->driven);
+        assert_near_relative(corners[i]->signal.plate_watts, signal.plate_watts, 1e-9, "the stage driven there");
+        assert_near_relative(corners[i]->signal.screen_watts, signal.screen_watts, 1e-9, "the stage driven there");
+        size_t driven = 0;
+        for (size_t k = 0; k < corners[i]->ratings_count; k++) {
+            driven += corners[i]->ratings[k].when == PLW_AT_FULL_DRIVE;
+        }
+        assert_true(driven >= 2); /* plate dissipation and cathode current */
     }
     assert_true(mains.low.quiescent.plate_watts < mains.high.quiescent.plate_watts);
 }
@@ -121,6 +131,44 @@ static void the_aim_is_lowered_for_the_mains(void **state) {
     }
 }
 
+/* A screen that only full drive at high mains overheats: worth a little more resistance where that cures it. */
+static void the_aim_is_lowered_for_the_drive(void **state) {
+    (void)state;
+    test_tube tube;
+    make_tube(&tube, pentode_law(TEST_PENTODE_STEEP));
+    rate(&tube, PLW_SYSTEM_DESIGN_MAXIMUM);
+    tube.ratings[0].cathode_amps = UNKNOWN;
+    plw_stage stage = simple_stage(&tube, 251.3, 5210.0, UNKNOWN, UNKNOWN);
+    plw_bias_choice plain, choice;
+    plw_mains mains;
+    double before;
+    assert_int_equal(plw_bias_choose_for_mains(&stage, PLW_E96, &plain, &before, NULL), PLW_OK);
+    stage.cathode_resistor_ohms = plain.option[plain.chosen].ohms;
+    assert_int_equal(plw_mains_solve(&stage, &mains, NULL), PLW_OK);
+    assert_true(mains.within_ratings);
+    const double watts = mains.high.signal.screen_watts;
+    assert_true(watts > mains.high.quiescent.screen_watts);
+    const struct {
+        double part; /* of what the screen takes there */
+        bool cured;
+    } cases[] = {{1.01, true}, {0.99, true}, {0.5, false}};
+    for (size_t i = 0; i < sizeof cases / sizeof cases[0]; i++) {
+        tube.ratings[0].screen_watts = cases[i].part * watts;
+        stage.cathode_resistor_ohms = UNKNOWN;
+        assert_int_equal(plw_bias_choose_for_mains(&stage, PLW_E96, &choice, &before, NULL), PLW_OK);
+        stage.cathode_resistor_ohms = choice.option[choice.chosen].ohms;
+        assert_int_equal(plw_mains_solve(&stage, &mains, NULL), PLW_OK);
+        assert_int_equal(mains.within_ratings, cases[i].cured);
+        if (i == 0) {
+            assert_true(choice.exact_ohms == plain.exact_ohms);
+        } else if (cases[i].cured) {
+            assert_true(choice.exact_ohms > plain.exact_ohms);
+            assert_true(stage.cathode_resistor_ohms <=
+                        PLW_DRIVEN_RAISE_MOST * plain.option[plain.chosen].ohms * (1.0 + 1e-9));
+        }
+    }
+}
+
 /* A voltage that is too high at high mains is no reason to starve the tube. */
 static void voltages_do_not_lower_the_aim(void **state) {
     (void)state;
@@ -178,9 +226,10 @@ static void readings_have_a_meaning(void **state) {
 
 int main(void) {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(corners_are_the_stage_there),   cmocka_unit_test(rating_systems_differ),
-        cmocka_unit_test(corners_that_are_not_there),    cmocka_unit_test(the_aim_is_lowered_for_the_mains),
-        cmocka_unit_test(voltages_do_not_lower_the_aim), cmocka_unit_test(readings_have_a_meaning),
+        cmocka_unit_test(corners_are_the_stage_there),      cmocka_unit_test(rating_systems_differ),
+        cmocka_unit_test(corners_that_are_not_there),       cmocka_unit_test(the_aim_is_lowered_for_the_mains),
+        cmocka_unit_test(the_aim_is_lowered_for_the_drive), cmocka_unit_test(voltages_do_not_lower_the_aim),
+        cmocka_unit_test(readings_have_a_meaning),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

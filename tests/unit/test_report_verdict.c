@@ -136,12 +136,76 @@ static void a_triode_has_no_screen_current(void **state) {
     json_decref(root);
 }
 
+/* ---- the verdict in words ---------------------------------------------------------------------------------------- */
+
+static void assert_verdict(const plw_answer *answer, const char *words) {
+    char *text = NULL;
+    assert_int_equal(plw_report_text(answer, &text, NULL), PLW_OK);
+    const char *line = strstr(text, "VERDICT ");
+    assert_non_null(line);
+    if (line != NULL && strncmp(line + 18, words, strlen(words)) != 0) {
+        fail_msg("'%s' wanted:\n%.200s", words, line);
+    }
+    plw_text_free(text);
+}
+
+/* Break the first check at rest or driven. */
+static void break_one(plw_rating_check *checks, size_t count, plw_when when) {
+    size_t i = 0;
+    while (i < count && checks[i].when != when) {
+        i++;
+    }
+    assert_true(i < count);
+    checks[i].ok = false;
+}
+
+/* What ends with exit status 1 is never called within the ratings: the nearest to the bench comes first. */
+static void the_verdict_names_what_is_broken(void **state) {
+    (void)state;
+    static solved_stage s;
+    static plw_mains mains;
+    static plw_supply_answer supply;
+    static plw_supply line;
+    stage_begin(&s, PLW_LAW_PENTODE);
+    s.ratings.system = PLW_SYSTEM_DESIGN_MAXIMUM;
+    s.ratings.screen_watts = 4.3;
+    stage_solve(&s);
+    assert_int_equal(plw_mains_solve(&s.stage, &mains, NULL), PLW_OK);
+    plw_mains kept = mains;
+    for (size_t i = 0; i < kept.high.ratings_count; i++) {
+        kept.high.ratings[i].ok = kept.low.ratings[i].ok = true;
+    }
+    s.answer.mains = &kept;
+    assert_verdict(&s.answer, "within every rating, at rest and at full drive, mains 10 % up");
+    assert_int_equal(plw_supply_source(303.0, 713.0, &line, NULL), PLW_OK);
+    const plw_plate_supply source = plw_plate_supply_of(&line);
+    const plw_supply_question question = plw_supply_question_usual(0.0311);
+    assert_int_equal(plw_plate_supply_ask(&source, &question, &supply, NULL), PLW_OK);
+    supply.within_ratings = false;
+    supply.checks_count = 1;
+    supply.checks[0] =
+        (plw_supply_check){.name = "bleeder heat", .value = 1238.5, .limit = 1000.0, .unit = PLW_UNIT_VOLT};
+    s.answer.supply = &supply;
+    assert_verdict(&s.answer, "OVER A RATING of the supply:\n");
+    break_one(kept.low.ratings, kept.low.ratings_count, PLW_AT_IDLE);
+    assert_verdict(&s.answer, "OVER A RATING with the mains 10 % down, at rest:\n");
+    break_one(kept.high.ratings, kept.high.ratings_count, PLW_AT_FULL_DRIVE);
+    assert_verdict(&s.answer, "OVER A RATING with the mains 10 % up, at full drive:\n");
+    break_one(kept.high.ratings, kept.high.ratings_count, PLW_AT_IDLE);
+    assert_verdict(&s.answer, "OVER A RATING with the mains 10 % up, at rest:\n");
+    kept.counted = false; /* a design-center tube: the maker answers for the mains */
+    assert_verdict(&s.answer, "OVER A RATING of the supply:\n");
+    s.answer.supply = NULL;
+    assert_verdict(&s.answer, "within every rating, at rest and at full drive\n");
+}
+
 int main(void) {
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(the_aim_is_told),
         cmocka_unit_test(no_resistor_is_an_answer_too),
         cmocka_unit_test(ok_is_the_plain_comparison),
         cmocka_unit_test(a_triode_has_no_screen_current),
+        cmocka_unit_test(the_verdict_names_what_is_broken),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
