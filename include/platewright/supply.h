@@ -69,6 +69,9 @@ PLW_API void plw_supply_at(const plw_supply *supply, double amps, double *volts,
  * infinity. */
 PLW_API void plw_supply_range(const plw_supply *supply, double *least_amps, double *most_amps);
 
+/* The same supply, so many volts higher (or lower) at every current. */
+PLW_API plw_supply plw_supply_moved(const plw_supply *supply, double volts);
+
 #ifdef __cplusplus
 }
 #endif

@@ -184,16 +184,19 @@ static void complete_supply(const cli_work *work, plw_answer *answer, cli_extras
 void cli_work_complete(const cli_work *work, plw_answer *answer, cli_extras *extras, bool *kept) {
     const plw_bias_option *option = answer->option;
     answer->aim_before_percent = work->aim_before_percent;
-    /* Without it the answer still stands: a stage at the edge of its supply's readings may not bear a stronger tube. */
-    if (plw_uncertainty_estimate(answer->stage, &option->quiescent, &option->signal, &extras->uncertainty, NULL) ==
-        PLW_OK) {
-        answer->uncertainty = &extras->uncertainty;
-    }
     if (plw_mains_solve(answer->stage, &extras->mains, NULL) == PLW_OK) {
         answer->mains = &extras->mains;
         *kept = *kept && extras->mains.within_ratings;
     }
     complete_supply(work, answer, extras, kept);
+    /* A meter at the supply leaves its readings off load and under other loads nothing to say. */
+    const bool read = answer->specimen != NULL && answer->specimen->supply_read;
+    const double volts_error = answer->supply != NULL && !read ? answer->supply->volts_error : 0.0;
+    /* Without it the answer still stands: a stage at the edge of its supply's readings may not bear a stronger tube. */
+    if (plw_uncertainty_estimate(answer->stage, &option->quiescent, &option->signal, volts_error, &extras->uncertainty,
+                                 NULL) == PLW_OK) {
+        answer->uncertainty = &extras->uncertainty;
+    }
 }
 
 plw_status cli_work_answer(const cli_work *work, const plw_answer *answer, plw_error *error) {

@@ -65,11 +65,11 @@ static void put_uncertainty(FILE *file, const plw_uncertainty *u) {
         fputs(",,,,,,", file);
         return;
     }
-    put_number(file, u->plate_amps.both);
-    put_number(file, u->plate_watts.both);
-    put_number(file, u->cathode_volts.both);
-    put_number(file, u->speaker_watts.both);
-    fprintf(file, ",%s,", u->model_dominates ? "model" : "tubes");
+    put_number(file, u->plate_amps.all);
+    put_number(file, u->plate_watts.all);
+    put_number(file, u->cathode_volts.all);
+    put_number(file, u->speaker_watts.all);
+    fprintf(file, ",%s,", plw_deviation_cause_name(u->dominant));
     put_text(file, u->outside);
 }
 

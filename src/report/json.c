@@ -165,7 +165,8 @@ static void put_deviation(const plw_json_sink *s, const char *name, const plw_de
     const plw_json_sink d = plw_json_object_in(s, name);
     plw_json_put_number(&d, "model", deviation->model);
     plw_json_put_number(&d, "tubes", deviation->tubes);
-    plw_json_put_number(&d, "both", deviation->both);
+    plw_json_put_number(&d, "supply", deviation->supply);
+    plw_json_put_number(&d, "all", deviation->all);
 }
 
 /* One standard deviation of the main figures, in their own units. */
@@ -179,7 +180,7 @@ static void put_uncertainty(const plw_json_sink *root, const plw_uncertainty *u)
     put_deviation(&s, "cathode_volts", &u->cathode_volts);
     put_deviation(&s, "speaker_watts", &u->speaker_watts);
     plw_json_put_number(&s, "model_percent", u->model_percent);
-    plw_json_put(&s, "dominated_by", json_string(u->model_dominates ? "model" : "tubes"));
+    plw_json_put(&s, "dominated_by", json_string(plw_deviation_cause_name(u->dominant)));
     plw_json_put(&s, "outside_data", u->outside_data ? json_string(u->outside) : json_null());
 }
 

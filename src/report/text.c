@@ -441,16 +441,18 @@ static void trust_lines(FILE *out, const plw_answer *a) {
         plw_cell power;
         plw_cell by_tubes;
         plw_cell by_model;
-        snprintf(
-            text, sizeof text,
-            "How sure: plate current +/- %s (tubes of one type %s, model %s), plate dissipation +/- %s, power +/- %s: "
-            "two in three amplifiers lie within; the %s counts most.",
-            deviation_text(u->plate_amps.both, PLW_UNIT_AMPERE, &current),
-            deviation_text(u->plate_amps.tubes, PLW_UNIT_AMPERE, &by_tubes),
-            deviation_text(u->plate_amps.model, PLW_UNIT_AMPERE, &by_model),
-            deviation_text(u->plate_watts.both, PLW_UNIT_WATT, &heat),
-            deviation_text(u->speaker_watts.both, PLW_UNIT_WATT, &power),
-            u->model_dominates ? "model" : "spread of tubes");
+        plw_cell by_supply;
+        const bool supply = u->plate_amps.supply > 0.0;
+        deviation_text(u->plate_amps.supply, PLW_UNIT_AMPERE, &by_supply);
+        snprintf(text, sizeof text,
+                 "How sure: plate current +/- %s (tubes of one type %s, model %s%s%s), plate dissipation +/- %s, "
+                 "power +/- %s: two in three amplifiers lie within; the %s counts most.",
+                 deviation_text(u->plate_amps.all, PLW_UNIT_AMPERE, &current),
+                 deviation_text(u->plate_amps.tubes, PLW_UNIT_AMPERE, &by_tubes),
+                 deviation_text(u->plate_amps.model, PLW_UNIT_AMPERE, &by_model), supply ? ", supply " : "",
+                 supply ? by_supply.text : "", deviation_text(u->plate_watts.all, PLW_UNIT_WATT, &heat),
+                 deviation_text(u->speaker_watts.all, PLW_UNIT_WATT, &power),
+                 u->dominant == PLW_BY_TUBES ? "spread of tubes" : plw_deviation_cause_name(u->dominant));
         plw_put_paragraph(out, "", text);
     }
     if (isfinite(m->fit_error.plate_current_percent)) {

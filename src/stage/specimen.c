@@ -50,14 +50,6 @@ static plw_status validate_readings(const plw_stage *stage, const plw_meter_read
     return PLW_OK;
 }
 
-/* Move the whole supply up or down so that it gives the voltage read at this current. */
-static void move_supply(plw_supply *supply, double volts) {
-    supply->volts += volts;
-    for (size_t index = 0; index < supply->points; index++) {
-        supply->point[index].volts += volts;
-    }
-}
-
 /* Currents at a share of the screen assumed, and with them the voltages read or, where none was read, those that the
  * circuit leaves.
  * Ret:  the share that the law gives at those voltages */
@@ -116,7 +108,7 @@ static void measured_stage(const plw_stage *stage, const plw_circuit *circuit, p
         double volts;
         double ohms;
         plw_supply_at(&stage->supply, plw_circuit_supply_amps(circuit, amps), &volts, &ohms);
-        move_supply(&s->stage.supply, s->supply_volts - volts);
+        s->stage.supply = plw_supply_moved(&stage->supply, s->supply_volts - volts);
     }
     s->primary_ohms = (double)NAN;
     if (s->supply_read && s->plate_read) {

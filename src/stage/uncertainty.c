@@ -11,32 +11,75 @@
 #define DATA_RANGE_LEAST 0.7
 #define DATA_RANGE_MOST 1.5
 
-typedef struct {
-    double plate_amps, plate_watts, cathode_volts, speaker_watts;
-} figures;
+enum { PLATE_AMPS, PLATE_WATTS, CATHODE_VOLTS, SPEAKER_WATTS, FIGURES };
 
-static plw_status solve_scaled(const plw_stage *stage, double factor, figures *f, plw_error *error) {
-    plw_tube tube = *stage->tube;
-    plw_law_scale(&tube.model.law, factor);
-    plw_stage scaled = *stage;
-    scaled.tube = &tube;
+/* The figures with something one deviation above and one below. */
+typedef struct {
+    double above[FIGURES], below[FIGURES];
+} pair;
+
+static plw_status solve_figures(const plw_stage *stage, double figure[FIGURES], plw_error *error) {
     plw_quiescent q;
     plw_signal s;
-    plw_status status = plw_quiescent_solve(&scaled, &q, error);
+    plw_status status = plw_quiescent_solve(stage, &q, error);
     if (status == PLW_OK) {
-        status = plw_signal_solve(&scaled, &q, &s, error);
+        status = plw_signal_solve(stage, &q, &s, error);
     }
     if (status == PLW_OK) {
-        *f = (figures){q.plate_amps, q.plate_watts, q.cathode_volts, s.speaker_watts};
+        figure[PLATE_AMPS] = q.plate_amps;
+        figure[PLATE_WATTS] = q.plate_watts;
+        figure[CATHODE_VOLTS] = q.cathode_volts;
+        figure[SPEAKER_WATTS] = s.speaker_watts;
     }
     return status;
 }
 
-static plw_deviation deviation(double strong, double weak, double model, double tubes, double own_model) {
-    /* Half the difference between one spread above and below; the model's error acts in proportion. */
-    const double by_tubes = 0.5 * fabs(strong - weak);
-    const double by_model = hypot(by_tubes * model / tubes, own_model);
-    return (plw_deviation){by_model, by_tubes, hypot(by_model, by_tubes)};
+static plw_status solve_with_tubes(const plw_stage *stage, pair *p, plw_error *error) {
+    for (int side = 0; side < 2; side++) {
+        plw_tube tube = *stage->tube;
+        plw_law_scale(&tube.model.law, side == 0 ? 1.0 + PLW_TUBE_SPREAD : 1.0 - PLW_TUBE_SPREAD);
+        plw_stage scaled = *stage;
+        scaled.tube = &tube;
+        const plw_status status = solve_figures(&scaled, side == 0 ? p->above : p->below, error);
+        if (status != PLW_OK) {
+            return status;
+        }
+    }
+    return PLW_OK;
+}
+
+/* A supply given exactly makes no difference. */
+static plw_status solve_with_supplies(const plw_stage *stage, double volts, pair *p, plw_error *error) {
+    *p = (pair){{0}, {0}};
+    for (int side = 0; side < 2 && volts > 0.0; side++) {
+        plw_stage moved = *stage;
+        moved.supply = plw_supply_moved(&stage->supply, side == 0 ? volts : -volts);
+        const plw_status status = solve_figures(&moved, side == 0 ? p->above : p->below, error);
+        if (status != PLW_OK) {
+            return status;
+        }
+    }
+    return PLW_OK;
+}
+
+/* Half the difference between one deviation above and below.  The model's error acts as a spread of tubes of its size;
+ * of power it has one of its own besides. */
+static plw_deviation deviation_of(int figure, const pair *tubes, const pair *supplies, double model, double own_model) {
+    const double by_tubes = 0.5 * fabs(tubes->above[figure] - tubes->below[figure]);
+    const double by_supply = 0.5 * fabs(supplies->above[figure] - supplies->below[figure]);
+    const double by_model = hypot(by_tubes * model / PLW_TUBE_SPREAD, own_model);
+    return (plw_deviation){by_model, by_tubes, by_supply, hypot(hypot(by_model, by_tubes), by_supply)};
+}
+
+const char *plw_deviation_cause_name(plw_deviation_cause cause) {
+    return cause == PLW_BY_MODEL ? "model" : cause == PLW_BY_TUBES ? "tubes" : "supply";
+}
+
+static plw_deviation_cause dominant_cause(const plw_deviation *d) {
+    if (d->supply > d->model && d->supply > d->tubes) {
+        return PLW_BY_SUPPLY;
+    }
+    return d->model > d->tubes ? PLW_BY_MODEL : PLW_BY_TUBES;
 }
 
 static bool beyond(double value, double least, double most) {
@@ -65,13 +108,13 @@ static double model_part(double left_out_percent, double fit_percent) {
 }
 
 plw_status plw_uncertainty_estimate(const plw_stage *stage, const plw_quiescent *quiescent, const plw_signal *signal,
-                                    plw_uncertainty *uncertainty, plw_error *error) {
+                                    double supply_volts_error, plw_uncertainty *uncertainty, plw_error *error) {
     const plw_model *m = &stage->tube->model;
-    figures strong;
-    figures weak;
-    plw_status status = solve_scaled(stage, 1.0 + PLW_TUBE_SPREAD, &strong, error);
+    pair tubes;
+    pair supplies;
+    plw_status status = solve_with_tubes(stage, &tubes, error);
     if (status == PLW_OK) {
-        status = solve_scaled(stage, 1.0 - PLW_TUBE_SPREAD, &weak, error);
+        status = solve_with_supplies(stage, supply_volts_error, &supplies, error);
     }
     if (status != PLW_OK) {
         return status;
@@ -84,13 +127,12 @@ plw_status plw_uncertainty_estimate(const plw_stage *stage, const plw_quiescent 
         model *= 2.0;
         power *= 2.0;
     }
-    const double tubes = PLW_TUBE_SPREAD;
     u.model_percent = 100.0 * model;
-    u.plate_amps = deviation(strong.plate_amps, weak.plate_amps, model, tubes, 0.0);
-    u.plate_watts = deviation(strong.plate_watts, weak.plate_watts, model, tubes, 0.0);
-    u.cathode_volts = deviation(strong.cathode_volts, weak.cathode_volts, model, tubes, 0.0);
-    u.speaker_watts = deviation(strong.speaker_watts, weak.speaker_watts, model, tubes, power * signal->speaker_watts);
-    u.model_dominates = u.plate_amps.model > u.plate_amps.tubes;
+    u.plate_amps = deviation_of(PLATE_AMPS, &tubes, &supplies, model, 0.0);
+    u.plate_watts = deviation_of(PLATE_WATTS, &tubes, &supplies, model, 0.0);
+    u.cathode_volts = deviation_of(CATHODE_VOLTS, &tubes, &supplies, model, 0.0);
+    u.speaker_watts = deviation_of(SPEAKER_WATTS, &tubes, &supplies, model, power * signal->speaker_watts);
+    u.dominant = dominant_cause(&u.plate_amps);
     *uncertainty = u;
     return PLW_OK;
 }

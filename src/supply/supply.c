@@ -214,3 +214,12 @@ void plw_supply_range(const plw_supply *supply, double *least_amps, double *most
         *most_amps = supply->point[supply->points - 1].amps;
     }
 }
+
+plw_supply plw_supply_moved(const plw_supply *supply, double volts) {
+    plw_supply moved = *supply;
+    moved.volts += volts; /* NaN stays */
+    for (size_t index = 0; index < moved.points; index++) {
+        moved.point[index].volts += volts;
+    }
+    return moved;
+}

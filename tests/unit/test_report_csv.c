@@ -92,15 +92,15 @@ static void the_uncertainty_is_told(void **state) {
     plw_uncertainty u;
     plw_error error = {0};
     const plw_bias_option *option = s.answer.option;
-    assert_int_equal(plw_uncertainty_estimate(&s.stage, &option->quiescent, &option->signal, &u, &error), PLW_OK);
+    assert_int_equal(plw_uncertainty_estimate(&s.stage, &option->quiescent, &option->signal, 0.0, &u, &error), PLW_OK);
     snprintf(u.outside, sizeof u.outside, "plate volts 425 V, the data cover 100 to 200 V");
     u.outside_data = true;
     s.answer.uncertainty = &u;
     json_t *root = parsed(&s.answer);
     assert_near_relative(number_at(root, "uncertainty.plate_amps.model"), u.plate_amps.model, WRITTEN, "as found");
     assert_near_relative(number_at(root, "uncertainty.plate_watts.tubes"), u.plate_watts.tubes, WRITTEN, "as found");
-    assert_near_relative(number_at(root, "uncertainty.speaker_watts.both"), u.speaker_watts.both, WRITTEN, "as found");
-    assert_text_at(root, "uncertainty.dominated_by", u.model_dominates ? "model" : "tubes");
+    assert_near_relative(number_at(root, "uncertainty.speaker_watts.all"), u.speaker_watts.all, WRITTEN, "as found");
+    assert_text_at(root, "uncertainty.dominated_by", plw_deviation_cause_name(u.dominant));
     assert_text_at(root, "uncertainty.outside_data", u.outside);
     json_decref(root);
     char *text = NULL;
@@ -113,11 +113,11 @@ static void the_uncertainty_is_told(void **state) {
             assert_string_equal(value, "");
             continue;
         }
-        assert_near_relative(strtod(value, NULL), u.plate_amps.both, WRITTEN, "as found");
+        assert_near_relative(strtod(value, NULL), u.plate_amps.all, WRITTEN, "as found");
         column_of(text, "uncertainty_driven_speaker_watts", i, value, sizeof value);
-        assert_near_relative(strtod(value, NULL), u.speaker_watts.both, WRITTEN, "as found");
+        assert_near_relative(strtod(value, NULL), u.speaker_watts.all, WRITTEN, "as found");
         column_of(text, "uncertainty_dominated_by", i, value, sizeof value);
-        assert_string_equal(value, u.model_dominates ? "model" : "tubes");
+        assert_string_equal(value, plw_deviation_cause_name(u.dominant));
     }
     plw_text_free(text);
 }

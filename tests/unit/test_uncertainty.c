@@ -24,14 +24,18 @@ static solved solve(const plw_stage *stage) {
     return s;
 }
 
-static plw_uncertainty estimate(const plw_stage *stage) {
+static plw_uncertainty estimate_on(const plw_stage *stage, double supply_volts_error) {
     const solved s = solve(stage);
     plw_uncertainty u;
     plw_error error = {0};
-    if (plw_uncertainty_estimate(stage, &s.rest, &s.signal, &u, &error) != PLW_OK) {
+    if (plw_uncertainty_estimate(stage, &s.rest, &s.signal, supply_volts_error, &u, &error) != PLW_OK) {
         fail_msg("%s", error.text);
     }
     return u;
+}
+
+static plw_uncertainty estimate(const plw_stage *stage) {
+    return estimate_on(stage, 0.0);
 }
 
 /* The errors of the fit and the region of the data, as a tube file has them. */
@@ -68,7 +72,7 @@ static void drawn_tubes_lie_where_it_says(void **state) {
         const plw_stage stage = beam_stage(&bogey, cathode_bias != 0);
         const solved middle = solve(&stage);
         const plw_uncertainty u = estimate(&stage);
-        const double deviation[FIGURES] = {u.plate_amps.both, u.plate_watts.both, u.cathode_volts.both,
+        const double deviation[FIGURES] = {u.plate_amps.all, u.plate_watts.all, u.cathode_volts.all,
                                            u.speaker_watts.tubes};
         const double model = u.model_percent / 100.0;
         double squares[FIGURES] = {0.0};
@@ -116,7 +120,7 @@ static void fixed_bias_passes_the_spread_on(void **state) {
     const plw_uncertainty u = estimate(&stage);
     assert_near_relative(u.plate_amps.tubes, PLW_TUBE_SPREAD * s.rest.plate_amps, 1e-7,
                          "stiff supply, no copper: the current is in proportion to the tube");
-    assert_near_relative(u.plate_amps.both, hypot(u.plate_amps.tubes, u.plate_amps.model), 1e-12, "by squares");
+    assert_near_relative(u.plate_amps.all, hypot(u.plate_amps.tubes, u.plate_amps.model), 1e-12, "by squares");
     assert_near_relative(u.plate_amps.model / u.plate_amps.tubes, u.model_percent / 100.0 / PLW_TUBE_SPREAD, 1e-12,
                          "the law's error acts as a spread of its size");
 }
@@ -153,7 +157,7 @@ static void a_cathode_resistor_narrows_the_spread(void **state) {
     const plw_stage fixed = simple_stage(&tube, s.rest.plate_volts, 3e3, UNKNOWN, s.rest.grid_volts);
     const plw_uncertainty whole = estimate(&fixed);
     assert_near_relative(whole.plate_amps.tubes / narrowed.plate_amps.tubes, feedback, bend, "the same point of rest");
-    assert_true(narrowed.plate_watts.both < whole.plate_watts.both);
+    assert_true(narrowed.plate_watts.all < whole.plate_watts.all);
 }
 
 /* ---- what counts most -------------------------------------------------------------------------------------------- */
@@ -164,11 +168,11 @@ static void the_larger_of_the_two_is_named(void **state) {
     const plw_stage stage = beam_stage(&tube, true);
     trust(&tube, 0.99 * EVEN_PERCENT, 5.3);
     const plw_uncertainty by_tubes = estimate(&stage);
-    assert_false(by_tubes.model_dominates);
+    assert_int_equal(by_tubes.dominant, PLW_BY_TUBES);
     assert_near_relative(by_tubes.model_percent, 99.0 * PLW_TUBE_SPREAD, 1e-9, "median to standard deviation");
     trust(&tube, 1.01 * EVEN_PERCENT, 5.3);
     const plw_uncertainty by_model = estimate(&stage);
-    assert_true(by_model.model_dominates);
+    assert_int_equal(by_model.dominant, PLW_BY_MODEL);
     assert_true(by_model.plate_amps.model > by_model.plate_amps.tubes);
     assert_near_relative(by_model.plate_amps.tubes, by_tubes.plate_amps.tubes, 1e-12, "the tubes are the same");
 }
@@ -204,6 +208,55 @@ static void the_error_of_power_is_counted(void **state) {
     assert_near_relative(worse.speaker_watts.model * worse.speaker_watts.model -
                              u.speaker_watts.model * u.speaker_watts.model,
                          watts * watts * (11.9 * 11.9 - 5.3 * 5.3), 1e-6, "by squares");
+}
+
+/* Volts more or less of the supply, as two stages solved on them have it. */
+static void the_error_of_the_supply_is_counted(void **state) {
+    (void)state;
+    test_tube tube;
+    const plw_stage stage = beam_stage(&tube, true);
+    const double volts = 4.3;
+    plw_stage higher = stage;
+    plw_stage lower = stage;
+    higher.supply.volts += volts;
+    lower.supply.volts -= volts;
+    const solved above = solve(&higher);
+    const solved below = solve(&lower);
+    const plw_uncertainty exact = estimate(&stage);
+    const plw_uncertainty u = estimate_on(&stage, volts);
+    assert_near_relative(u.plate_amps.supply, 0.5 * (above.rest.plate_amps - below.rest.plate_amps), 1e-9, "solved");
+    assert_near_relative(u.plate_watts.supply, 0.5 * (above.rest.plate_watts - below.rest.plate_watts), 1e-9, "solved");
+    assert_near_relative(u.speaker_watts.supply, 0.5 * (above.signal.speaker_watts - below.signal.speaker_watts), 1e-9,
+                         "solved");
+    assert_near_relative(u.plate_amps.all, hypot(exact.plate_amps.all, u.plate_amps.supply), 1e-12, "by squares");
+    assert_near(exact.plate_amps.supply, 0.0, 0.0, "a supply given exactly");
+    assert_near(estimate_on(&stage, UNKNOWN).plate_amps.supply, 0.0, 0.0, "no readings");
+    assert_int_equal(u.dominant, exact.dominant);
+    assert_int_equal(estimate_on(&stage, 30.0 * volts).dominant, PLW_BY_SUPPLY);
+    assert_string_equal(plw_deviation_cause_name(PLW_BY_MODEL), "model");
+    assert_string_equal(plw_deviation_cause_name(PLW_BY_TUBES), "tubes");
+    assert_string_equal(plw_deviation_cause_name(PLW_BY_SUPPLY), "supply");
+}
+
+/* A supply moved: every point of it by the same volts. */
+static void a_moved_supply_keeps_its_slope(void **state) {
+    (void)state;
+    const plw_reading readings[] = {{303.0, 0.0}, {271.0, 0.0271}, {241.0, 0.0611}};
+    plw_supply supplies[3];
+    supplies[0] = stiff(283.0);
+    assert_int_equal(plw_supply_source(303.0, 713.0, &supplies[1], NULL), PLW_OK);
+    assert_int_equal(plw_supply_readings(readings, 3, &supplies[2], NULL), PLW_OK);
+    for (int kind = 0; kind < 3; kind++) {
+        const plw_supply moved = plw_supply_moved(&supplies[kind], -7.3);
+        for (double amps = 0.0; amps < 0.08; amps += 0.0093) {
+            double volts[2];
+            double ohms[2];
+            plw_supply_at(&supplies[kind], amps, &volts[0], &ohms[0]);
+            plw_supply_at(&moved, amps, &volts[1], &ohms[1]);
+            assert_near_relative(volts[1], volts[0] - 7.3, 1e-12, "moved");
+            assert_near(ohms[1], ohms[0], 1e-9 * (1.0 + ohms[0]), "the same slope");
+        }
+    }
 }
 
 /* ---- beyond the data --------------------------------------------------------------------------------------------- */
@@ -259,7 +312,7 @@ static void a_stage_without_a_point_is_refused(void **state) {
     stage.cathode_resistor_ohms = UNKNOWN;
     plw_uncertainty u = {.model_percent = 2.385};
     plw_error error = {0};
-    assert_int_equal(plw_uncertainty_estimate(&stage, &s.rest, &s.signal, &u, &error), PLW_E_USAGE);
+    assert_int_equal(plw_uncertainty_estimate(&stage, &s.rest, &s.signal, 0.0, &u, &error), PLW_E_USAGE);
     assert_non_null(strstr(error.text, "cathode-resistor"));
     assert_near(u.model_percent, 2.385, 0.0, "not written unless PLW_OK");
 }
@@ -269,6 +322,7 @@ int main(void) {
         cmocka_unit_test(drawn_tubes_lie_where_it_says),          cmocka_unit_test(fixed_bias_passes_the_spread_on),
         cmocka_unit_test(a_cathode_resistor_narrows_the_spread),  cmocka_unit_test(the_larger_of_the_two_is_named),
         cmocka_unit_test(rows_left_out_count_before_rows_fitted), cmocka_unit_test(the_error_of_power_is_counted),
+        cmocka_unit_test(the_error_of_the_supply_is_counted),     cmocka_unit_test(a_moved_supply_keeps_its_slope),
         cmocka_unit_test(voltages_beyond_the_data_are_told),      cmocka_unit_test(the_borders_are_those_promised),
         cmocka_unit_test(a_stage_without_a_point_is_refused),
     };
