@@ -16,6 +16,22 @@ const char *plw_status_text(plw_status status) {
     return texts[status];
 }
 
+/* A text that was cut may end inside a letter of several bytes (UTF-8): drop what is left of it. */
+static void drop_part_of_letter(char *text) {
+    size_t start = strlen(text);
+    while (start > 0 && ((unsigned char)text[start - 1] & 0xC0U) == 0x80U) {
+        start--;
+    }
+    if (start == 0 || (unsigned char)text[start - 1] < 0xC0U) {
+        return; /* ends with a letter of one byte, or is no UTF-8 at all */
+    }
+    const unsigned char first = (unsigned char)text[start - 1];
+    const size_t letter = first >= 0xF0U ? 4 : first >= 0xE0U ? 3 : 2;
+    if (strlen(text + start - 1) < letter) {
+        text[start - 1] = '\0';
+    }
+}
+
 plw_status plw_fail(plw_error *error, plw_status status, const char *format, ...) {
     if (error != NULL) {
         va_list arguments;
@@ -23,6 +39,7 @@ plw_status plw_fail(plw_error *error, plw_status status, const char *format, ...
         error->status = status;
         vsnprintf(error->text, sizeof error->text, format, arguments);
         va_end(arguments);
+        drop_part_of_letter(error->text);
     }
     return status;
 }
@@ -38,6 +55,7 @@ plw_status plw_fail_at(plw_error *error, plw_status fallback, const char *format
     va_start(arguments, format);
     vsnprintf(error->text, sizeof error->text / 2, format, arguments);
     va_end(arguments);
+    drop_part_of_letter(error->text);
     size_t used = strlen(error->text);
     error->text[used++] = ':';
     error->text[used++] = ' ';
@@ -46,6 +64,7 @@ plw_status plw_fail_at(plw_error *error, plw_status fallback, const char *format
     const size_t kept = length < room ? length : room;
     memcpy(error->text + used, before, kept);
     error->text[used + kept] = '\0';
+    drop_part_of_letter(error->text);
     return error->status;
 }
 
@@ -62,4 +81,5 @@ void plw_error_add(plw_error *error, const char *format, ...) {
     va_start(arguments, format);
     vsnprintf(error->text + used, sizeof error->text - used, format, arguments);
     va_end(arguments);
+    drop_part_of_letter(error->text);
 }

@@ -75,6 +75,7 @@ void plw_json_put_supply(const plw_json_sink *root, const plw_supply_answer *a) 
     const plw_json_sink s = plw_json_object_in(root, "supply");
     const plw_rectifier_node *output = a->has_state ? &a->state.node[a->state.nodes - 1] : NULL;
     plw_json_put(&s, "kind", json_string(kind_name(a->supply->line.kind)));
+    plw_json_put(&s, "transformerless", json_boolean(a->supply->transformerless));
     plw_json_put_number(&s, "off_load_volts", a->off_load_volts);
     plw_json_put_number(&s, "off_load_volts_mains_high", a->off_load_high_volts);
     plw_json_put_number(&s, "loaded_volts", a->volts);

@@ -87,6 +87,7 @@ static void json_is_as_fixed(void **state) {
     json_t *supply = json_object_get(root, "supply");
     assert_string_equal(json_string_value(json_object_get(root, "schema")), "platewright/1");
     assert_string_equal(json_string_value(json_object_get(supply, "kind")), "rectifier");
+    assert_true(json_is_false(json_object_get(supply, "transformerless")));
     const struct {
         const char *name;
         double value;

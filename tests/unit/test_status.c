@@ -1,5 +1,6 @@
 /* Status codes and error texts: every code has a text, places and lines are added, nothing overflows.
  * SPDX-License-Identifier: GPL-3.0-or-later */
+#include <stdbool.h>
 #include <string.h>
 
 #include "near.h"
@@ -81,6 +82,47 @@ static void long_texts_are_cut(void **state) {
     assert_string_equal(held.guard, "untouched");
 }
 
+/* Whether the text ends with a whole letter; letters are of one to four bytes (UTF-8, RFC 3629). */
+static bool ends_whole(const char *text) {
+    for (size_t at = 0; text[at] != '\0';) {
+        const unsigned char first = (unsigned char)text[at];
+        const size_t letter = first < 0x80U ? 1 : first < 0xE0U ? 2 : first < 0xF0U ? 3 : 4;
+        for (size_t part = 1; part < letter; part++) {
+            if (((unsigned char)text[at + part] & 0xC0U) != 0x80U) {
+                return false;
+            }
+        }
+        at += letter;
+    }
+    return true;
+}
+
+static void no_letter_is_cut_in_two(void **state) {
+    (void)state;
+    const char *const letters[] = {"x", "\xC3\xA9", "\xE2\x84\xA6", "\xF0\x9D\x84\x9E"}; /* x, e acute, ohm, a clef */
+    for (size_t kind = 0; kind < sizeof letters / sizeof letters[0]; kind++) {
+        for (size_t ahead = 0; ahead < 4; ahead++) {
+            char text[2 * PLW_ERROR_TEXT_SIZE] = "";
+            plw_error error = {PLW_OK, ""};
+            memset(text, 'a', ahead);
+            for (size_t used = ahead; used + 8 < sizeof text; used = strlen(text)) {
+                memcpy(text + used, letters[kind], strlen(letters[kind]) + 1);
+            }
+            plw_fail(&error, PLW_E_DATA, "%s", text);
+            assert_true(ends_whole(error.text));
+            assert_true(strlen(error.text) + 4 >= PLW_ERROR_TEXT_SIZE);
+            plw_fail_at(&error, PLW_E_DATA, "%s", text);
+            assert_true(ends_whole(error.text));
+            plw_fail(&error, PLW_E_DATA, "at the bench");
+            plw_error_add(&error, "%s", text);
+            assert_true(ends_whole(error.text));
+            /* A short text is left whole. */
+            plw_fail(&error, PLW_E_DATA, "4.7 k%s", letters[kind]);
+            assert_int_equal(strlen(error.text), 5 + strlen(letters[kind]));
+        }
+    }
+}
+
 int main(void) {
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(every_status_has_a_text_of_its_own),
@@ -88,6 +130,7 @@ int main(void) {
         cmocka_unit_test(the_first_line_may_be_an_added_one),
         cmocka_unit_test(nowhere_to_record_is_allowed),
         cmocka_unit_test(long_texts_are_cut),
+        cmocka_unit_test(no_letter_is_cut_in_two),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
