@@ -182,15 +182,10 @@ plw_status plw_observation_number(const plw_observation_column *column, const pl
         return plw_fail(error, PLW_E_DATA, "%s: %.40s: a current into plate or screen is never negative", column->name,
                         text);
     }
-    if (!(number >= field->least && number <= field->most)) {
-        char least[PLW_FIELD_TEXT_SIZE];
-        char most[PLW_FIELD_TEXT_SIZE];
-        plw_field_format(field, field->least, least);
-        plw_field_format(field, field->most, most);
-        return plw_fail(error, PLW_E_DATA, "%s: %.40s is out of range; it must lie between %s and %s", column->name,
-                        text, least, most);
+    const plw_status status = plw_field_check_range(field, column->name, text, number, error);
+    if (status == PLW_OK) {
+        *value = number;
+        *offset = field->offset;
     }
-    *value = number;
-    *offset = field->offset;
-    return PLW_OK;
+    return status;
 }

@@ -148,16 +148,24 @@ plw_status plw_field_parse(const plw_tube_field *field, const char *text, double
     if (plw_quantity_parse(text, STYLES[field->style].unit, &read, &reason) != PLW_OK) {
         return plw_fail(error, PLW_E_DATA, "%s: %.400s", field->attribute, reason.text);
     }
-    if (!(read >= field->least && read <= field->most)) {
-        char least[PLW_FIELD_TEXT_SIZE];
-        char most[PLW_FIELD_TEXT_SIZE];
-        plw_field_format(field, field->least, least);
-        plw_field_format(field, field->most, most);
-        return plw_fail(error, PLW_E_DATA, "%s: %.60s is out of range; it must lie between %s and %s", field->attribute,
-                        text, least, most);
+    const plw_status status = plw_field_check_range(field, field->attribute, text, read, error);
+    if (status == PLW_OK) {
+        *value = read;
     }
-    *value = read;
-    return PLW_OK;
+    return status;
+}
+
+plw_status plw_field_check_range(const plw_tube_field *field, const char *name, const char *text, double value,
+                                 plw_error *error) {
+    if (value >= field->least && value <= field->most) {
+        return PLW_OK;
+    }
+    char least[PLW_FIELD_TEXT_SIZE];
+    char most[PLW_FIELD_TEXT_SIZE];
+    plw_field_format(field, field->least, least);
+    plw_field_format(field, field->most, most);
+    return plw_fail(error, PLW_E_DATA, "%s: %.60s is out of range; it must lie between %s and %s", name, text, least,
+                    most);
 }
 
 /* Lay out decimal digits that stand for 0.d1d2d3... times ten to `point`, without an exponent unless far too long. */

@@ -53,6 +53,12 @@ plw_unit plw_field_unit(const plw_tube_field *field);
  * Ret:  PLW_OK; PLW_E_DATA with a text that names the attribute and says what would be right; *value untouched then */
 plw_status plw_field_parse(const plw_tube_field *field, const char *text, double *value, plw_error *error) PLW_MUST_USE;
 
+/* See that a value lies within the range of its field.
+ * In:   name: what the field is called where the value was written; text: how the value was written
+ * Ret:  PLW_OK; PLW_E_DATA with a text that shows name, text and range */
+plw_status plw_field_check_range(const plw_tube_field *field, const char *name, const char *text, double value,
+                                 plw_error *error) PLW_MUST_USE;
+
 /* Write a value so that plw_field_parse() gives the very same double, in as few digits as will do.
  * Out:  buffer, of at least PLW_FIELD_TEXT_SIZE bytes */
 enum { PLW_FIELD_TEXT_SIZE = 48 };
