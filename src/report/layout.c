@@ -38,9 +38,13 @@ void plw_put_right(FILE *out, const char *text, int width) {
     fprintf(out, "%*s%s", width > letters ? width - letters : 0, "", text);
 }
 
-/* Print a paragraph broken at spaces, with a mark before its first line. */
 void plw_put_paragraph(FILE *out, const char *mark, const char *text) {
-    const int indent = (int)strlen(mark);
+    char indent[WIDTH + 1];
+    snprintf(indent, sizeof indent, "%*s", (int)strlen(mark), "");
+    plw_put_hanging(out, WIDTH, mark, indent, text);
+}
+
+void plw_put_hanging(FILE *out, int width, const char *mark, const char *indent, const char *text) {
     int column = fprintf(out, "%s", mark);
     bool first = true;
     while (*text != '\0') {
@@ -49,9 +53,8 @@ void plw_put_paragraph(FILE *out, const char *mark, const char *text) {
         for (size_t index = 0; index < length; index++) {
             letters += ((unsigned char)text[index] & 0xC0U) != 0x80U;
         }
-        if (!first && column + 1 + letters > WIDTH) {
-            fprintf(out, "\n%*s", indent, "");
-            column = indent;
+        if (!first && column + 1 + letters > width) {
+            column = fprintf(out, "\n%s", indent) - 1;
             first = true;
         }
         column += fprintf(out, "%s%.*s", first ? "" : " ", (int)length, text) - ((int)length - letters);

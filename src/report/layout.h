@@ -25,7 +25,10 @@ plw_cell plw_cell_ohms(double value);
 /* Print a text into a field of `width` columns, right-aligned; UTF-8 letters count once. */
 void plw_put_right(FILE *out, const char *text, int width);
 
-/* Print a paragraph broken at spaces, with a mark before its first line. */
+/* Print a paragraph broken at spaces, with a mark before its first line; further lines stand under its first word. */
 void plw_put_paragraph(FILE *out, const char *mark, const char *text);
+
+/* The same, `width` columns wide, with further lines behind an indent of their own. */
+void plw_put_hanging(FILE *out, int width, const char *mark, const char *indent, const char *text);
 
 #endif

@@ -7,26 +7,15 @@
 #include <stdlib.h>
 #include <string.h>
 
-#include "platewright/quantity.h"
+#include "report/layout.h"
 #include "report/text_buffer.h"
 #include "report/tube_text.h"
 
 enum { CELL = 40, LINE = 512, WIDTH = 80 };
 
-/* A number or quantity as text; each use in a call needs a cell of its own. */
-typedef struct {
-    char text[CELL];
-} cell;
-
-static cell quantity(double value, plw_unit unit, int digits) {
-    cell c = {""};
-    plw_quantity_format(value, unit, digits, c.text, sizeof c.text);
-    return c;
-}
-
 /* A plain number, "-" when it is not known. */
-static cell number(double value, int decimals) {
-    cell c = {"-"};
+static plw_cell number(double value, int decimals) {
+    plw_cell c = {"-"};
     if (isfinite(value)) {
         snprintf(c.text, sizeof c.text, "%.*f", decimals, value);
         char *comma = strchr(c.text, ','); /* of some locales */
@@ -38,8 +27,8 @@ static cell number(double value, int decimals) {
 }
 
 /* A number without needless zeros. */
-static cell short_number(double value) {
-    cell c = number(value, 2);
+static plw_cell short_number(double value) {
+    plw_cell c = number(value, 2);
     size_t length = strlen(c.text);
     if (strchr(c.text, '.') != NULL) {
         while (c.text[length - 1] == '0') {
@@ -57,33 +46,9 @@ static void append(char *line, const char *text) {
     snprintf(line + used, LINE - used, "%s", text);
 }
 
-/* Right-aligned; UTF-8 letters count once. */
-static void right(FILE *out, const char *text, int width) {
-    int letters = 0;
-    for (const char *at = text; *at != '\0'; at++) {
-        letters += ((unsigned char)*at & 0xC0U) != 0x80U;
-    }
-    fprintf(out, "%*s%s", width > letters ? width - letters : 0, "", text);
-}
-
-/* Words up to the width of the screen, each line indented. */
-static void paragraph(FILE *out, const char *first_indent, const char *indent, const char *text) {
-    size_t column = (size_t)fprintf(out, "%s", first_indent);
-    bool first = true;
-    while (*text != '\0') {
-        const size_t length = strcspn(text, " ");
-        if (!first && column + 1 + length > WIDTH) {
-            fprintf(out, "\n%s", indent);
-            column = strlen(indent);
-            first = true;
-        }
-        fprintf(out, "%s%.*s", first ? "" : " ", (int)length, text);
-        column += length + (first ? 0 : 1);
-        first = false;
-        text += length;
-        text += strspn(text, " ");
-    }
-    fputc('\n', out);
+/* Words up to the width of the screen; further lines begin with `indent`. */
+static void paragraph(FILE *out, const char *mark, const char *indent, const char *text) {
+    plw_put_hanging(out, WIDTH, mark, indent, text);
 }
 
 /* ---- sources ----------------------------------------------------------------------------------------------------- */
@@ -103,8 +68,8 @@ static bool same_source(const plw_provenance *one, const plw_provenance *other) 
 }
 
 /* "[3]"; the list has room for all there can be. */
-static cell cite(source_list *sources, const plw_provenance *provenance) {
-    cell c = {""};
+static plw_cell cite(source_list *sources, const plw_provenance *provenance) {
+    plw_cell c = {""};
     size_t index = 0;
     if (provenance->source == NULL) {
         return c;
@@ -170,7 +135,7 @@ static void put_heading(FILE *out, const plw_tube *tube, source_list *sources) {
 /* Number and unit without a space, so that no line break parts them. */
 static void add_limit(char line[LINE], const char *name, double value, plw_unit unit) {
     if (isfinite(value)) {
-        cell c = short_number(value);
+        plw_cell c = short_number(value);
         if (unit == PLW_UNIT_OHM) {
             plw_resistor_code(value, c.text, sizeof c.text);
         }
@@ -230,18 +195,19 @@ static void put_rectifier(FILE *out, const plw_tube *tube, source_list *sources)
     add_limit(line, "peak inverse", data->peak_inverse_volts, PLW_UNIT_VOLT);
     add_limit(line, "each plate RMS", data->plate_rms_volts, PLW_UNIT_VOLT);
     append(line, ", peak ");
-    append(line, quantity(data->peak_plate_amps, PLW_UNIT_AMPERE, 3).text);
+    append(line, plw_cell_quantity(data->peak_plate_amps, PLW_UNIT_AMPERE, 3).text);
     append(line, " each plate, output ");
-    append(line, quantity(data->output_amps, PLW_UNIT_AMPERE, 3).text);
+    append(line, plw_cell_quantity(data->output_amps, PLW_UNIT_AMPERE, 3).text);
     if (isfinite(data->most_reservoir_farads)) {
         append(line, ", reservoir up to ");
-        append(line, quantity(data->most_reservoir_farads, PLW_UNIT_FARAD, 2).text);
+        append(line, plw_cell_quantity(data->most_reservoir_farads, PLW_UNIT_FARAD, 2).text);
     }
     add_limit(line, "in each plate's path at least", data->least_supply_ohms, PLW_UNIT_OHM);
     paragraph(out, "    ", "    ", line);
     if (isfinite(data->drop_volts)) {
         fprintf(out, "    drop %s V at %s %s\n", short_number(data->drop_volts).text,
-                quantity(data->drop_amps, PLW_UNIT_AMPERE, 3).text, cite(sources, &data->drop_provenance).text);
+                plw_cell_quantity(data->drop_amps, PLW_UNIT_AMPERE, 3).text,
+                cite(sources, &data->drop_provenance).text);
     }
 }
 
@@ -256,15 +222,15 @@ static void put_rows(FILE *out, const plw_tube *tube, source_list *sources) {
     for (size_t i = 0; i < tube->rows_count; i++) {
         const plw_row *row = &tube->rows[i];
         fprintf(out, "  %-11s", plw_connection_name(row->connection));
-        right(out, short_number(row->plate_volts).text, 6);
-        right(out, short_number(row->screen_volts).text, 7);
-        right(out, short_number(row->grid_volts).text, 7);
-        right(out, short_number(row->cathode_resistor_ohms).text, 8);
-        right(out, short_number(1000.0 * row->plate_amps).text, 6);
-        right(out, short_number(1000.0 * row->screen_amps).text, 7);
-        right(out, quantity(row->load_ohms, PLW_UNIT_OHM, 3).text, 8);
-        right(out, short_number(row->power_watts).text, 6);
-        right(out, short_number(row->thd_percent).text, 6);
+        plw_put_right(out, short_number(row->plate_volts).text, 6);
+        plw_put_right(out, short_number(row->screen_volts).text, 7);
+        plw_put_right(out, short_number(row->grid_volts).text, 7);
+        plw_put_right(out, short_number(row->cathode_resistor_ohms).text, 8);
+        plw_put_right(out, short_number(1000.0 * row->plate_amps).text, 6);
+        plw_put_right(out, short_number(1000.0 * row->screen_amps).text, 7);
+        plw_put_right(out, plw_cell_quantity(row->load_ohms, PLW_UNIT_OHM, 3).text, 8);
+        plw_put_right(out, short_number(row->power_watts).text, 6);
+        plw_put_right(out, short_number(row->thd_percent).text, 6);
         fprintf(out, "  %s\n", cite(sources, &row->provenance).text);
     }
 }
@@ -308,7 +274,7 @@ void plw_put_model(FILE *out, const plw_tube *tube) {
         char part[4 * CELL];
         const double error = 100.0 * model->relative_error[i];
         snprintf(part, sizeof part, "%s%s %s%s%s%s", i == 0 ? "" : ", ", plw_law_coefficient_name(model->law.kind, i),
-                 quantity(model->law.coefficient[i], PLW_UNIT_NONE, 4).text, isfinite(error) ? " +/- " : "",
+                 plw_cell_quantity(model->law.coefficient[i], PLW_UNIT_NONE, 4).text, isfinite(error) ? " +/- " : "",
                  isfinite(error) ? number(error, 0).text : "", isfinite(error) ? " %" : "");
         append(line, part);
     }
