@@ -155,6 +155,23 @@ void plw_builder_fault_choice(plw_builder *work, const plw_stage_entry *entry) {
     plw_builder_fault(work, entry, text);
 }
 
+const plw_tube *plw_builder_tube(plw_builder *work, plw_catalogue *catalogue, const plw_stage_entry *entry,
+                                 int *variant) {
+    plw_error error = {.status = PLW_OK};
+    const plw_tube *tube = NULL;
+    const plw_status status = plw_catalogue_find(catalogue, entry->text, &tube, variant, &error);
+    if (status == PLW_OK) {
+        return tube;
+    }
+    if (status == PLW_E_NOT_FOUND) {
+        plw_builder_fault(work, entry, error.text);
+    } else { /* the tube's own file is at fault: it has its place in it */
+        plw_error_add(&work->faults, "%s", error.text);
+        work->faults.status = status;
+    }
+    return NULL;
+}
+
 /* ---- tube and its connection ------------------------------------------------------------------------------------- */
 
 static void take_tube(plw_builder *work, plw_catalogue *catalogue, plw_stage *stage) {
@@ -166,16 +183,12 @@ static void take_tube(plw_builder *work, plw_catalogue *catalogue, plw_stage *st
     if (catalogue == NULL) {
         return;
     }
-    plw_error error = {.status = PLW_OK};
-    const plw_tube *tube = NULL;
     int variant = -1;
-    const plw_status status = plw_catalogue_find(catalogue, entry->text, &tube, &variant, &error);
-    if (status == PLW_E_NOT_FOUND) {
-        plw_builder_fault(work, entry, error.text);
-    } else if (status != PLW_OK) { /* the tube's own file is at fault: it has its place in it */
-        plw_error_add(&work->faults, "%s", error.text);
-        work->faults.status = status;
-    } else if (tube->kind == PLW_KIND_RECTIFIER) {
+    const plw_tube *tube = plw_builder_tube(work, catalogue, entry, &variant);
+    if (tube == NULL) {
+        return;
+    }
+    if (tube->kind == PLW_KIND_RECTIFIER) {
         char fault[96];
         snprintf(fault, sizeof fault, "%.40s is a rectifier; name an output tube", tube->type);
         plw_builder_fault(work, entry, fault);

@@ -31,6 +31,12 @@ bool plw_builder_quantity(plw_builder *work, const plw_stage_entry *entry, doubl
 /* The value of an entry, left as it is when the entry is absent or at fault. */
 void plw_builder_take(plw_builder *work, const char *name, double *value);
 
+/* Look up the tube that an entry names.
+ * Out:  *variant, as of plw_catalogue_find()
+ * Ret:  the tube; NULL with the fault noted */
+const plw_tube *plw_builder_tube(plw_builder *work, plw_catalogue *catalogue, const plw_stage_entry *entry,
+                                 int *variant);
+
 /* The plate supply.
  * In:   catalogue: where a rectifier tube is looked up; NULL: it is taken as silicon
  *       most_amps: how far its line is to reach at least

@@ -169,16 +169,12 @@ static void take_diode(plw_builder *work, plw_catalogue *catalogue, plw_plate_su
     if (entry == NULL || strcmp(entry->text, "silicon") == 0 || catalogue == NULL) {
         return;
     }
-    plw_error error = {.status = PLW_OK};
-    const plw_tube *tube = NULL;
     int variant = -1;
-    const plw_status status = plw_catalogue_find(catalogue, entry->text, &tube, &variant, &error);
-    if (status == PLW_E_NOT_FOUND) {
-        plw_builder_fault(work, entry, error.text);
-    } else if (status != PLW_OK) {
-        plw_error_add(&work->faults, "%s", error.text);
-        work->faults.status = status;
-    } else if (tube->kind != PLW_KIND_RECTIFIER) {
+    const plw_tube *tube = plw_builder_tube(work, catalogue, entry, &variant);
+    if (tube == NULL) {
+        return;
+    }
+    if (tube->kind != PLW_KIND_RECTIFIER) {
         plw_builder_fault(work, entry, "is no rectifier; write silicon or a rectifier tube, e.g. GZ34");
     } else if (!(tube->rectifier.perveance > 0)) {
         plw_builder_fault(work, entry, "has no voltage drop in its tube file; add it there, or choose another type");
