@@ -113,7 +113,6 @@ static plw_status check(cli_work *work, const plw_meter_readings *readings, plw_
     if (status != PLW_OK) {
         return status;
     }
-    cli_extras extras;
     plw_answer answer = {.stage = &work->stage, .option = &option, .specimen = specimen, .series = work->series};
     *kept = specimen == NULL ? option.within_ratings : plw_specimen_keeps_ratings(specimen);
     if (specimen != NULL && specimen->as_built_solved) {
@@ -121,9 +120,7 @@ static plw_status check(cli_work *work, const plw_meter_readings *readings, plw_
         answer.stage = &specimen->stage;
         answer.option = &specimen->as_built;
     }
-    cli_work_complete(work, &answer, &extras, kept);
-    status = cli_work_save(work, error);
-    return status == PLW_OK ? cli_work_answer(work, &answer, error) : status;
+    return cli_work_answer(work, &answer, kept, error);
 }
 
 int cli_run_check(const cli_arguments *arguments) {
@@ -144,12 +141,5 @@ int cli_run_check(const cli_arguments *arguments) {
         status = check(&work, &readings, specimen, &kept, &error);
     }
     free(specimen);
-    if (status != PLW_OK) {
-        (void)cli_work_place(&work, &error);
-    }
-    cli_work_close(&work);
-    if (status != PLW_OK) {
-        return cli_complain(arguments->command, &error);
-    }
-    return kept ? CLI_DONE : CLI_NOT_REACHED;
+    return cli_work_end(&work, status, kept, &error);
 }

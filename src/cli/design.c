@@ -40,12 +40,9 @@ static plw_status design(cli_work *work, bool *kept, plw_error *error) {
         return status;
     }
     const plw_bias_option *option = &choice.option[choice.chosen];
-    cli_extras extras;
     plw_answer answer = {.stage = &work->stage, .choice = &choice, .option = option, .series = work->series};
     *kept = choice.aim_reached && option->within_ratings;
-    cli_work_complete(work, &answer, &extras, kept);
-    status = cli_work_save(work, error);
-    return status == PLW_OK ? cli_work_answer(work, &answer, error) : status;
+    return cli_work_answer(work, &answer, kept, error);
 }
 
 int cli_run_design(const cli_arguments *arguments) {
@@ -56,12 +53,5 @@ int cli_run_design(const cli_arguments *arguments) {
     if (status == PLW_OK) {
         status = design(&work, &kept, &error);
     }
-    if (status != PLW_OK) {
-        (void)cli_work_place(&work, &error);
-    }
-    cli_work_close(&work);
-    if (status != PLW_OK) {
-        return cli_complain(arguments->command, &error);
-    }
-    return kept ? CLI_DONE : CLI_NOT_REACHED;
+    return cli_work_end(&work, status, kept, &error);
 }

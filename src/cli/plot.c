@@ -129,16 +129,9 @@ int cli_run_plot(const cli_arguments *arguments) {
     if (status == PLW_OK) {
         status = family ? plot_family(&work, &drawing, &error) : plot(&work, &drawing, &kept, &error);
     }
-    if (status != PLW_OK) {
-        (void)cli_work_place(&work, &error);
-    }
-    cli_work_close(&work);
     cli_drawing_free(&drawing);
-    if (status != PLW_OK) {
-        return cli_complain(arguments->command, &error);
-    }
-    if (!kept) {
+    if (status == PLW_OK && !kept) {
         fputs("platewright: a rating is exceeded or the aim is not reached; platewright check tells more\n", stderr);
     }
-    return kept ? CLI_DONE : CLI_NOT_REACHED;
+    return cli_work_end(&work, status, kept, &error);
 }

@@ -205,12 +205,5 @@ int cli_run_supply(const cli_arguments *arguments) {
     if (status == PLW_OK) {
         status = supply(&work, &f, &error);
     }
-    if (status != PLW_OK) {
-        (void)cli_work_place(&work, &error);
-    }
-    cli_work_close(&work);
-    if (status != PLW_OK) {
-        return cli_complain(arguments->command, &error);
-    }
-    return f.supply.within_ratings ? CLI_DONE : CLI_NOT_REACHED;
+    return cli_work_end(&work, status, f.supply.within_ratings, &error);
 }

@@ -7,6 +7,7 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "cli/commands.h"
 #include "cli/files.h"
 #include "cli/folders.h"
 #include "platewright/text_file.h"
@@ -96,31 +97,38 @@ plw_status cli_work_build(cli_work *work, plw_error *error) {
                : status;
 }
 
-void cli_work_close(cli_work *work) {
-    plw_stage_description_free(work->description);
-    plw_catalogue_free(work->catalogue);
-}
-
 /* "load: ..." becomes "--load: ..." or "stage.xml:4:3: load: ...".  What has no point is placed only where it is the
  * option itself that asks too much, as --aim and --current do: of a stage no single quantity is at fault. */
-plw_status cli_work_place(const cli_work *work, plw_error *error) {
+static void place_error(const cli_work *work, plw_error *error) {
     char place[PLACE_SIZE];
     char text[PLW_ERROR_TEXT_SIZE];
     snprintf(text, sizeof text, "%s", error->text);
     const size_t length = strcspn(text, ":");
     const bool no_point = error->status == PLW_E_NO_POINT;
     if ((error->status != PLW_E_USAGE && !no_point) || text[length] == '\0' || length >= NAME_SIZE) {
-        return error->status;
+        return;
     }
     text[length] = '\0';
     const cli_option *option = text[0] == '-' || length < 2 ? NULL : cli_option_find(text, CLI_EVERY);
     if (no_point && (option == NULL || option->stage)) {
-        return error->status;
+        return;
     }
     if (work->description == NULL || plw_stage_described(work->description, text, place, sizeof place) == NULL) {
         snprintf(place, sizeof place, "%s%.*s", option == NULL ? "" : "--", NAME_SIZE, text);
     }
-    return plw_fail(error, error->status, "%s:%s", place, text + length + 1);
+    (void)plw_fail(error, error->status, "%s:%s", place, text + length + 1);
+}
+
+int cli_work_end(cli_work *work, plw_status status, bool kept, plw_error *error) {
+    if (status != PLW_OK) {
+        place_error(work, error);
+    }
+    plw_stage_description_free(work->description);
+    plw_catalogue_free(work->catalogue);
+    if (status != PLW_OK) {
+        return cli_complain(work->arguments->command, error);
+    }
+    return kept ? CLI_DONE : CLI_NOT_REACHED;
 }
 
 /* ---- result ------------------------------------------------------------------------------------------------------ */
@@ -199,7 +207,7 @@ void cli_work_complete(const cli_work *work, plw_answer *answer, cli_extras *ext
     }
 }
 
-plw_status cli_work_answer(const cli_work *work, const plw_answer *answer, plw_error *error) {
+static plw_status put_answer(const cli_work *work, const plw_answer *answer, plw_error *error) {
     const char *format = cli_argument(work->arguments, "format");
     char *text = NULL;
     plw_status status = PLW_OK;
@@ -211,6 +219,13 @@ plw_status cli_work_answer(const cli_work *work, const plw_answer *answer, plw_e
         status = plw_report_csv(answer, &text, error);
     }
     return status == PLW_OK ? cli_work_put(work, text, error) : status;
+}
+
+plw_status cli_work_answer(const cli_work *work, plw_answer *answer, bool *kept, plw_error *error) {
+    cli_extras extras;
+    cli_work_complete(work, answer, &extras, kept);
+    const plw_status status = cli_work_save(work, error);
+    return status == PLW_OK ? put_answer(work, answer, error) : status;
 }
 
 plw_status cli_work_unreached(const cli_work *work, plw_error *error) {

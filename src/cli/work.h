@@ -32,13 +32,18 @@ typedef struct {
 /* Read the stage file, if there is one, and lay the options over it; read aim and series; see that what is to be
  * written has its place.
  * In:   drawing: what --output stands for in plot, else NULL
- * Out:  *work, to be closed with cli_work_close(), also after an error */
+ * Out:  *work, to be closed with cli_work_end(), also after an error */
 plw_status cli_work_open(const cli_arguments *arguments, const cli_drawing *drawing, cli_work *work,
                          plw_error *error) PLW_MUST_USE;
 
 /* Make the circuit: work->stage, work->supply. */
 plw_status cli_work_build(cli_work *work, plw_error *error) PLW_MUST_USE;
-void cli_work_close(cli_work *work);
+
+/* Close the work; after an error name the option or the line in the file where the library names a quantity only, and
+ * complain.
+ * In:   status of all that was done; kept: every rating is kept and the aim reached
+ * Ret:  the exit status that stands for it */
+int cli_work_end(cli_work *work, plw_status status, bool kept, plw_error *error);
 
 /* Choose the cathode resistor and set it in work->stage and in the description.  Out: *choice */
 plw_status cli_work_choose(cli_work *work, plw_bias_choice *choice, plw_error *error) PLW_MUST_USE;
@@ -50,8 +55,9 @@ plw_status cli_work_save(const cli_work *work, plw_error *error) PLW_MUST_USE;
  * Out:  *extras, which answer then points into; *kept made false when a rating is broken there */
 void cli_work_complete(const cli_work *work, plw_answer *answer, cli_extras *extras, bool *kept);
 
-/* Render in the format that --format asks for, and put it where --output says. */
-plw_status cli_work_answer(const cli_work *work, const plw_answer *answer, plw_error *error) PLW_MUST_USE;
+/* Fill in what goes with the stage, write what --save asks for, render in the format that --format asks for, and put
+ * it where --output says.  Out: *kept made false when a rating is broken by what goes with the stage */
+plw_status cli_work_answer(const cli_work *work, plw_answer *answer, bool *kept, plw_error *error) PLW_MUST_USE;
 
 /* No resistor serves: where --format asks for JSON, that is the answer; else it stays an error.
  * In:   error: why
@@ -60,9 +66,6 @@ plw_status cli_work_unreached(const cli_work *work, plw_error *error) PLW_MUST_U
 
 /* The same for a text already rendered.  In: text, which is given up */
 plw_status cli_work_put(const cli_work *work, char *text, plw_error *error) PLW_MUST_USE;
-
-/* Name the option or the line in the file where the library names a quantity only.  Ret: the status in error */
-plw_status cli_work_place(const cli_work *work, plw_error *error);
 
 /* Put a text on the standard output, or in a file when path is neither NULL nor "-". */
 plw_status cli_put(const char *text, const char *path, plw_error *error) PLW_MUST_USE;
