@@ -14,6 +14,16 @@ double plw_circuit_cathode_volts(const plw_circuit *circuit, const double amps[P
     return circuit->cathode_ohms * (amps[PLW_OF_PLATE] + amps[PLW_OF_SCREEN]);
 }
 
+double plw_circuit_highest_supply_volts(const plw_stage *stage) {
+    double volts;
+    double ohms;
+    double least_amps;
+    double most_amps;
+    plw_supply_range(&stage->supply, &least_amps, &most_amps);
+    plw_supply_at(&stage->supply, least_amps, &volts, &ohms);
+    return volts;
+}
+
 /* What capacitors and the transformer keep steady, at given averages. */
 static void average_volts(const void *context, const double average_amps[PLW_FLOWS], double volts[PLW_ELECTRODES],
                           double by_average[PLW_ELECTRODES][PLW_FLOWS]) {

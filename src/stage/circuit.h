@@ -26,6 +26,9 @@ void plw_circuit_prepare(const plw_stage *stage, plw_circuit *circuit);
 /* Supply voltage, and current, all tubes together and the rest of the amplifier, at the averages of one tube. */
 double plw_circuit_supply_amps(const plw_circuit *circuit, const double average_amps[PLW_FLOWS]);
 
+/* The most that the supply is known to give: at the least current for which it speaks. */
+double plw_circuit_highest_supply_volts(const plw_stage *stage);
+
 /* Volts of the cathode to chassis. */
 double plw_circuit_cathode_volts(const plw_circuit *circuit, const double amps[PLW_FLOWS]);
 

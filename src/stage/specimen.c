@@ -120,13 +120,7 @@ static void measured_stage(const plw_stage *stage, const plw_circuit *circuit, p
 
 /* Plate and screen cannot stand above what feeds them; without a reading of the supply, the one described counts. */
 static plw_status compare_with_supply(const plw_stage *stage, const plw_meter_readings *r, plw_error *error) {
-    double volts;
-    double ohms;
-    double least;
-    double most;
-    plw_supply_range(&stage->supply, &least, &most);
-    plw_supply_at(&stage->supply, least, &volts, &ohms);
-    const double supply = isfinite(r->supply_volts) ? r->supply_volts : volts;
+    const double supply = isfinite(r->supply_volts) ? r->supply_volts : plw_circuit_highest_supply_volts(stage);
     const double screen_supply = isfinite(stage->screen_supply_volts) ? stage->screen_supply_volts : supply;
     const bool plate = r->plate_volts > 1.05 * supply;
     if (plate || r->screen_volts > 1.05 * screen_supply) {

@@ -5,6 +5,7 @@
 #include <math.h>
 
 #include "platewright/quantity.h"
+#include "stage/circuit.h"
 
 #define UNKNOWN ((double)NAN)
 #define LEAST_LOAD_OHMS 50.0 /* what is less is a speaker, not its reflection at the plate */
@@ -176,12 +177,7 @@ plw_status plw_stage_validate(const plw_stage *stage, bool bias_wanted, plw_erro
                           ranges[index].unit, error);
     }
     if (status == PLW_OK) {
-        double volts;
-        double ohms;
-        double least_amps;
-        double most_amps;
-        plw_supply_range(&stage->supply, &least_amps, &most_amps);
-        plw_supply_at(&stage->supply, least_amps, &volts, &ohms);
+        const double volts = plw_circuit_highest_supply_volts(stage);
         status = in_range("supply", volts, 10.0, 5000.0, PLW_UNIT_VOLT, error);
     }
     return status;
