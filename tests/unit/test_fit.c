@@ -77,6 +77,13 @@ static plw_law triode_law(void) {
     return (plw_law){.kind = PLW_LAW_TRIODE, .coefficient = {8.3, 1.5, 1450.0, 52.0, 300.0, 0.6}};
 }
 
+/* The usual triode, its noise from a seed.  Ret: where the random numbers go on */
+static uint64_t make_usual(made_triode *made, double noise, uint64_t seed) {
+    const plw_law law = triode_law();
+    make_triode(made, &law, noise, &seed);
+    return seed;
+}
+
 static void fit_or_fail(const plw_tube *tube, bool leave_out, plw_fit *fit) {
     plw_error error = {.status = PLW_OK};
     if (plw_fit_tube(tube, leave_out, fit, &error) != PLW_OK) {
@@ -104,12 +111,10 @@ static void test_exact_data_give_the_coefficients_back(void **state) {
     (void)state;
     static plw_fit fit;
     made_triode made;
-    uint64_t seed = 1;
-    const plw_law law = triode_law();
-    make_triode(&made, &law, 0.0, &seed);
+    make_usual(&made, 0.0, 1);
     fit_or_fail(&made.tube, false, &fit);
     /* What is expected beforehand draws a little: mu at the middle of its wide expectation would be 20. */
-    assert_true(apart(&fit.model.law, &law, &fit) < 0.1);
+    assert_true(apart(&fit.model.law, &made.truth, &fit) < 0.1);
     assert_true(fit.chi_squared < 0.02);
     assert_true(fit.settled);
     assert_int_equal(fit.contradictions, 0);
@@ -165,9 +170,7 @@ static void test_errors_grow_with_the_scatter(void **state) {
     static plw_fit good;
     static plw_fit bad;
     made_triode made;
-    uint64_t seed = 11;
-    const plw_law law = triode_law();
-    make_triode(&made, &law, 0.0, &seed);
+    make_usual(&made, 0.0, 11);
     fit_or_fail(&made.tube, false, &good);
     assert_near(good.error_scale, 1.0, 0.0, "nothing is off");
     assert_false(plw_fit_is_gross(&good));
@@ -178,8 +181,8 @@ static void test_errors_grow_with_the_scatter(void **state) {
     assert_true(bad.error_scale > 1.2);
     assert_true(bad.error_scale * bad.error_scale > 0.999 * per_freedom); /* with what is expected beforehand */
     assert_true(bad.error_scale * bad.error_scale < 1.3 * per_freedom);
-    for (size_t i = 0; i < plw_law_coefficient_count(law.kind); i++) {
-        const size_t at = i * (plw_law_coefficient_count(law.kind) + 1);
+    for (size_t i = 0; i < plw_law_coefficient_count(PLW_LAW_TRIODE); i++) {
+        const size_t at = i * (plw_law_coefficient_count(PLW_LAW_TRIODE) + 1);
         const double wider = sqrt(bad.covariance[at] / good.covariance[at]) / bad.error_scale;
         assert_true(wider > 0.5 && wider < 2.0); /* the place is another, so are the slopes there */
     }
@@ -194,9 +197,7 @@ static void test_several_starts_end_alike(void **state) {
     (void)state;
     static plw_fit fit;
     made_triode made;
-    uint64_t seed = 77;
-    const plw_law law = triode_law();
-    make_triode(&made, &law, 1.0, &seed);
+    uint64_t seed = make_usual(&made, 1.0, 77);
     fit_or_fail(&made.tube, false, &fit);
     for (int start = 0; start < 20; start++) {
         plw_law from = fit.model.law;
@@ -217,9 +218,7 @@ static void test_order_does_not_matter(void **state) {
     static plw_fit fit;
     static plw_fit again;
     made_triode made;
-    uint64_t seed = 5;
-    const plw_law law = triode_law();
-    make_triode(&made, &law, 1.0, &seed);
+    uint64_t seed = make_usual(&made, 1.0, 5);
     fit_or_fail(&made.tube, false, &fit);
     for (size_t i = POINTS - 1; i > 0; i--) {
         const size_t other = (size_t)(uniform(&seed) * (double)(i + 1));
@@ -237,9 +236,7 @@ static void test_stated_uncertainty_weighs(void **state) {
     static plw_fit fit;
     static plw_fit wide;
     made_triode made;
-    uint64_t seed = 9;
-    const plw_law law = triode_law();
-    make_triode(&made, &law, 1.0, &seed);
+    uint64_t seed = make_usual(&made, 1.0, 9);
     made.tube.points_count = CURVES * ON_CURVE;
     fit_or_fail(&made.tube, false, &fit);
     for (int i = 0; i < POINTS; i++) {
@@ -250,7 +247,7 @@ static void test_stated_uncertainty_weighs(void **state) {
     assert_true(wide.model.relative_error[0] > 1.5 * fit.model.relative_error[0]);
     /* Two lines that differ: the fit goes with the one that is stated to be better. */
     for (int better = 0; better < 2; better++) {
-        make_triode(&made, &law, 0.0, &seed);
+        seed = make_usual(&made, 0.0, seed);
         for (int i = 0; i < POINTS; i++) {
             made.point[i].plate_amps *= i % 2 == 0 ? 1.2 : 1.0;
             made.point[i].uncertainty_percent = i % 2 == better ? 0.5 : 40.0;
@@ -342,9 +339,7 @@ static void test_an_outlier_is_named(void **state) {
     (void)state;
     static plw_fit fit;
     made_triode made;
-    uint64_t seed = 31;
-    const plw_law law = triode_law();
-    make_triode(&made, &law, 1.0, &seed);
+    make_usual(&made, 1.0, 31);
     fit_or_fail(&made.tube, true, &fit);
     assert_int_equal(fit.outliers, 0);
     made.point[13].plate_amps *= 1.6;
@@ -392,41 +387,39 @@ static plw_row row_of(double grid_volts, double plate_amps) {
     return row;
 }
 
+static void expect_contradictions(const plw_tube *tube, size_t wanted, const char *which, plw_fit *fit) {
+    fit_or_fail(tube, false, fit);
+    if (fit->contradictions != wanted) {
+        fail_msg("%s: %zu contradictions, want %zu", which, fit->contradictions, wanted);
+    }
+}
+
 static void test_contradictions_are_named(void **state) {
     (void)state;
     static plw_fit fit;
     plw_row rows[2] = {row_of(-45.0, 0.060), row_of(-45.0, 0.063)};
     const plw_tube tube = {.type = made_type, .kind = PLW_KIND_TRIODE, .rows = rows, .rows_count = 2};
-    fit_or_fail(&tube, false, &fit);
-    assert_int_equal(fit.contradictions, 0); /* five percent: rounding and editions */
+    expect_contradictions(&tube, 0, "five percent: rounding and editions", &fit);
     rows[1].plate_amps = 0.078;
-    fit_or_fail(&tube, false, &fit);
-    assert_int_equal(fit.contradictions, 1);
+    expect_contradictions(&tube, 1, "a quarter more at the same conditions", &fit);
     const plw_fit_contradiction *c = &fit.contradiction[0];
     assert_true(c->is_row[0] && c->is_row[1] && c->index[0] == 0 && c->index[1] == 1 && c->same_conditions);
     assert_string_equal(c->quantity, "plate current");
     assert_true(c->printed[0] == 0.060 && c->printed[1] == 0.078);
     assert_near_relative(c->apart, log(0.078 / 0.060) / (0.025 * sqrt(2.0)), 1e-9, "2.5 percent each");
-    /* A wider stated uncertainty reconciles them. */
     rows[0].uncertainty_percent = 15.0;
-    fit_or_fail(&tube, false, &fit);
-    assert_int_equal(fit.contradictions, 0);
-    /* Less current at a grid nearer to zero. */
+    expect_contradictions(&tube, 0, "a wider stated uncertainty reconciles them", &fit);
     rows[0] = row_of(-40.0, 0.052);
     rows[1] = row_of(-45.0, 0.060);
-    fit_or_fail(&tube, false, &fit);
-    assert_int_equal(fit.contradictions, 1);
+    expect_contradictions(&tube, 1, "less current at a grid nearer to zero", &fit);
     assert_false(fit.contradiction[0].same_conditions);
     assert_int_equal(fit.contradiction[0].index[0], 0);
-    /* More current there is as it should be; other constants at one place are not. */
     rows[1].plate_amps = 0.040;
     rows[1].gm_siemens *= 2.0;
-    fit_or_fail(&tube, false, &fit);
-    assert_int_equal(fit.contradictions, 0);
+    expect_contradictions(&tube, 0, "more current there is as it should be", &fit);
     rows[1].grid_volts = -40.1;
     rows[1].plate_amps = 0.052;
-    fit_or_fail(&tube, false, &fit);
-    assert_int_equal(fit.contradictions, 1);
+    expect_contradictions(&tube, 1, "other constants at one place are not", &fit);
     assert_string_equal(fit.contradiction[0].quantity, "gm");
 }
 
