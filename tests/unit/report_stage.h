@@ -122,4 +122,18 @@ static inline void stage_solve(solved_stage *s) {
         .stage = &s->stage, .choice = &s->choice, .option = &s->choice.option[s->choice.chosen], .series = PLW_E24};
 }
 
+/* One tube, as stage_begin() has it, solved. */
+static inline void solve_one(solved_stage *s, plw_law_kind kind) {
+    stage_begin(s, kind);
+    stage_solve(s);
+}
+
+/* Pentodes in parallel on a load, solved. */
+static inline void solve_pentodes(solved_stage *s, unsigned tubes, double load_ohms) {
+    stage_begin(s, PLW_LAW_PENTODE);
+    s->stage.parallel = tubes;
+    s->stage.load_ohms = load_ohms;
+    stage_solve(s);
+}
+
 #endif

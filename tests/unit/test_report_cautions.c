@@ -20,8 +20,7 @@ static void standing_cautions_are_always_there(void **state) {
     (void)state;
     static solved_stage s;
     for (int i = 0; i < 2; i++) {
-        stage_begin(&s, i == 0 ? PLW_LAW_PENTODE : PLW_LAW_TRIODE);
-        stage_solve(&s);
+        solve_one(&s, i == 0 ? PLW_LAW_PENTODE : PLW_LAW_TRIODE);
         const char *const words[] = {"discharge",    "verify",      "one hand", "insulated",
                                      "live chassis", "earth",       "Fuse",     "unloaded",
                                      "high mains",   "Local codes", "licensed", "60 V before"};
@@ -87,8 +86,7 @@ static void conditions_have_their_cautions(void **state) {
 static void doubtful_data_have_their_cautions(void **state) {
     (void)state;
     static solved_stage s;
-    stage_begin(&s, PLW_LAW_PENTODE);
-    stage_solve(&s);
+    solve_one(&s, PLW_LAW_PENTODE);
     s.tube.model.left_out_error.plate_current_percent = 8.3;
     assert_true(warned(&s.answer, "misses printed plate currents by 8.3 %"));
     s.tube.model.left_out_error.plate_current_percent = (double)NAN;
@@ -111,8 +109,7 @@ static void doubtful_data_have_their_cautions(void **state) {
 static void cautions_are_cut_between_characters(void **state) {
     (void)state;
     static solved_stage s;
-    stage_begin(&s, PLW_LAW_PENTODE);
-    stage_solve(&s);
+    solve_one(&s, PLW_LAW_PENTODE);
     s.choice.aim_reached = false;
     size_t used = 0;
     while (used + 4 < sizeof s.choice.obstacle) {

@@ -40,8 +40,7 @@ static void column_of(const char *csv, const char *name, size_t row, char *value
 static void csv_has_a_line_for_each_resistor(void **state) {
     (void)state;
     static solved_stage s;
-    stage_begin(&s, PLW_LAW_TRIODE);
-    stage_solve(&s);
+    solve_one(&s, PLW_LAW_TRIODE);
     char *text = NULL;
     plw_error error = {0};
     assert_int_equal(plw_report_csv(&s.answer, &text, &error), PLW_OK);
@@ -87,8 +86,7 @@ static void csv_has_a_line_for_each_resistor(void **state) {
 static void the_uncertainty_is_told(void **state) {
     (void)state;
     static solved_stage s;
-    stage_begin(&s, PLW_LAW_TRIODE);
-    stage_solve(&s);
+    solve_one(&s, PLW_LAW_TRIODE);
     plw_uncertainty u;
     plw_error error = {0};
     const plw_bias_option *option = s.answer.option;

@@ -8,8 +8,7 @@
 static void tube_and_bias_are_told(void **state) {
     (void)state;
     static solved_stage s;
-    stage_begin(&s, PLW_LAW_PENTODE);
-    stage_solve(&s);
+    solve_one(&s, PLW_LAW_PENTODE);
     json_t *root = parsed(&s.answer);
     assert_text_at(root, "schema", "platewright/1");
     assert_text_at(root, "tube.type", "PX-84");
@@ -34,10 +33,7 @@ static void tube_and_bias_are_told(void **state) {
 static void figures_are_those_solved(void **state) {
     (void)state;
     static solved_stage s;
-    stage_begin(&s, PLW_LAW_PENTODE);
-    s.stage.parallel = 3;
-    s.stage.load_ohms = 1700;
-    stage_solve(&s);
+    solve_pentodes(&s, 3, 1700);
     json_t *root = parsed(&s.answer);
     const plw_quiescent *rest = &s.answer.option->quiescent;
     const plw_signal *signal = &s.answer.option->signal;
@@ -187,8 +183,7 @@ static void a_tube_on_the_bench_is_told(void **state) {
     (void)state;
     static solved_stage s;
     static plw_specimen specimen;
-    stage_begin(&s, PLW_LAW_PENTODE);
-    stage_solve(&s);
+    solve_one(&s, PLW_LAW_PENTODE);
     const double nan = (double)NAN;
     const plw_quiescent *rest = &s.answer.option->quiescent;
     const plw_meter_readings readings = {nan, nan, nan, 0.93 * rest->cathode_volts};
@@ -241,10 +236,8 @@ static void odd_names_survive(void **state) {
 static void the_same_answer_gives_the_same_bytes(void **state) {
     (void)state;
     static solved_stage s, again;
-    stage_begin(&s, PLW_LAW_PENTODE);
-    stage_solve(&s);
-    stage_begin(&again, PLW_LAW_PENTODE);
-    stage_solve(&again);
+    solve_one(&s, PLW_LAW_PENTODE);
+    solve_one(&again, PLW_LAW_PENTODE);
     char *one = json_of(&s.answer);
     char *two = json_of(&again.answer);
     assert_string_equal(one, two);

@@ -22,6 +22,11 @@ static char *script_of(const plw_answer *answer, plw_plot_kind kind, plw_plot_fo
     return text;
 }
 
+/* What most of the tests look at: the load line, as an SVG picture. */
+static char *load_line_of(const solved_stage *s) {
+    return script_of(&s->answer, PLW_PLOT_LOAD_LINE, PLW_PLOT_SVG, "x.svg");
+}
+
 static char *family_of(const plw_tube *tube, plw_connection connection, plw_plot_format format) {
     plw_error error = {0};
     char *text = NULL;
@@ -183,7 +188,7 @@ static void the_load_line_is_ohms_law(void **state) {
     s.stage.load_ohms = 2385;
     s.stage.primary_ohms = 137;
     stage_solve(&s);
-    char *script = script_of(&s.answer, PLW_PLOT_LOAD_LINE, PLW_PLOT_SVG, "x.svg");
+    char *script = load_line_of(&s);
     const plw_quiescent *rest = &s.answer.option->quiescent;
     double load[2][2];
     double copper[2][2];
@@ -208,9 +213,8 @@ static void the_load_line_is_ohms_law(void **state) {
 static void the_swing_and_the_limits_are_drawn(void **state) {
     (void)state;
     static solved_stage s;
-    stage_begin(&s, PLW_LAW_PENTODE);
-    stage_solve(&s);
-    char *script = script_of(&s.answer, PLW_PLOT_LOAD_LINE, PLW_PLOT_SVG, "x.svg");
+    solve_one(&s, PLW_LAW_PENTODE);
+    char *script = load_line_of(&s);
     double swing[PLW_PATH_POINTS + 1][2];
     const plw_signal *signal = &s.answer.option->signal;
     assert_int_equal(block_points(script, "swing", swing, PLW_PATH_POINTS + 1), PLW_PATH_POINTS);
@@ -243,7 +247,7 @@ static void curves_keep_inside_the_frame(void **state) {
         stage_begin(&s, i < 4 ? PLW_LAW_PENTODE : PLW_LAW_TRIODE);
         s.stage.load_ohms = loads[i % 4];
         stage_solve(&s);
-        char *script = script_of(&s.answer, PLW_PLOT_LOAD_LINE, PLW_PLOT_SVG, "x.svg");
+        char *script = load_line_of(&s);
         const char *x_range = strstr(script, "set xrange [0:");
         const char *y_range = strstr(script, "set yrange [0:");
         assert_non_null(x_range);
@@ -267,10 +271,7 @@ static void curves_keep_inside_the_frame(void **state) {
 static void the_resistor_line_meets_the_cathode_current(void **state) {
     (void)state;
     static solved_stage s;
-    stage_begin(&s, PLW_LAW_PENTODE);
-    s.stage.parallel = 2;
-    s.stage.load_ohms = 2385;
-    stage_solve(&s);
+    solve_pentodes(&s, 2, 2385);
     const plw_quiescent *rest = &s.answer.option->quiescent;
     char *script = script_of(&s.answer, PLW_PLOT_TRANSFER, PLW_PLOT_SVG, "x.svg");
     double bias[2][2];
@@ -312,8 +313,7 @@ static void the_resistor_line_meets_the_cathode_current(void **state) {
 static void without_a_cycle_the_rest_is_still_drawn(void **state) {
     (void)state;
     static solved_stage s;
-    stage_begin(&s, PLW_LAW_TRIODE);
-    stage_solve(&s);
+    solve_one(&s, PLW_LAW_TRIODE);
     static plw_bias_option option;
     option = *s.answer.option;
     for (size_t i = 0; i < PLW_PATH_POINTS; i++) {
@@ -356,8 +356,7 @@ static void printed_rows_are_marked_with_their_misses(void **state) {
 static void what_cannot_be_drawn_is_refused(void **state) {
     (void)state;
     static solved_stage s;
-    stage_begin(&s, PLW_LAW_PENTODE);
-    stage_solve(&s);
+    solve_one(&s, PLW_LAW_PENTODE);
     char *text = NULL;
     plw_error error = {0};
     assert_int_equal(plw_plot_script(&s.answer, PLW_PLOT_COUNT, PLW_PLOT_SVG, "x", &text, &error), PLW_E_USAGE);
@@ -378,8 +377,7 @@ static void what_cannot_be_drawn_is_refused(void **state) {
 static void output_keeps_its_last_part_only(void **state) {
     (void)state;
     static solved_stage s;
-    stage_begin(&s, PLW_LAW_PENTODE);
-    stage_solve(&s);
+    solve_one(&s, PLW_LAW_PENTODE);
     const char *const cases[][2] = {
         {"/tmp/some where/o'ut.svg", "\nset output 'o'.\"'\".'ut.svg'\n"},
         {"C:\\bench\\out.svg", "\nset output 'out.svg'\n"},
@@ -403,10 +401,8 @@ static void output_keeps_its_last_part_only(void **state) {
 static void the_same_answer_gives_the_same_bytes(void **state) {
     (void)state;
     static solved_stage s, again;
-    stage_begin(&s, PLW_LAW_PENTODE);
-    stage_solve(&s);
-    stage_begin(&again, PLW_LAW_PENTODE);
-    stage_solve(&again);
+    solve_one(&s, PLW_LAW_PENTODE);
+    solve_one(&again, PLW_LAW_PENTODE);
     for (int kind = 0; kind < PLW_PLOT_COUNT; kind++) {
         char *one = script_of(&s.answer, (plw_plot_kind)kind, PLW_PLOT_PNG, "x.png");
         char *two = script_of(&again.answer, (plw_plot_kind)kind, PLW_PLOT_PNG, "x.png");
@@ -428,8 +424,7 @@ static void gnuplot_draws_every_picture(void **state) {
     const plw_plot_format formats[] = {PLW_PLOT_SVG, PLW_PLOT_PNG, PLW_PLOT_PDF};
     const char *const starts[] = {"<?xml", "\x89PNG", "%PDF"};
     for (size_t i = 0; i < 6; i++) {
-        stage_begin(&s, i < 3 ? PLW_LAW_PENTODE : PLW_LAW_TRIODE);
-        stage_solve(&s);
+        solve_one(&s, i < 3 ? PLW_LAW_PENTODE : PLW_LAW_TRIODE);
         for (int kind = 0; kind <= PLW_PLOT_COUNT; kind++) {
             char *script = kind < PLW_PLOT_COUNT
                                ? script_of(&s.answer, (plw_plot_kind)kind, formats[i % 3], "family.out")

@@ -8,8 +8,7 @@
 static void the_aim_is_told(void **state) {
     (void)state;
     static solved_stage s;
-    stage_begin(&s, PLW_LAW_PENTODE);
-    stage_solve(&s);
+    solve_one(&s, PLW_LAW_PENTODE);
     s.choice.aim.value = 83.7;
     s.answer.aim_before_percent = 90.0;
     json_t *root = parsed(&s.answer);
@@ -108,8 +107,7 @@ static void a_triode_has_no_screen_current(void **state) {
     (void)state;
     static solved_stage s;
     static plw_specimen specimen;
-    stage_begin(&s, PLW_LAW_TRIODE);
-    stage_solve(&s);
+    solve_one(&s, PLW_LAW_TRIODE);
     const plw_quiescent *rest = &s.answer.option->quiescent;
     const plw_meter_readings readings = {(double)NAN, (double)NAN, (double)NAN, 1.0238 * rest->cathode_volts};
     const plw_aim aim = {PLW_AIM_DISSIPATION, 87.0};
