@@ -67,10 +67,24 @@ static void by_cosine_series(characteristic i, double b[PLW_HARMONICS + 1]) {
     plw_cosine_series(sample, b);
 }
 
-static void compare(const double *got, const double *want, int count, const char *source) {
+/* A way to the harmonics of a characteristic: b[0] the mean, b[1] the fundamental. */
+typedef void (*method)(characteristic i, double *b);
+
+static void expect(method analyse, characteristic i, const double *want, int count, const char *source) {
+    double got[PLW_HARMONICS + 1];
+    analyse(i, got);
     for (int order = 0; order < count; order++) {
         assert_near(got[order], want[order], ROUNDING, source);
     }
+}
+
+/* The cosine series of one harmonic alone. */
+static void series_of_pure(double amplitude, int pure, double harmonic[PLW_HARMONICS + 1]) {
+    double sample[PLW_CYCLE_INSTANTS];
+    for (int index = 0; index < PLW_CYCLE_INSTANTS; index++) {
+        sample[index] = amplitude * cos(pure * PI * index / PLW_CYCLE_STEPS);
+    }
+    plw_cosine_series(sample, harmonic);
 }
 
 /* ---- the vectors ------------------------------------------------------------------------------------------------- */
@@ -79,17 +93,13 @@ static void every_method_returns_the_fourth_order_vector(void **state) {
     (void)state;
     static const double want[] = {63.75, 42.0, 4.0, -1.0, 0.25, 0, 0, 0, 0, 0, 0};
     static const double want_three[] = {64.0, 41.0, 4.0};
-    double series[PLW_HARMONICS + 1], three[3], five[5], equal[5], eleven[11];
+    double series[PLW_HARMONICS + 1];
     by_cosine_series(fourth_order, series);
-    compare(series, want, 11, EXACT);
-    three_point(fourth_order, three);
-    compare(three, want_three, 3, THREE_POINT);
-    five_selected(fourth_order, five);
-    compare(five, series, 5, FIVE_POINT);
-    espley(fourth_order, equal);
-    compare(equal, series, 5, ESPLEY);
-    eleven_selected(fourth_order, eleven);
-    compare(eleven, series, 11, CHAFFEE);
+    expect(by_cosine_series, fourth_order, want, 11, EXACT);
+    expect(three_point, fourth_order, want_three, 3, THREE_POINT);
+    expect(five_selected, fourth_order, series, 5, FIVE_POINT);
+    expect(espley, fourth_order, series, 5, ESPLEY);
+    expect(eleven_selected, fourth_order, series, 11, CHAFFEE);
 }
 
 static void few_ordinates_alias_and_the_series_does_not(void **state) {
@@ -97,46 +107,34 @@ static void few_ordinates_alias_and_the_series_does_not(void **state) {
     static const double want[] = {63.5, 43.265625, 3.625, -0.334375, 0.1, 0.159375, -0.025, 0.009375, 0, 0, 0};
     static const double want_five[] = {63.5, 43.275, 3.6, -0.175, 0.1};
     static const double want_espley[] = {63.475, 43.434375, 3.6, -0.334375, 0.125};
-    double series[PLW_HARMONICS + 1], five[5], equal[5], eleven[11];
+    double series[PLW_HARMONICS + 1];
     by_cosine_series(seventh_order, series);
-    compare(series, want, 11, EXACT);
-    five_selected(seventh_order, five);
-    compare(five, want_five, 5, FIVE_POINT);
-    espley(seventh_order, equal);
-    compare(equal, want_espley, 5, ESPLEY);
-    eleven_selected(seventh_order, eleven);
-    compare(eleven, series, 11, CHAFFEE);
+    expect(by_cosine_series, seventh_order, want, 11, EXACT);
+    expect(five_selected, seventh_order, want_five, 5, FIVE_POINT);
+    expect(espley, seventh_order, want_espley, 5, ESPLEY);
+    expect(eleven_selected, seventh_order, series, 11, CHAFFEE);
 }
 
 /* Up to the (2 STEPS - 10)th harmonic nothing is folded back into the ten; the (2 STEPS - 7)th comes back as the 7th.
  */
 static void aliasing_begins_where_the_header_says(void **state) {
     (void)state;
-    double sample[PLW_CYCLE_INSTANTS], harmonic[PLW_HARMONICS + 1];
+    double harmonic[PLW_HARMONICS + 1];
     for (int pure = PLW_HARMONICS + 1; pure < 2 * PLW_CYCLE_STEPS - PLW_HARMONICS; pure++) {
-        for (int index = 0; index < PLW_CYCLE_INSTANTS; index++) {
-            sample[index] = 2.385 * cos(pure * PI * index / PLW_CYCLE_STEPS);
-        }
-        plw_cosine_series(sample, harmonic);
+        series_of_pure(2.385, pure, harmonic);
         for (int order = 0; order <= PLW_HARMONICS; order++) {
             assert_near(harmonic[order], 0.0, ROUNDING, "orthogonality of cosines at 2 STEPS phases");
         }
     }
-    for (int index = 0; index < PLW_CYCLE_INSTANTS; index++) {
-        sample[index] = 2.385 * cos((2 * PLW_CYCLE_STEPS - 7) * PI * index / PLW_CYCLE_STEPS);
-    }
-    plw_cosine_series(sample, harmonic);
+    series_of_pure(2.385, 2 * PLW_CYCLE_STEPS - 7, harmonic);
     assert_near(harmonic[7], 2.385, ROUNDING, "2 STEPS - (2 STEPS - 7) = 7");
 }
 
 static void each_harmonic_comes_back_alone(void **state) {
     (void)state;
     for (int pure = 0; pure <= PLW_HARMONICS; pure++) {
-        double sample[PLW_CYCLE_INSTANTS], harmonic[PLW_HARMONICS + 1];
-        for (int index = 0; index < PLW_CYCLE_INSTANTS; index++) {
-            sample[index] = -2.385 * cos(pure * PI * index / PLW_CYCLE_STEPS);
-        }
-        plw_cosine_series(sample, harmonic);
+        double harmonic[PLW_HARMONICS + 1];
+        series_of_pure(-2.385, pure, harmonic);
         for (int order = 0; order <= PLW_HARMONICS; order++) {
             assert_near(harmonic[order], order == pure ? -2.385 : 0.0, ROUNDING, "orthogonality of cosines");
         }
