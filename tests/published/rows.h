@@ -42,4 +42,19 @@ static inline plw_catalogue *open_tubedata(void) {
     return catalogue;
 }
 
+/* Visit every type that has a grid. */
+static inline void visit_tubes(void (*visit)(const plw_tube *tube, void *context), void *context) {
+    plw_catalogue *catalogue = open_tubedata();
+    const plw_tube *const *tubes;
+    size_t count;
+    plw_error error = {0};
+    assert_int_equal(plw_catalogue_all(catalogue, &tubes, &count, &error), PLW_OK);
+    for (size_t index = 0; index < count; index++) {
+        if (tubes[index]->kind != PLW_KIND_RECTIFIER) {
+            visit(tubes[index], context);
+        }
+    }
+    plw_catalogue_free(catalogue);
+}
+
 #endif

@@ -19,30 +19,28 @@ static int compare_laws(const plw_tube *tube, const plw_model *again) {
     return failures;
 }
 
+typedef struct {
+    int fitted, failures;
+} tally;
+
+static void fit_again(const plw_tube *tube, void *context) {
+    static plw_fit fit;
+    tally *count = context;
+    plw_error error = {0};
+    if (plw_fit_tube(tube, false, &fit, &error) != PLW_OK) {
+        fail_msg("%s: %s", tube->type, error.text);
+    }
+    count->failures += compare_laws(tube, &fit.model);
+    count->fitted++;
+}
+
 static void test_committed_coefficients(void **state) {
     (void)state;
-    plw_catalogue *catalogue = open_tubedata();
-    const plw_tube *const *tubes;
-    size_t count;
-    plw_error error = {0};
-    assert_int_equal(plw_catalogue_all(catalogue, &tubes, &count, &error), PLW_OK);
-    int failures = 0;
-    int fitted = 0;
-    static plw_fit fit;
-    for (size_t index = 0; index < count; index++) {
-        if (tubes[index]->kind == PLW_KIND_RECTIFIER) {
-            continue;
-        }
-        if (plw_fit_tube(tubes[index], false, &fit, &error) != PLW_OK) {
-            fail_msg("%s: %s", tubes[index]->type, error.text);
-        }
-        failures += compare_laws(tubes[index], &fit.model);
-        fitted++;
-    }
-    plw_catalogue_free(catalogue);
-    print_message("%d types fitted again\n", fitted);
-    assert_true(fitted >= 45);
-    assert_int_equal(failures, 0);
+    tally count = {0, 0};
+    visit_tubes(fit_again, &count);
+    print_message("%d types fitted again\n", count.fitted);
+    assert_true(count.fitted >= 45);
+    assert_int_equal(count.failures, 0);
 }
 
 int main(void) {
