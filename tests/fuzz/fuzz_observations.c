@@ -6,8 +6,8 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "../bare_tube.h"
 #include "platewright/observation_file.h"
-#include "platewright/tube_outline.h"
 
 int LLVMFuzzerTestOneInput(const uint8_t *data, size_t size);
 
@@ -32,18 +32,9 @@ static void check_taken(const plw_tube *tube) {
 }
 
 static void read_as(plw_tube_kind kind, const uint8_t *data, size_t size) {
-    const double none = (double)NAN;
-    const plw_tube_outline outline = {.type = "T1",
-                                      .kind = kind,
-                                      .heater_volts = none,
-                                      .heater_amps = none,
-                                      .plate_volts = none,
-                                      .screen_volts = none,
-                                      .plate_watts = none,
-                                      .screen_watts = none};
-    plw_tube *tube = NULL;
+    plw_tube *tube = bare_tube("T1", kind);
     plw_error error = {.status = PLW_OK};
-    demand(plw_tube_outline_make(&outline, &tube, NULL) == PLW_OK);
+    demand(tube != NULL);
     const plw_status status = plw_observation_file_read_memory("table.csv", (const char *)data, size, tube, &error);
     if (status == PLW_OK) {
         check_taken(tube);

@@ -7,23 +7,12 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "bare_tube.h"
 #include "near.h"
-#include "platewright/tube_outline.h"
-
-static const plw_tube_outline nothing_known = {.type = "6X99",
-                                               .kind = PLW_KIND_BEAM,
-                                               .heater_volts = (double)NAN,
-                                               .heater_amps = (double)NAN,
-                                               .plate_volts = (double)NAN,
-                                               .screen_volts = (double)NAN,
-                                               .plate_watts = (double)NAN,
-                                               .screen_watts = (double)NAN};
 
 static plw_tube *tube_of(plw_tube_kind kind) {
-    plw_tube_outline outline = nothing_known;
-    outline.kind = kind;
-    plw_tube *tube = NULL;
-    assert_int_equal(plw_tube_outline_make(&outline, &tube, NULL), PLW_OK);
+    plw_tube *tube = bare_tube("6X99", kind);
+    assert_non_null(tube);
     return tube;
 }
 
