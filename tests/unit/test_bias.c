@@ -7,16 +7,13 @@
 #include "near.h"
 #include "unit/stages.h"
 
-/* A beam tube of 12 W and 2 W on 285 V. */
-static void make_rated(test_tube *tube) {
+/* A beam tube of 12 W and 2 W on 285 V.  The stage points to the tube, whose ratings may still be changed. */
+static plw_stage rated_stage(test_tube *tube) {
     make_tube(tube, pentode_law(TEST_BEAM_SMALL));
     tube->ratings[0].plate_watts = 12.0;
     tube->ratings[0].screen_watts = 2.0;
     tube->ratings[0].plate_volts = 315.0;
     tube->ratings[0].screen_volts = 285.0;
-}
-
-static plw_stage rated_stage(const test_tube *tube) {
     plw_stage stage = simple_stage(tube, 285.0, 5000.0, UNKNOWN, UNKNOWN);
     stage.primary_ohms = 280.0;
     return stage;
@@ -44,7 +41,6 @@ static plw_quiescent rest_at(const plw_stage *stage, double ohms) {
 static void the_exact_resistor_meets_the_aim(void **state) {
     (void)state;
     test_tube tube;
-    make_rated(&tube);
     const plw_stage stage = rated_stage(&tube);
     static const double percents[] = {23.85, 60.0, 75.0, 90.0, 100.0};
     for (size_t index = 0; index < sizeof percents / sizeof percents[0]; index++) {
@@ -62,7 +58,6 @@ static void the_exact_resistor_meets_the_aim(void **state) {
 static void a_triode_connection_counts_both_electrodes(void **state) {
     (void)state;
     test_tube tube;
-    make_rated(&tube);
     plw_stage stage = rated_stage(&tube);
     stage.connection = PLW_CONNECTION_TRIODE;
     plw_bias_choice c = chosen(&stage, PLW_AIM_CURRENT, 35e-3, PLW_E24);
@@ -104,7 +99,6 @@ static void random_aims_are_met(void **state) {
 static void more_current_wants_less_resistance(void **state) {
     (void)state;
     test_tube tube;
-    make_rated(&tube);
     const plw_stage stage = rated_stage(&tube);
     double last = HUGE_VAL;
     for (int milliamps = 5; milliamps <= 45; milliamps += 5) {
@@ -145,9 +139,8 @@ static void the_value_is_rounded_and_solved_again(void **state) {
     (void)state;
     static const plw_series series[] = {PLW_E6, PLW_E12, PLW_E24, PLW_E48, PLW_E96, PLW_E192};
     test_tube tube;
-    make_rated(&tube);
-    tube.ratings[0].screen_watts_full_drive = 10.0; /* no rating in the way */
     const plw_stage stage = rated_stage(&tube);
+    tube.ratings[0].screen_watts_full_drive = 10.0; /* no rating in the way */
     for (size_t index = 0; index < sizeof series / sizeof series[0]; index++) {
         const plw_bias_choice c = chosen(&stage, PLW_AIM_DISSIPATION, 65.0, series[index]);
         assert_int_equal(c.options, 3);
@@ -165,7 +158,6 @@ static void the_value_is_rounded_and_solved_again(void **state) {
 static void a_fixed_bias_is_an_option_too(void **state) {
     (void)state;
     test_tube tube;
-    make_rated(&tube);
     plw_stage stage = rated_stage(&tube);
     stage.fixed_bias_volts = -12.5;
     plw_bias_option option;
@@ -179,7 +171,6 @@ static void a_fixed_bias_is_an_option_too(void **state) {
 static void rounding_never_ends_above_the_rating(void **state) {
     (void)state;
     test_tube tube;
-    make_rated(&tube);
     plw_stage stage = rated_stage(&tube);
     int stepped = 0;
     for (int volts = 255; volts <= 285; volts += 3) {
@@ -197,9 +188,8 @@ static void rounding_never_ends_above_the_rating(void **state) {
 static void a_current_rating_stands_in_the_way(void **state) {
     (void)state;
     test_tube tube;
-    make_rated(&tube);
-    tube.ratings[0].cathode_amps = 30e-3;
     const plw_stage stage = rated_stage(&tube);
+    tube.ratings[0].cathode_amps = 30e-3;
     const plw_bias_choice c = chosen(&stage, PLW_AIM_DISSIPATION, 90.0, PLW_E24);
     assert_false(c.aim_reached);
     assert_non_null(strstr(c.obstacle, "cathode current"));
@@ -212,9 +202,8 @@ static void a_current_rating_stands_in_the_way(void **state) {
 static void a_driven_rating_is_worth_a_step(void **state) {
     (void)state;
     test_tube tube;
-    make_rated(&tube);
-    tube.ratings[0].screen_watts_full_drive = 10.0;
     const plw_stage stage = rated_stage(&tube);
+    tube.ratings[0].screen_watts_full_drive = 10.0;
     const plw_bias_choice free = chosen(&stage, PLW_AIM_DISSIPATION, 65.0, PLW_E24);
     assert_true(free.aim_reached);
     const double at_aim = free.option[free.chosen].signal.screen_watts;
@@ -235,7 +224,6 @@ static void a_driven_rating_is_worth_a_step(void **state) {
 static void clean_power_keeps_its_distortion(void **state) {
     (void)state;
     test_tube tube;
-    make_rated(&tube);
     const plw_stage stage = rated_stage(&tube);
     for (double ohms = 150.0; ohms < 1200.0; ohms *= 1.3) {
         plw_bias_option o;
@@ -253,9 +241,8 @@ static void clean_power_keeps_its_distortion(void **state) {
 static void a_voltage_rating_stays_broken_whatever_the_resistor(void **state) {
     (void)state;
     test_tube tube;
-    make_rated(&tube);
-    tube.ratings[0].plate_volts = 180.0;
     const plw_stage stage = rated_stage(&tube);
+    tube.ratings[0].plate_volts = 180.0;
     const plw_bias_choice c = chosen(&stage, PLW_AIM_DISSIPATION, 70.0, PLW_E24);
     assert_false(c.aim_reached);
     assert_non_null(strstr(c.obstacle, "plate voltage"));
@@ -267,10 +254,9 @@ static void a_voltage_rating_stays_broken_whatever_the_resistor(void **state) {
 static void a_broken_voltage_does_not_hide_a_broken_current(void **state) {
     (void)state;
     test_tube tube;
-    make_rated(&tube);
+    const plw_stage stage = rated_stage(&tube);
     tube.ratings[0].plate_volts = 180.0;
     tube.ratings[0].cathode_amps = 30e-3;
-    const plw_stage stage = rated_stage(&tube);
     const plw_bias_choice c = chosen(&stage, PLW_AIM_DISSIPATION, 90.0, PLW_E24);
     assert_false(c.aim_reached);
     assert_true(c.option[c.chosen].quiescent.cathode_amps <= 30e-3);
@@ -289,7 +275,6 @@ static void refused(const plw_stage *stage, plw_aim_kind kind, double value, plw
 static void what_cannot_be_reached_is_said(void **state) {
     (void)state;
     test_tube tube;
-    make_rated(&tube);
     plw_stage stage = rated_stage(&tube);
     refused(&stage, PLW_AIM_CURRENT, 0.9, PLW_E_NO_POINT, "out of reach");
     stage.supply = stiff(40.0);
@@ -300,15 +285,14 @@ static void what_cannot_be_reached_is_said(void **state) {
     assert_int_equal(plw_supply_readings(readings, 2, &stage.supply, NULL), PLW_OK);
     refused(&stage, PLW_AIM_DISSIPATION, 90.0, PLW_E_NO_POINT, "none serves");
     /* A screen that is too hot at every resistance that passes any current worth the name. */
-    tube.ratings[0].screen_watts = 1e-9;
     stage = rated_stage(&tube);
+    tube.ratings[0].screen_watts = 1e-9;
     refused(&stage, PLW_AIM_DISSIPATION, 90.0, PLW_E_NO_POINT, "screen dissipation");
 }
 
 static void wrong_aims_are_refused(void **state) {
     (void)state;
     test_tube tube;
-    make_rated(&tube);
     plw_stage stage = rated_stage(&tube);
     static const double percents[] = {0.0, -2.385, 100.5, UNKNOWN, (double)INFINITY};
     static const double amps[] = {0.0, -2.385e-3, 5.01, UNKNOWN, (double)INFINITY};
@@ -320,7 +304,7 @@ static void wrong_aims_are_refused(void **state) {
     refused(&stage, PLW_AIM_DISSIPATION, 90.0, PLW_E_USAGE, "plate dissipation");
     stage.fixed_bias_volts = -12.5;
     refused(&stage, PLW_AIM_CURRENT, 30e-3, PLW_E_USAGE, "fixed-bias");
-    stage = rated_stage(&tube);
+    stage.fixed_bias_volts = UNKNOWN;
     stage.load_ohms = UNKNOWN;
     refused(&stage, PLW_AIM_CURRENT, 30e-3, PLW_E_USAGE, "load");
 }
@@ -362,9 +346,8 @@ static void check_best(const plw_stage *stage, plw_series series) {
 static void most_power_is_the_best_of_all_values(void **state) {
     (void)state;
     test_tube tube, triode;
-    make_rated(&tube);
-    tube.ratings[0].screen_watts_full_drive = 2.5;
     plw_stage stage = rated_stage(&tube);
+    tube.ratings[0].screen_watts_full_drive = 2.5;
     check_best(&stage, PLW_E12);
     check_best(&stage, PLW_E24);
     stage.connection = PLW_CONNECTION_ULTRALINEAR;
@@ -379,9 +362,8 @@ static void most_power_is_the_best_of_all_values(void **state) {
 static void most_power_falls_back_where_no_value_keeps_every_rating(void **state) {
     (void)state;
     test_tube tube;
-    make_rated(&tube);
-    tube.ratings[0].screen_watts_full_drive = 1e-6;
     const plw_stage stage = rated_stage(&tube);
+    tube.ratings[0].screen_watts_full_drive = 1e-6;
     const plw_bias_choice c = chosen(&stage, PLW_AIM_POWER, 0.0, PLW_E24);
     assert_false(c.aim_reached);
     assert_true(strlen(c.obstacle) > 0);
