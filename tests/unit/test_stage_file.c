@@ -4,9 +4,8 @@
 
 #include "folder.h"
 #include "platewright/fit.h"
-#include "platewright/report.h"
-#include "platewright/stage_file.h"
 #include "platewright/text_file.h"
+#include "unit/descriptions.h"
 
 /* The tubes that the tests of the command line have, with their laws fitted. */
 static void fit_test_tube(const test_folder *folder, const char *name) {
@@ -35,29 +34,13 @@ static plw_catalogue *open_test_tubes(test_folder *folder) {
     return catalogue;
 }
 
-static plw_stage_description *read_text(const char *text) {
-    plw_stage_description *description = NULL;
-    plw_error error = {.status = PLW_OK};
-    if (plw_stage_file_read_memory("stage.xml", text, strlen(text), &description, &error) != PLW_OK) {
-        fail_msg("%s", error.text);
-    }
-    return description;
-}
-
-static void say(plw_stage_description *description, const char *name, const char *text) {
-    plw_error error = {.status = PLW_OK};
-    if (plw_stage_describe(description, name, text, &error) != PLW_OK) {
-        fail_msg("%s", error.text);
-    }
-}
-
 #define QUAY                                                                                                           \
     "<stage>\n  <note text='quay &lt;3&gt;'/>\n  <load value='4k7'/>\n  <tube value='MQ6GT'/>\n"                       \
     "  <supply value='271.5V'/>\n  <speaker value='7.5'/>\n</stage>\n"
 
 static void test_every_entry_becomes_a_field(void **state) {
     (void)state;
-    plw_stage_description *description = read_text(QUAY);
+    plw_stage_description *description = described(QUAY);
     say(description, "parallel", "3");
     say(description, "source-ohms", "1.8k");
     say(description, "other-current", "3.2mA");
@@ -96,7 +79,7 @@ static void test_every_entry_becomes_a_field(void **state) {
 
 static void test_readings_become_a_supply(void **state) {
     (void)state;
-    plw_stage_description *description = read_text(QUAY);
+    plw_stage_description *description = described(QUAY);
     say(description, "reading", "305V");
     say(description, "reading", "258V@10k");
     say(description, "reading", "271V@18mA");
@@ -129,7 +112,7 @@ static void test_options_override_the_file(void **state) {
     for (size_t i = 0; i < sizeof pairs / sizeof pairs[0]; i++) {
         char text[256];
         snprintf(text, sizeof text, "<stage>%s</stage>", pairs[i][3]);
-        plw_stage_description *description = read_text(text);
+        plw_stage_description *description = described(text);
         assert_true(plw_stage_described_in_file(description, pairs[i][2]));
         say(description, pairs[i][0], pairs[i][1]);
         assert_false(plw_stage_described_in_file(description, pairs[i][2]));
@@ -140,27 +123,23 @@ static void test_options_override_the_file(void **state) {
 
 static void test_written_and_read_again(void **state) {
     (void)state;
-    plw_stage_description *description = read_text(QUAY);
+    plw_stage_description *description = described(QUAY);
     say(description, "reading", "258V@10k");
     say(description, "reading", "305 V");
     char *text = NULL;
-    char *again = NULL;
     assert_int_equal(plw_stage_file_text(description, &text, NULL), PLW_OK);
-    plw_stage_description *copy = read_text(text);
+    plw_stage_description *copy = read_again(text);
     assert_string_equal(plw_stage_note(copy), "quay <3>");
     assert_string_equal(plw_stage_described(copy, "reading", NULL, 0), "258V@10k");
     assert_null(plw_stage_described(copy, "supply", NULL, 0));
-    assert_int_equal(plw_stage_file_text(copy, &again, NULL), PLW_OK);
-    assert_string_equal(text, again);
     plw_text_free(text);
-    plw_text_free(again);
     plw_stage_description_free(copy);
     plw_stage_description_free(description);
 }
 
 static void test_places(void **state) {
     (void)state;
-    plw_stage_description *description = read_text(QUAY);
+    plw_stage_description *description = described(QUAY);
     char place[64];
     assert_string_equal(plw_stage_described(description, "load", place, sizeof place), "4k7");
     assert_string_equal(place, "stage.xml:3:3: load");
@@ -198,7 +177,7 @@ static void test_faults_of_the_circuit(void **state) {
     (void)state;
     test_folder folder;
     plw_catalogue *catalogue = open_test_tubes(&folder);
-    plw_stage_description *description = read_text("<stage>\n<tube value='MQ9'/>\n<load value='5kV'/></stage>");
+    plw_stage_description *description = described("<stage>\n<tube value='MQ9'/>\n<load value='5kV'/></stage>");
     plw_error error = {.status = PLW_OK};
     plw_stage stage;
     assert_int_equal(plw_stage_build(description, catalogue, &stage, &error), PLW_E_DATA);

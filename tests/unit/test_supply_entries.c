@@ -1,32 +1,13 @@
 /* The plate supply in a stage description: entries, the order of the filter, what takes whose place, faults.
  * SPDX-License-Identifier: GPL-3.0-or-later */
 #include <stdio.h>
-#include <string.h>
 
-#include "near.h"
-#include "platewright/report.h"
-#include "platewright/stage_file.h"
+#include "unit/descriptions.h"
 
 #define PARTS                                                                                                          \
     "<stage><winding value='231V'/><rectifier value='bridge'/><reservoir value='33uF'/><winding-ohms value='171'/>"    \
     "<mains value='60Hz'/><choke value='7.9H'/><choke-ohms value='183'/><smoothing value='47uF'/>"                     \
     "<dropper value='1k1'/><smoothing value='22uF'/><bleeder value='220k'/></stage>"
-
-static plw_stage_description *described(const char *text) {
-    plw_stage_description *description = NULL;
-    plw_error error = {.status = PLW_OK};
-    if (plw_stage_file_read_memory("stage.xml", text, strlen(text), &description, &error) != PLW_OK) {
-        fail_msg("%s", error.text);
-    }
-    return description;
-}
-
-static void say(plw_stage_description *description, const char *name, const char *text) {
-    plw_error error = {.status = PLW_OK};
-    if (plw_stage_describe(description, name, text, &error) != PLW_OK) {
-        fail_msg("%s", error.text);
-    }
-}
 
 static void entries_become_parts(void **state) {
     (void)state;
@@ -112,7 +93,6 @@ static void the_filter_keeps_its_order(void **state) {
     (void)state;
     plw_stage_description *description = described(PARTS);
     char *text = NULL;
-    char *again = NULL;
     assert_int_equal(plw_stage_file_text(description, &text, NULL), PLW_OK);
     static const char *const order[] = {
         "<choke ", "<choke-ohms ", "<smoothing value=\"47uF\"", "<dropper ", "<smoothing value=\"22uF\"", "<bleeder "};
@@ -124,12 +104,8 @@ static void the_filter_keeps_its_order(void **state) {
         }
         at = here == NULL ? at : here;
     }
-    plw_stage_description *copy = described(text);
-    assert_int_equal(plw_stage_file_text(copy, &again, NULL), PLW_OK);
-    assert_string_equal(text, again);
+    plw_stage_description_free(read_again(text));
     plw_text_free(text);
-    plw_text_free(again);
-    plw_stage_description_free(copy);
     plw_stage_description_free(description);
 }
 
