@@ -1,26 +1,11 @@
 /* Conversion to another supply voltage: the published conversion factors, exact for a device of the 3/2-power law.
  * SPDX-License-Identifier: GPL-3.0-or-later */
-#include "near.h"
+#include "unit/solved.h"
 #include "unit/stages.h"
 
 #define BALLOU "G. Ballou (ed.), Handbook for Sound Engineers, ch. 12, p. 316"
 #define RCA_FACTORS "conversion factors, RCA Receiving Tube Manual"
 #define SCALING "dimensions of a 3/2-power law"
-
-typedef struct {
-    plw_quiescent rest;
-    plw_signal driven;
-} solved;
-
-static solved solve(const plw_stage *stage) {
-    solved s;
-    plw_error error = {0};
-    if (plw_quiescent_solve(stage, &s.rest, &error) != PLW_OK ||
-        plw_signal_solve(stage, &s.rest, &s.driven, &error) != PLW_OK) {
-        fail_msg("%s", error.text);
-    }
-    return s;
-}
 
 static plw_stage scaled(const test_tube *tube, double factor) {
     return simple_stage(tube, 295.0 * factor, 2500.0 / sqrt(factor), 750.0 / sqrt(factor), UNKNOWN);
@@ -42,14 +27,14 @@ static void a_three_halves_triode_scales_exactly(void **state) {
         assert_near_relative(s.rest.cathode_volts, base.rest.cathode_volts * f, 1e-9, SCALING);
         assert_near_relative(s.rest.gm_siemens, base.rest.gm_siemens * sqrt(f), 1e-9, SCALING);
         assert_near_relative(s.rest.plate_resistance_ohms, base.rest.plate_resistance_ohms / sqrt(f), 1e-9, SCALING);
-        assert_near_relative(s.driven.drive_peak_volts, base.driven.drive_peak_volts * f, 1e-8, SCALING);
+        assert_near_relative(s.signal.drive_peak_volts, base.signal.drive_peak_volts * f, 1e-8, SCALING);
         /* dynamic.h promises each instant within 1e-9 A; beside a fundamental of 50 mA that is 2e-8, 2e-6 % in the
          * harmonics and 4e-8 in power. */
-        assert_near_relative(s.driven.power_watts, base.driven.power_watts * pow(f, 2.5), 4e-8, SCALING);
-        assert_near_relative(s.driven.plate_watts, base.driven.plate_watts * pow(f, 2.5), 4e-8, SCALING);
-        assert_near(s.driven.thd_percent, base.driven.thd_percent, 2e-6, SCALING);
+        assert_near_relative(s.signal.power_watts, base.signal.power_watts * pow(f, 2.5), 4e-8, SCALING);
+        assert_near_relative(s.signal.plate_watts, base.signal.plate_watts * pow(f, 2.5), 4e-8, SCALING);
+        assert_near(s.signal.thd_percent, base.signal.thd_percent, 2e-6, SCALING);
         for (int order = 2; order <= PLW_HARMONICS_MOST; order++) {
-            assert_near(s.driven.harmonic_percent[order], base.driven.harmonic_percent[order], 2e-6, SCALING);
+            assert_near(s.signal.harmonic_percent[order], base.signal.harmonic_percent[order], 2e-6, SCALING);
         }
     }
 }
@@ -66,7 +51,7 @@ static void with_the_resistor_unchanged_it_does_not(void **state) {
     /* More bias than the conversion asks for: less current, by several percent. */
     assert_true(s.rest.plate_amps < 0.95 * base.rest.plate_amps * pow(1.5, 1.5));
     assert_true(s.rest.cathode_volts > 1.01 * base.rest.cathode_volts * 1.5);
-    assert_true(fabs(s.driven.thd_percent / base.driven.thd_percent - 1.0) > 0.01);
+    assert_true(fabs(s.signal.thd_percent / base.signal.thd_percent - 1.0) > 0.01);
 }
 
 /* Table of the factors, printed to three decimals. */
@@ -84,7 +69,7 @@ static void the_solver_reproduces_the_table_of_factors(void **state) {
         const plw_stage other = scaled(&tube, table[row][0]);
         const solved s = solve(&other);
         assert_near(s.rest.plate_amps / base.rest.plate_amps, table[row][1], 0.00051, RCA_FACTORS);
-        assert_near(s.driven.power_watts / base.driven.power_watts, table[row][2], 0.00051, RCA_FACTORS);
+        assert_near(s.signal.power_watts / base.signal.power_watts, table[row][2], 0.00051, RCA_FACTORS);
         assert_near(s.rest.plate_resistance_ohms / base.rest.plate_resistance_ohms, table[row][3], 0.00051,
                     RCA_FACTORS);
         assert_near(s.rest.gm_siemens / base.rest.gm_siemens, table[row][4], 0.00051, RCA_FACTORS);
@@ -140,7 +125,7 @@ static void the_published_beam_tube_goes_from_250_to_180_volts(void **state) {
     assert_near_relative(to.rest.plate_resistance_ohms, from.rest.plate_resistance_ohms / sqrt(f), 1e-2,
                          "F3 = F1/F2: 61.3k for 52k");
     assert_near_relative(to.rest.gm_siemens, from.rest.gm_siemens * 3479.0 / 4100.0, 3e-3, "F5 = F2/F1");
-    assert_near_relative(to.driven.power_watts, from.driven.power_watts * 1.979 / 4.5, 3e-3, "F4 = F1 F2");
+    assert_near_relative(to.signal.power_watts, from.signal.power_watts * 1.979 / 4.5, 3e-3, "F4 = F1 F2");
 }
 
 int main(void) {

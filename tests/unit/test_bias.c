@@ -5,6 +5,7 @@
 #include <string.h>
 
 #include "near.h"
+#include "unit/solved.h"
 #include "unit/stages.h"
 
 /* A beam tube of 12 W and 2 W on 285 V.  The stage points to the tube, whose ratings may still be changed. */
@@ -31,9 +32,7 @@ static plw_bias_choice chosen(const plw_stage *stage, plw_aim_kind kind, double 
 static plw_quiescent rest_at(const plw_stage *stage, double ohms) {
     plw_stage trial = *stage;
     trial.cathode_resistor_ohms = ohms;
-    plw_quiescent q;
-    assert_int_equal(plw_quiescent_solve(&trial, &q, NULL), PLW_OK);
-    return q;
+    return at_rest(&trial);
 }
 
 /* ---- the aim ----------------------------------------------------------------------------------------------------- */
@@ -119,13 +118,10 @@ static void more_current_wants_less_resistance(void **state) {
 static void check_option(const plw_stage *stage, const plw_bias_option *option) {
     plw_stage trial = *stage;
     trial.cathode_resistor_ohms = option->ohms;
-    plw_quiescent q;
-    plw_signal s;
-    assert_int_equal(plw_quiescent_solve(&trial, &q, NULL), PLW_OK);
-    assert_int_equal(plw_signal_solve(&trial, &q, &s, NULL), PLW_OK);
-    assert_near(option->quiescent.plate_amps, q.plate_amps, 0.0, "solved again");
-    assert_near(option->signal.power_watts, s.power_watts, 0.0, "solved again");
-    assert_near(option->watts, q.cathode_resistor_watts, 0.0, "what it dissipates");
+    const solved again = solve(&trial);
+    assert_near(option->quiescent.plate_amps, again.rest.plate_amps, 0.0, "solved again");
+    assert_near(option->signal.power_watts, again.signal.power_watts, 0.0, "solved again");
+    assert_near(option->watts, again.rest.cathode_resistor_watts, 0.0, "what it dissipates");
     assert_near(option->rating_watts, plw_resistor_rating_watts(option->watts, PLW_RESISTOR_MARGIN), 0.0, "bias.h");
     assert_true(option->rating_watts >= 2.0 * option->watts);
     bool kept = true;

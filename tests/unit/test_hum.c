@@ -1,9 +1,9 @@
 /* Hum: the linear answer against the circuit solved twice, and closed forms.
  * SPDX-License-Identifier: GPL-3.0-or-later */
-#include "near.h"
 #include "platewright/hum.h"
 #include "stage/circuit.h"
-#include "stages.h"
+#include "unit/solved.h"
+#include "unit/stages.h"
 
 #define TWICE "the stage's equations solved with the supply moved up and down"
 
@@ -79,12 +79,11 @@ static void triode_closed_forms(void **state) {
     test_tube tube;
     make_tube(&tube, koren_triode(KOREN_300B));
     plw_stage stage = simple_stage(&tube, 385.2, 3127.0, 873.0, UNKNOWN);
-    plw_quiescent rest;
-    assert_int_equal(plw_quiescent_solve(&stage, &rest, NULL), PLW_OK);
+    plw_quiescent rest = at_rest(&stage);
     const double rp = rest.plate_resistance_ohms;
     assert_near(plw_hum_share(&stage, &rest), 3127.0 / (3127.0 + rp), 1e-9, "RL / (RL + rp)");
     stage.unbypassed = true;
-    assert_int_equal(plw_quiescent_solve(&stage, &rest, NULL), PLW_OK);
+    rest = at_rest(&stage);
     const double grown = rest.plate_resistance_ohms + (rest.mu + 1.0) * 873.0;
     assert_near(plw_hum_share(&stage, &rest), 3127.0 / (3127.0 + grown), 1e-9, "RL / (RL + rp + (mu + 1) Rk)");
 }
@@ -95,11 +94,10 @@ static void screen_carries_the_hum(void **state) {
     test_tube tube;
     make_tube(&tube, pentode_law(TEST_PENTODE_STEEP));
     plw_stage stage = simple_stage(&tube, 251.3, 5210.0, 143.0, UNKNOWN);
-    plw_quiescent rest;
-    assert_int_equal(plw_quiescent_solve(&stage, &rest, NULL), PLW_OK);
+    plw_quiescent rest = at_rest(&stage);
     const double with_screen = plw_hum_share(&stage, &rest);
     stage.screen_supply_volts = 251.3;
-    assert_int_equal(plw_quiescent_solve(&stage, &rest, NULL), PLW_OK);
+    rest = at_rest(&stage);
     const double quiet = plw_hum_share(&stage, &rest);
     assert_near(quiet, 5210.0 / (5210.0 + rest.plate_resistance_ohms), 1e-9, "RL / (RL + rp)");
     assert_true(with_screen > 3.0 * quiet);
@@ -112,21 +110,18 @@ static void figures_of_the_hum(void **state) {
     plw_stage stage = simple_stage(&tube, 305.7, 2513.0, 755.0, UNKNOWN);
     stage.ratio = sqrt(2513.0 / 7.9);
     stage.speaker_ohms = 7.9;
-    plw_quiescent rest;
-    plw_signal signal;
+    const solved s = solve(&stage);
     plw_hum hum;
     plw_error error = {0};
-    assert_int_equal(plw_quiescent_solve(&stage, &rest, &error), PLW_OK);
-    assert_int_equal(plw_signal_solve(&stage, &rest, &signal, &error), PLW_OK);
-    assert_int_equal(plw_hum_of(&stage, &rest, &signal, 0.137, &hum, &error), PLW_OK);
+    assert_int_equal(plw_hum_of(&stage, &s.rest, &s.signal, 0.137, &hum, &error), PLW_OK);
     const double volts = 0.137 * hum.speaker_share / stage.ratio;
     assert_near_relative(hum.speaker_rms_volts, volts, 1e-12, "through the turns");
-    assert_near(hum.decibels_below_full_power, 10.0 * log10(signal.speaker_watts * 7.9 / (volts * volts)), 1e-9,
+    assert_near(hum.decibels_below_full_power, 10.0 * log10(s.signal.speaker_watts * 7.9 / (volts * volts)), 1e-9,
                 "10 log of powers in the same speaker");
-    assert_int_equal(plw_hum_of(&stage, &rest, &signal, -0.1, &hum, &error), PLW_E_USAGE);
-    assert_int_equal(plw_hum_of(&stage, &rest, &signal, UNKNOWN, &hum, &error), PLW_E_USAGE);
+    assert_int_equal(plw_hum_of(&stage, &s.rest, &s.signal, -0.1, &hum, &error), PLW_E_USAGE);
+    assert_int_equal(plw_hum_of(&stage, &s.rest, &s.signal, UNKNOWN, &hum, &error), PLW_E_USAGE);
     stage.ratio = UNKNOWN;
-    assert_int_equal(plw_hum_of(&stage, &rest, &signal, 0.0, &hum, &error), PLW_OK);
+    assert_int_equal(plw_hum_of(&stage, &s.rest, &s.signal, 0.0, &hum, &error), PLW_OK);
     assert_true(isnan(hum.speaker_rms_volts) && isinf(hum.decibels_below_full_power));
 }
 

@@ -1,10 +1,10 @@
 /* Mains low and high, and what a voltage across the dummy load means.
  * SPDX-License-Identifier: GPL-3.0-or-later */
-#include "near.h"
 #include "platewright/dummy_meaning.h"
 #include "platewright/mains.h"
 #include "platewright/plate_supply.h"
-#include "stages.h"
+#include "unit/solved.h"
+#include "unit/stages.h"
 
 static void rate(test_tube *tube, plw_rating_system system) {
     tube->ratings[0].system = system;
@@ -63,8 +63,7 @@ static void rating_systems_differ(void **state) {
         make_tube(&tube, pentode_law(TEST_PENTODE_STEEP));
         rate(&tube, cases[i].system);
         const plw_stage stage = simple_stage(&tube, 251.3, 5210.0, 143.0, UNKNOWN);
-        plw_quiescent rest;
-        assert_int_equal(plw_quiescent_solve(&stage, &rest, NULL), PLW_OK);
+        const plw_quiescent rest = at_rest(&stage);
         tube.ratings[0].plate_watts = 1.05 * rest.plate_watts; /* kept at rest, broken a tenth higher */
         plw_mains mains;
         assert_int_equal(plw_mains_solve(&stage, &mains, NULL), PLW_OK);

@@ -5,6 +5,7 @@
 #include <string.h>
 
 #include "near.h"
+#include "unit/solved.h"
 #include "unit/stages.h"
 
 enum { STAGES = 10000, STEPS = PLW_PATH_POINTS - 1 };
@@ -225,11 +226,7 @@ static void ten_thousand_stages_are_solved(void **state) {
 /* ---- single stages ----------------------------------------------------------------------------------------------- */
 
 static plw_signal driven(const plw_stage *stage) {
-    plw_quiescent q;
-    plw_signal s;
-    assert_int_equal(plw_quiescent_solve(stage, &q, NULL), PLW_OK);
-    assert_int_equal(plw_signal_solve(stage, &q, &s, NULL), PLW_OK);
-    return s;
+    return solve(stage).signal;
 }
 
 static void without_drive_the_averages_are_those_at_rest(void **state) {
@@ -240,8 +237,7 @@ static void without_drive_the_averages_are_those_at_rest(void **state) {
         plw_stage stage;
         random_stage(&r, &tube, &stage);
         stage.drive_peak_volts = 0.0;
-        plw_quiescent q;
-        assert_int_equal(plw_quiescent_solve(&stage, &q, NULL), PLW_OK);
+        const plw_quiescent q = at_rest(&stage);
         const plw_signal s = driven(&stage);
         check(number, &stage, "plate current", s.plate_amps, q.plate_amps, 3e-9);
         check(number, &stage, "screen current", s.screen_amps, q.screen_amps, 3e-9);
@@ -259,8 +255,7 @@ static void small_signals_follow_the_equivalent_circuit(void **state) {
     make_tube(&tube, koren_triode(KOREN_300B));
     plw_stage stage = simple_stage(&tube, 352.0, 3500.0, UNKNOWN, -74.0);
     stage.drive_peak_volts = 0.25;
-    plw_quiescent q;
-    assert_int_equal(plw_quiescent_solve(&stage, &q, NULL), PLW_OK);
+    const plw_quiescent q = at_rest(&stage);
     const plw_signal whole = driven(&stage);
     const double gain = q.mu * stage.load_ohms / (q.plate_resistance_ohms + stage.load_ohms);
     assert_near_relative(whole.voltage_gain, gain, 1e-5, "mu RL/(rp + RL); the third harmonic's part is 1e-6");
@@ -293,18 +288,13 @@ static void currents_beyond_the_readings_are_told(void **state) {
     test_tube tube;
     make_tube(&tube, pentode_law(TEST_BEAM_SMALL));
     plw_stage stage = simple_stage(&tube, 285.0, 5000.0, UNKNOWN, -24.0);
-    plw_quiescent q;
-    plw_signal s;
-    plw_error error = {0};
-    assert_int_equal(plw_quiescent_solve(&stage, &q, &error), PLW_OK);
-    assert_int_equal(plw_signal_solve(&stage, &q, &s, &error), PLW_OK);
-    assert_false(s.beyond_supply); /* stiff: speaks at every current */
-    assert_near(s.plate_to_ground_volts, 285.0, 1e-6, "no copper: the mean stays at the supply");
-    const plw_reading readings[] = {{290.0, 0.0}, {285.0, 1.1 * q.supply_amps}};
-    assert_true(s.cathode_amps > 1.7 * q.supply_amps);
-    assert_int_equal(plw_supply_readings(readings, 2, &stage.supply, &error), PLW_OK);
-    assert_int_equal(plw_quiescent_solve(&stage, &q, &error), PLW_OK);
-    assert_int_equal(plw_signal_solve(&stage, &q, &s, &error), PLW_OK);
+    const solved unlimited = solve(&stage);
+    assert_false(unlimited.signal.beyond_supply); /* stiff: speaks at every current */
+    assert_near(unlimited.signal.plate_to_ground_volts, 285.0, 1e-6, "no copper: the mean stays at the supply");
+    const plw_reading readings[] = {{290.0, 0.0}, {285.0, 1.1 * unlimited.rest.supply_amps}};
+    assert_true(unlimited.signal.cathode_amps > 1.7 * unlimited.rest.supply_amps);
+    assert_int_equal(plw_supply_readings(readings, 2, &stage.supply, NULL), PLW_OK);
+    const plw_signal s = driven(&stage);
     assert_true(s.beyond_supply);
     assert_true(isnan(s.supply_volts));
 }
@@ -464,8 +454,7 @@ static void impossible_drives_are_refused(void **state) {
     test_tube tube;
     make_tube(&tube, koren_triode(KOREN_2A3));
     plw_stage stage = simple_stage(&tube, 252.0, 2500.0, 750.0, UNKNOWN);
-    plw_quiescent q;
-    assert_int_equal(plw_quiescent_solve(&stage, &q, NULL), PLW_OK);
+    const plw_quiescent q = at_rest(&stage);
     static const double wrong[] = {-2.385, 2000.5, (double)INFINITY, -(double)INFINITY};
     for (size_t index = 0; index < sizeof wrong / sizeof wrong[0]; index++) {
         stage.drive_peak_volts = wrong[index];
@@ -487,8 +476,7 @@ static void an_unbypassed_cathode_feeds_back(void **state) {
     const plw_signal bypassed = driven(&stage);
     stage.unbypassed = true;
     const plw_signal unbypassed = driven(&stage);
-    plw_quiescent q;
-    assert_int_equal(plw_quiescent_solve(&stage, &q, NULL), PLW_OK);
+    const plw_quiescent q = at_rest(&stage);
     const double rp = q.plate_resistance_ohms, load = stage.load_ohms, rk = stage.cathode_resistor_ohms;
     assert_near_relative(bypassed.voltage_gain, q.mu * load / (rp + load), 1e-5, "linear equivalent circuit");
     assert_near_relative(unbypassed.voltage_gain, q.mu * load / (rp + load + (q.mu + 1.0) * rk), 1e-5,

@@ -3,26 +3,11 @@
  * SPDX-License-Identifier: GPL-3.0-or-later */
 #include "platewright/uncertainty.h"
 
-#include "near.h"
+#include "unit/solved.h"
 #include "unit/stages.h"
 
 /* left_out in percent at which the law's error equals the spread of tubes: a median is 0.6745 standard deviations */
 #define EVEN_PERCENT (100.0 * PLW_TUBE_SPREAD * 0.6745)
-
-typedef struct {
-    plw_quiescent rest;
-    plw_signal signal;
-} solved;
-
-static solved solve(const plw_stage *stage) {
-    solved s;
-    plw_error error = {0};
-    if (plw_quiescent_solve(stage, &s.rest, &error) != PLW_OK ||
-        plw_signal_solve(stage, &s.rest, &s.signal, &error) != PLW_OK) {
-        fail_msg("%s", error.text);
-    }
-    return s;
-}
 
 static plw_uncertainty estimate_on(const plw_stage *stage, double supply_volts_error) {
     const solved s = solve(stage);
