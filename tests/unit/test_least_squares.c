@@ -54,73 +54,72 @@ static plw_least_squares core(plw_residual_function function, size_t p) {
         .residuals = function, .n = POINTS, .p = p, .iterations_most = 100, .tol_step = 1e-10, .tol_gradient = 1e-12};
 }
 
+/* Where two coordinates come to. */
+typedef struct {
+    double place[2], covariance[4];
+    plw_least_squares_end end;
+} solution;
+
+static solution solve(const plw_least_squares *problem, double first, double second) {
+    const double start[] = {first, second};
+    solution s;
+    assert_int_equal(plw_least_squares_solve(problem, start, 1, s.place, s.covariance, &s.end, NULL), PLW_OK);
+    return s;
+}
+
+static double sum_of_products(const double a[POINTS], const double b[POINTS]) {
+    double sum = 0.0;
+    for (size_t i = 0; i < POINTS; i++) {
+        sum += a[i] * b[i];
+    }
+    return sum;
+}
+
 static void test_line(void **state) {
     (void)state;
-    double sx = 0.0;
-    double sy = 0.0;
-    double sxx = 0.0;
-    double sxy = 0.0;
-    for (size_t i = 0; i < POINTS; i++) {
-        sx += line_x[i];
-        sy += line_y[i];
-        sxx += line_x[i] * line_x[i];
-        sxy += line_x[i] * line_y[i];
-    }
+    static const double ones[POINTS] = {1.0, 1.0, 1.0, 1.0, 1.0};
+    const double sx = sum_of_products(ones, line_x);
+    const double sy = sum_of_products(ones, line_y);
+    const double sxx = sum_of_products(line_x, line_x);
+    const double sxy = sum_of_products(line_x, line_y);
     const double determinant = POINTS * sxx - sx * sx;
-    const double start[] = {7.3, -2.9};
-    double place[2];
-    double covariance[4];
-    plw_least_squares_end end;
     plw_least_squares problem = core(line, 2);
     for (int way = 0; way < 4; way++) {
         problem.careful = (way & 1) != 0;
         problem.central = (way & 2) != 0;
-        assert_int_equal(plw_least_squares_solve(&problem, start, 1, place, covariance, &end, NULL), PLW_OK);
-        assert_near(place[0], (sxx * sy - sx * sxy) / determinant, 1e-7, "normal equations");
-        assert_near(place[1], (POINTS * sxy - sx * sy) / determinant, 1e-7, "normal equations");
-        assert_near_relative(covariance[0], sxx / determinant, 1e-6, "normal equations");
-        assert_near_relative(covariance[1], -sx / determinant, 1e-6, "normal equations");
-        assert_near_relative(covariance[2], -sx / determinant, 1e-6, "normal equations");
-        assert_near_relative(covariance[3], POINTS / determinant, 1e-6, "normal equations");
-        assert_near_relative(end.own_share_least, sqrt(determinant / (POINTS * sxx)), 1e-6, "1 - R squared");
-        assert_false(end.singular);
+        const solution s = solve(&problem, 7.3, -2.9);
+        assert_near(s.place[0], (sxx * sy - sx * sxy) / determinant, 1e-7, "normal equations");
+        assert_near(s.place[1], (POINTS * sxy - sx * sy) / determinant, 1e-7, "normal equations");
+        assert_near_relative(s.covariance[0], sxx / determinant, 1e-6, "normal equations");
+        assert_near_relative(s.covariance[1], -sx / determinant, 1e-6, "normal equations");
+        assert_near_relative(s.covariance[2], -sx / determinant, 1e-6, "normal equations");
+        assert_near_relative(s.covariance[3], POINTS / determinant, 1e-6, "normal equations");
+        assert_near_relative(s.end.own_share_least, sqrt(determinant / (POINTS * sxx)), 1e-6, "1 - R squared");
+        assert_false(s.end.singular);
     }
 }
 
 static void test_twins_are_singular(void **state) {
     (void)state;
-    const double start[] = {0.7, 1.9};
-    double place[2];
-    double covariance[4];
-    plw_least_squares_end end;
     const plw_least_squares problem = core(twins, 2);
-    assert_int_equal(plw_least_squares_solve(&problem, start, 1, place, covariance, &end, NULL), PLW_OK);
-    assert_true(end.singular);
-    double sxx = 0.0;
-    double sxy = 0.0;
-    for (size_t i = 0; i < POINTS; i++) {
-        sxx += line_x[i] * line_x[i];
-        sxy += line_x[i] * line_y[i];
-    }
-    assert_near(place[0] + place[1], sxy / sxx, 1e-7, "the sum is determined all the same");
+    const solution s = solve(&problem, 0.7, 1.9);
+    assert_true(s.end.singular);
+    assert_near(s.place[0] + s.place[1], sum_of_products(line_x, line_y) / sum_of_products(line_x, line_x), 1e-7,
+                "the sum is determined all the same");
     for (size_t i = 0; i < 4; i++) {
-        assert_true(isnan(covariance[i]));
+        assert_true(isnan(s.covariance[i]));
     }
 }
 
 static void test_no_effect_gives_no_variance(void **state) {
     (void)state;
-    const double start[] = {0.7, 1.9};
-    double place[2];
-    double covariance[4];
-    plw_least_squares_end end;
     const plw_least_squares problem = core(idle, 2);
-    assert_int_equal(plw_least_squares_solve(&problem, start, 1, place, covariance, &end, NULL), PLW_OK);
-    assert_true(end.singular);
-    assert_true(end.own_share_least == 0.0);
-    assert_true(isfinite(covariance[0]) && covariance[0] > 0.0);
-    assert_true(isnan(covariance[1]) && isnan(covariance[2]) && isnan(covariance[3]));
-    assert_near(place[1], 1.9, 0.0, "stays where it started");
+    const solution s = solve(&problem, 0.7, 1.9);
+    assert_true(s.end.singular);
+    assert_true(s.end.own_share_least == 0.0);
+    assert_true(isfinite(s.covariance[0]) && s.covariance[0] > 0.0);
+    assert_true(isnan(s.covariance[1]) && isnan(s.covariance[2]) && isnan(s.covariance[3]));
+    assert_near(s.place[1], 1.9, 0.0, "stays where it started");
 }
 
 static void test_domain(void **state) {
