@@ -4,32 +4,16 @@
 
 #include <string.h>
 
-#include "near.h"
+#include "unit/supplies.h"
 
 #define PI 3.14159265358979323846
 
 static plw_rectifier example(void) {
-    plw_rectifier supply = {.connection = PLW_FULL_WAVE,
-                            .winding_rms_volts = 238.5,
-                            .path_ohms = 97,
-                            .mains_hertz = 50,
-                            .diode = plw_diode_silicon(),
-                            .reservoir_farads = 47e-6,
-                            .sections = 2};
+    plw_rectifier supply = usual_rectifier(238.5, 97);
+    supply.sections = 2;
     supply.section[0] = (plw_filter_section){7.5, 190, 33e-6};
     supply.section[1] = (plw_filter_section){0, 680, 22e-6};
     return supply;
-}
-
-static plw_rectifier_state solved(const plw_rectifier *supply, double amps, double ohms) {
-    plw_rectifier_state state;
-    plw_error error = {0};
-    const plw_dc_load load = {amps, ohms};
-    const plw_status status = plw_rectifier_steady(supply, load, &state, &error);
-    if (status != PLW_OK) {
-        fail_msg("%s", error.text);
-    }
-    return state;
 }
 
 /* ---- identities -------------------------------------------------------------------------------------------------- */
@@ -42,7 +26,7 @@ static void charge_is_balanced(void **state) {
     supply.drawn_amps[1] = 0.0041;
     for (int vacuum = 0; vacuum < 2; vacuum++) {
         supply.diode = vacuum ? plw_diode_vacuum(20, 0.15) : plw_diode_silicon();
-        const plw_rectifier_state got = solved(&supply, 0.0187, 33e3);
+        const plw_rectifier_state got = steady_state(&supply, 0.0187, 33e3);
         const char *source = "conservation of charge";
         const double output = 0.0187 + got.volts / 33e3 + got.volts / 220e3;
         assert_near(got.load_amps, 0.0187 + got.volts / 33e3, 1e-15, source);
@@ -93,7 +77,7 @@ static void volts_scale_with_volts(void **state) {
     larger.winding_rms_volts *= 1.437;
     const plw_rectifier at_mains = plw_rectifier_at_mains(&supply, 143.7);
     assert_near(at_mains.winding_rms_volts, larger.winding_rms_volts, 1e-10, "volts go with the mains");
-    const plw_rectifier_state one = solved(&supply, 0.041, 0), other = solved(&larger, 0.041 * 1.437, 0);
+    const plw_rectifier_state one = steady_state(&supply, 0.041, 0), other = steady_state(&larger, 0.041 * 1.437, 0);
     assert_near_relative(other.volts, 1.437 * one.volts, 1e-9, "linear between switchings");
     assert_near_relative(other.winding_rms_amps, 1.437 * one.winding_rms_amps, 1e-9, "linear between switchings");
     assert_near_relative(other.conduction_degrees, one.conduction_degrees, 1e-8, "linear between switchings");
@@ -114,7 +98,7 @@ static void vacuum_scales_as_three_halves(void **state) {
         larger.section[i].henries /= root;
         larger.section[i].farads *= root;
     }
-    const plw_rectifier_state one = solved(&supply, 0.05, 0), other = solved(&larger, 0.05 * f * root, 0);
+    const plw_rectifier_state one = steady_state(&supply, 0.05, 0), other = steady_state(&larger, 0.05 * f * root, 0);
     assert_near_relative(other.volts, f * one.volts, 1e-8, "three-halves-power scaling");
     assert_near_relative(other.diode_peak_amps, f * root * one.diode_peak_amps, 1e-6, "three-halves-power scaling");
     assert_near_relative(other.node[2].ripple_rms_volts, f * one.node[2].ripple_rms_volts, 1e-6,
@@ -127,7 +111,7 @@ static void bridge_is_full_wave_with_two_drops(void **state) {
     bridge.connection = PLW_BRIDGE;
     halves.diode.drop_volts *= 2;
     halves.diode.slope_ohms *= 2;
-    const plw_rectifier_state one = solved(&bridge, 0.05, 0), other = solved(&halves, 0.05, 0);
+    const plw_rectifier_state one = steady_state(&bridge, 0.05, 0), other = steady_state(&halves, 0.05, 0);
     assert_near_relative(one.volts, other.volts, 1e-12, "the same path");
     assert_near_relative(one.winding_rms_amps, sqrt(2.0) * other.winding_rms_amps, 1e-12,
                          "one winding for both halves");
@@ -186,7 +170,7 @@ static void unloaded_it_stands_at_the_peak(void **state) {
     (void)state;
     plw_rectifier supply = example();
     const double peak = sqrt(2.0) * 238.5;
-    plw_rectifier_state got = solved(&supply, 0, 0);
+    plw_rectifier_state got = steady_state(&supply, 0, 0);
     for (size_t k = 0; k < 3; k++) {
         assert_near(got.node[k].volts, peak - 0.7, 1e-9, "peak less the drop");
         assert_near(got.node[k].ripple_rms_volts, 0, 0, "nothing drawn");
@@ -194,10 +178,10 @@ static void unloaded_it_stands_at_the_peak(void **state) {
     assert_near(got.peak_inverse_volts, 2 * peak - 0.7, 1e-9, "twice the peak");
     assert_near(plw_rectifier_peak_volts(&supply), peak - 0.7, 1e-9, "peak less the drop");
     supply.diode = plw_diode_vacuum(50, 0.275);
-    got = solved(&supply, 0, 0);
+    got = steady_state(&supply, 0, 0);
     assert_near(got.volts, peak, 1e-9, "a vacuum diode lets the last drop through");
     supply.reservoir_farads = 0;
-    got = solved(&supply, 0, 0);
+    got = steady_state(&supply, 0, 0);
     assert_near(got.volts, peak, 1e-9, "a choke input without load also rises to the peak");
 }
 
@@ -213,7 +197,7 @@ static void drop_near_no_load(void **state) {
     const double peak = 300 * sqrt(2.0), amps[] = {2.385e-9, 1e-7, 1e-5, 1e-4};
     for (size_t i = 0; i < sizeof amps / sizeof amps[0]; i++) {
         const double lead = 0.5 * pow(1.5 * PI * amps[i] * 150 / peak, 2.0 / 3);
-        const double drop = 1 - solved(&supply, amps[i], 0).volts / peak;
+        const double drop = 1 - steady_state(&supply, amps[i], 0).volts / peak;
         assert_near_relative(drop, lead, 2 * lead + 1e-3, "small-angle limit of tan th - th");
     }
 }
@@ -233,7 +217,7 @@ static void overload_is_refused(void **state) {
         assert_memory_equal(&got, &before, sizeof got);
     }
     /* Into a heavy resistor there is always a point. */
-    const plw_rectifier_state heavy = solved(&supply, 0, 12);
+    const plw_rectifier_state heavy = steady_state(&supply, 0, 12);
     assert_true(heavy.volts > 0 && heavy.volts < 10);
 }
 
@@ -247,17 +231,17 @@ static void choke_input_holds_the_mean(void **state) {
     supply.sections = 1;
     supply.section[0] = (plw_filter_section){12, 130, 100e-6};
     const double peak = sqrt(2.0) * 238.5;
-    const plw_rectifier_state got = solved(&supply, 0.083, 0);
+    const plw_rectifier_state got = steady_state(&supply, 0.083, 0);
     assert_near_relative(got.volts, 2 / PI * peak - 0.083 * 130, 1e-5, "mean of a rectified sine");
     assert_true(got.choke_least_amps > 0);
     /* Ripple of the choke: all harmonics, the second being 4/(3 pi) Ep / (2 w L). */
     const double second = 4 / (3 * PI) * peak / (2 * 2 * PI * 50 * 12);
     assert_near_relative(0.083 - got.choke_least_amps, second, 0.2, "second harmonic; the fourth and on add some");
-    const plw_rectifier_state light = solved(&supply, 0.004, 0);
+    const plw_rectifier_state light = steady_state(&supply, 0.004, 0);
     assert_near(light.choke_least_amps, 0, 0, "below the critical current");
     assert_true(light.volts > got.volts + 40);
     supply = example();
-    assert_true(isnan(solved(&supply, 0.05, 0).choke_least_amps));
+    assert_true(isnan(steady_state(&supply, 0.05, 0).choke_least_amps));
 }
 
 static void ideal_parts_and_odd_values(void **state) {
@@ -265,15 +249,15 @@ static void ideal_parts_and_odd_values(void **state) {
     plw_rectifier supply = example();
     supply.path_ohms = 0;
     supply.diode = (plw_diode){PLW_DIODE_SILICON, 0, 0, 0};
-    plw_rectifier_state got = solved(&supply, 0.05, 0);
+    plw_rectifier_state got = steady_state(&supply, 0.05, 0);
     assert_true(got.node[0].peak_volts <= sqrt(2.0) * 238.5 + 1e-9);
     assert_true(got.diode_peak_amps > 0.9 && isfinite(got.winding_rms_amps));
     supply.section[1].farads = 1e-9; /* a stiff corner */
-    got = solved(&supply, 0.05, 0);
+    got = steady_state(&supply, 0.05, 0);
     assert_near(got.node[1].volts - got.node[2].volts, 680 * 0.05, 1e-7, "DC drop");
     supply = example();
     supply.reservoir_farads = 0.5; /* slow to settle: found at once all the same */
-    got = solved(&supply, 0.05, 0);
+    got = steady_state(&supply, 0.05, 0);
     assert_true(got.iterations < 12);
 }
 
@@ -294,7 +278,7 @@ static void line_passes_through_steady_states(void **state) {
         assert_int_equal(line.points, PLW_LINE_POINTS);
         assert_near(line.volts, plw_rectifier_peak_volts(&supply), 1e-9, "off load");
         for (size_t k = 1; k < line.points; k += 6) {
-            const plw_rectifier_state got = solved(&supply, line.point[k].amps, 0);
+            const plw_rectifier_state got = steady_state(&supply, line.point[k].amps, 0);
             assert_near(line.point[k].volts, got.volts, 2e-5 * got.volts, "the steady state there");
             assert_true(line.point[k].volts < line.point[k - 1].volts);
         }
@@ -302,7 +286,7 @@ static void line_passes_through_steady_states(void **state) {
         for (size_t i = 0; i < 4; i++) {
             double volts, ohms, after, before, unused;
             plw_supply_at(&line, amps[i], &volts, &ohms);
-            const plw_rectifier_state got = solved(&supply, amps[i], 0);
+            const plw_rectifier_state got = steady_state(&supply, amps[i], 0);
             assert_near(volts, got.volts, 1e-3 * got.volts, "between the points");
             plw_supply_at(&line, amps[i] + 1e-6, &after, &unused);
             plw_supply_at(&line, amps[i] - 1e-6, &before, &unused);
@@ -318,8 +302,9 @@ static void source_resistance_is_the_slope(void **state) {
         supply.diode = vacuum ? plw_diode_vacuum(17, 0.225) : plw_diode_silicon();
         supply.bleeder_ohms = 100e3;
         const double step = 1e-4;
-        const plw_rectifier_state light = solved(&supply, 0.05 - step, 0), heavy = solved(&supply, 0.05 + step, 0);
-        assert_near_relative(solved(&supply, 0.05, 0).source_ohms, (light.volts - heavy.volts) / (2 * step), 1e-4,
+        const plw_rectifier_state light = steady_state(&supply, 0.05 - step, 0),
+                                  heavy = steady_state(&supply, 0.05 + step, 0);
+        assert_near_relative(steady_state(&supply, 0.05, 0).source_ohms, (light.volts - heavy.volts) / (2 * step), 1e-4,
                              "derivative by differences");
     }
 }

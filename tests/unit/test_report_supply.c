@@ -7,7 +7,8 @@
 #include "near.h"
 #include "platewright/dummy_meaning.h"
 #include "report/cautions.h"
-#include "report_stage.h"
+#include "unit/report_stage.h"
+#include "unit/supplies.h"
 
 typedef struct {
     solved_stage s;
@@ -25,16 +26,10 @@ static void find(found *f) {
     f->s.stage.speaker_ohms = 7.9;
     f->s.tube.heater_volts = 6.3;
     f->s.tube.heater_amps = 0.76;
-    f->plate_supply = (plw_plate_supply){.has_parts = true,
-                                         .has_winding = true,
-                                         .parts = {.connection = PLW_FULL_WAVE,
-                                                   .winding_rms_volts = 231.4,
-                                                   .path_ohms = 173.0,
-                                                   .mains_hertz = 50.0,
-                                                   .diode = plw_diode_silicon(),
-                                                   .reservoir_farads = 47e-6,
-                                                   .sections = 1,
-                                                   .section = {{.ohms = 217.0, .farads = 33e-6}}}};
+    f->plate_supply =
+        (plw_plate_supply){.has_parts = true, .has_winding = true, .parts = usual_rectifier(231.4, 173.0)};
+    f->plate_supply.parts.sections = 1;
+    f->plate_supply.parts.section[0] = (plw_filter_section){.ohms = 217.0, .farads = 33e-6};
     plw_error error = {0};
     if (plw_plate_supply_settle(&f->plate_supply, 0.15, &error) != PLW_OK) {
         fail_msg("%s", error.text);

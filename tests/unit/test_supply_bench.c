@@ -2,29 +2,21 @@
  * SPDX-License-Identifier: GPL-3.0-or-later */
 #include <string.h>
 
-#include "near.h"
 #include "platewright/supply_bench.h"
 #include "platewright/supply_limits.h"
 #include "platewright/transformer.h"
+#include "unit/supplies.h"
 
 static plw_rectifier example(void) {
-    plw_rectifier supply = {.connection = PLW_FULL_WAVE,
-                            .winding_rms_volts = 238.5,
-                            .path_ohms = 163,
-                            .mains_hertz = 50,
-                            .diode = plw_diode_vacuum(20, 0.15),
-                            .reservoir_farads = 47e-6,
-                            .sections = 1};
+    plw_rectifier supply = usual_rectifier(238.5, 163);
+    supply.diode = plw_diode_vacuum(20, 0.15);
+    supply.sections = 1;
     supply.section[0] = (plw_filter_section){7.5, 190, 33e-6};
     return supply;
 }
 
 static double output(const plw_rectifier *supply, double amps, double ohms) {
-    plw_rectifier_state state;
-    plw_error error = {0};
-    const plw_dc_load load = {amps, ohms};
-    assert_int_equal(plw_rectifier_steady(supply, load, &state, &error), PLW_OK);
-    return state.volts;
+    return steady_state(supply, amps, ohms).volts;
 }
 
 static plw_status estimate_of(const plw_rectifier *supply, const plw_bench_reading *readings, size_t count,
@@ -296,10 +288,7 @@ static const plw_supply_check *find(const plw_supply_check *checks, size_t count
 static void ratings_are_compared(void **state) {
     (void)state;
     const plw_rectifier supply = example();
-    plw_rectifier_state steady;
-    plw_error error = {0};
-    const plw_dc_load load = {.amps = 0.08};
-    assert_int_equal(plw_rectifier_steady(&supply, load, &steady, &error), PLW_OK);
+    const plw_rectifier_state steady = steady_state(&supply, 0.08, 0);
     plw_supply_ratings ratings = plw_supply_ratings_unknown();
     plw_supply_check checks[PLW_SUPPLY_CHECKS_MOST];
     size_t count;
@@ -346,10 +335,7 @@ static void silicon_ratings(void **state) {
     supply.diode = plw_diode_silicon();
     supply.connection = PLW_BRIDGE;
     supply.path_ohms = 4;
-    plw_rectifier_state steady;
-    plw_error error = {0};
-    const plw_dc_load load = {.amps = 0.08};
-    assert_int_equal(plw_rectifier_steady(&supply, load, &steady, &error), PLW_OK);
+    const plw_rectifier_state steady = steady_state(&supply, 0.08, 0);
     plw_supply_ratings ratings = plw_supply_ratings_silicon();
     plw_supply_check checks[PLW_SUPPLY_CHECKS_MOST];
     size_t count;
@@ -369,10 +355,7 @@ static void choke_is_judged(void **state) {
     const plw_supply_ratings ratings = plw_supply_ratings_unknown();
     const double amps[] = {0.08, 0.01};
     for (size_t i = 0; i < 2; i++) {
-        plw_rectifier_state steady;
-        plw_error error = {0};
-        const plw_dc_load load = {.amps = amps[i]};
-        assert_int_equal(plw_rectifier_steady(&supply, load, &steady, &error), PLW_OK);
+        const plw_rectifier_state steady = steady_state(&supply, amps[i], 0);
         plw_supply_check checks[PLW_SUPPLY_CHECKS_MOST];
         size_t count;
         assert_int_equal(plw_supply_limits_check(&supply, &steady, &ratings, checks, &count), i == 0);
