@@ -20,7 +20,8 @@ static inline plw_rectifier_state steady_state(const plw_rectifier *supply, doub
     plw_rectifier_state state;
     plw_error error = {0};
     if (plw_rectifier_steady(supply, (plw_dc_load){amps, ohms}, &state, &error) != PLW_OK) {
-        fail_msg("%s", error.text);
+        fail_msg("%g V behind %g ohm into %g A and %g ohm: %s", supply->winding_rms_volts, supply->path_ohms, amps,
+                 ohms, error.text);
     }
     return state;
 }
