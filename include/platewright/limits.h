@@ -19,7 +19,7 @@ typedef struct {
     double value, limit;
     plw_unit unit;
     double share_percent; /* value over limit */
-    bool ok;
+    bool ok;              /* up to a two-thousandth over the limit: three printed digits do not tell it apart */
     plw_when when;
 } plw_rating_check;
 

@@ -4,6 +4,9 @@
 
 #include <math.h>
 
+/* "15.0 W of 15.0 W" is not over a rating: three digits, as printed, tell no less than this apart. */
+#define TOLD_APART 5e-4
+
 typedef struct {
     plw_rating_check *check;
     size_t count;
@@ -14,8 +17,7 @@ static void compare(tally *t, const char *name, double value, double limit, plw_
     if (!isfinite(value) || !isfinite(limit) || t->count >= PLW_RATING_CHECKS_MOST) {
         return;
     }
-    /* The last digits of a solution are not a reason to condemn a stage. */
-    const bool ok = value <= limit * (1.0 + 1e-9);
+    const bool ok = value <= limit * (1.0 + TOLD_APART);
     t->check[t->count++] = (plw_rating_check){
         .name = name,
         .value = value,
