@@ -40,6 +40,7 @@ static const char *shown_by(const char *coefficient) {
         {"knee", "power and distortion at full drive, or currents below the knee"},
         {"division", "a screen current at rest"},
         {"capture", "a screen current at full drive, or screen currents below the knee"},
+        {"foot-growth", "currents near cut-off at several plate volts"},
         {"contact-volts", "currents at several grid volts with the screen held"},
     };
     for (size_t i = 0; i < sizeof table / sizeof table[0]; i++) {

@@ -5,9 +5,11 @@
 #include <math.h>
 
 /* Triode: N. Koren, "Improved Vacuum Tube Models for SPICE Simulations", Glass Audio 8(5), 1996, p. 18, with an offset
- * of the grid volts for the contact potential.
+ * of the grid volts for the contact potential, and with a foot that need not widen in proportion to the plate volts: g,
+ * foot-growth, is 1 in his law.
  *
- *   E1 = (Vp/kp) ln(1 + exp(kp (1/mu + (Vg + Vc)/sqrt(kvb + Vp^2))))        Ip = 2 E1^x / kg1
+ *   k  = kp ((kvb + Vp^2)/V0^2)^((1-g)/2)          V0 = 250 V
+ *   E1 = (Vp/k) ln(1 + exp(k (1/mu + (Vg + Vc)/sqrt(kvb + Vp^2))))        Ip = 2 E1^x / kg1
  *
  * Pentode and beam tube: the same form for the space current, in an equivalent voltage u at the screen's place, and a
  * division of that current between plate and screen.
@@ -24,20 +26,24 @@
  * below the space current.  Division of the space current as a power of the voltage ratio: K. Spangenberg, Proc. IRE
  * 28, May 1940, p. 226; C. M. Wallis, Proc. IRE 35, April 1947.  The moving knee is this project's own. */
 enum { MU, EXPONENT, KG1, KP };
-enum { TRIODE_KVB = KP + 1, TRIODE_CONTACT, TRIODE_COUNT };
+enum { TRIODE_KVB = KP + 1, TRIODE_CONTACT, TRIODE_FOOT_GROWTH, TRIODE_COUNT };
 enum { PENTODE_PENETRATION = KP + 1, PENTODE_KNEE, PENTODE_DIVISION, PENTODE_CAPTURE, PENTODE_CONTACT, PENTODE_COUNT };
 
+#define FOOT_REFERENCE_VOLTS 250.0      /* V0 */
 #define FOOT_VOLTS 1.0                  /* of p */
 #define SCREEN_SOFT_VOLTS_SQUARED 25.0  /* A */
 #define CONTROL_SOFT_VOLTS_SQUARED 50.0 /* B */
 #define HALF_DIVISION_EXPONENT 0.1      /* q/2: one value serves every tube of the catalogue */
 #define CAPTURE_MOST 0.5
+#define FOOT_GROWTH_MOST 2.0
+#define LEAST_PLATE_VOLTS 1e-100 /* of a triode: below it the current is zero to any accuracy */
 #define CONTACT_VOLTS_MOST 20.0
 #define VOLTS_MOST 1e6              /* what lies beyond is taken as this, so that squares stay finite */
 #define LEAST_EFFECTIVE_VOLTS 1e-30 /* below it every current is zero to any accuracy */
 #define HALF_PI 1.57079632679489661923
 
-static const char *const triode_names[TRIODE_COUNT] = {"mu", "exponent", "kg1", "kp", "kvb", "contact-volts"};
+static const char *const triode_names[TRIODE_COUNT] = {"mu",  "exponent",      "kg1",        "kp",
+                                                       "kvb", "contact-volts", "foot-growth"};
 static const char *const pentode_names[PENTODE_COUNT] = {"mu",   "exponent", "kg1",     "kp",           "penetration",
                                                          "knee", "division", "capture", "contact-volts"};
 
@@ -53,7 +59,7 @@ const char *plw_law_coefficient_name(plw_law_kind kind, size_t index) {
 }
 
 const char *plw_law_name(plw_law_kind kind) {
-    return kind == PLW_LAW_TRIODE ? "koren-contact" : "moving-knee";
+    return kind == PLW_LAW_TRIODE ? "koren-foot" : "moving-knee";
 }
 
 static bool is_contact(plw_law_kind kind, size_t index) {
@@ -80,6 +86,10 @@ plw_status plw_law_validate(const plw_law *law, plw_error *error) {
     if (!(exponent > 1.0 && exponent <= 3.0)) {
         return plw_fail(error, PLW_E_DATA, "coefficient exponent is %g; it lies between 1 and 3", exponent);
     }
+    if (law->kind == PLW_LAW_TRIODE && law->coefficient[TRIODE_FOOT_GROWTH] > FOOT_GROWTH_MOST) {
+        return plw_fail(error, PLW_E_DATA, "coefficient foot-growth is %g; it lies between 0 and %g, 1 in Koren's law",
+                        law->coefficient[TRIODE_FOOT_GROWTH], FOOT_GROWTH_MOST);
+    }
     if (law->kind == PLW_LAW_PENTODE && law->coefficient[PENTODE_CAPTURE] > CAPTURE_MOST) {
         return plw_fail(error, PLW_E_DATA,
                         "coefficient capture is %g; above %g plate and screen would take more than the cathode gives",
@@ -88,7 +98,22 @@ plw_status plw_law_validate(const plw_law *law, plw_error *error) {
     return PLW_OK;
 }
 
-/* Effective voltage E1 of an electrode at `volts` under the grid's control, with its derivatives. */
+/* ln(1 + exp(a)), its slope, and what it lies above a times its slope, from one exponential. */
+typedef struct {
+    double value, slope, above_chord;
+} softplus;
+
+static inline softplus softplus_of(double a) {
+    const double small = exp(-fabs(a));
+    const double rest = log1p(small);
+    return (softplus){
+        .value = (a > 0.0 ? a : 0.0) + rest,
+        .slope = (a > 0.0 ? 1.0 : small) / (1.0 + small),
+        .above_chord = rest + fabs(a) * small / (1.0 + small),
+    };
+}
+
+/* Effective voltage E1 of an electrode under the grid's control, with its derivatives. */
 typedef struct {
     double volts, by_electrode, by_grid;
 } effective;
@@ -96,15 +121,26 @@ typedef struct {
 static inline effective effective_volts(double mu, double kp, double soft_squared, double volts, double grid_volts) {
     const double root = sqrt(soft_squared + volts * volts);
     const double drive = grid_volts / root;
-    const double argument = kp * (1.0 / mu + drive);
-    /* Softplus and its derivative from one exponential. */
-    const double small = exp(-fabs(argument));
-    const double soft = (argument > 0.0 ? argument : 0.0) + log1p(small);
-    const double slope = (argument > 0.0 ? 1.0 : small) / (1.0 + small);
+    const softplus soft = softplus_of(kp * (1.0 / mu + drive));
     return (effective){
-        .volts = volts / kp * soft,
-        .by_electrode = soft / kp - volts * slope * drive * volts / (root * root),
-        .by_grid = volts * slope / root,
+        .volts = volts / kp * soft.value,
+        .by_electrode = soft.value / kp - volts * soft.slope * drive * volts / (root * root),
+        .by_grid = volts * soft.slope / root,
+    };
+}
+
+static inline effective triode_effective_volts(const double *c, double plate_volts, double grid_volts) {
+    const double root_squared = c[TRIODE_KVB] + plate_volts * plate_volts;
+    const double root = sqrt(root_squared);
+    const double part = plate_volts * plate_volts / root_squared;
+    const double drive = (grid_volts + c[TRIODE_CONTACT]) / root;
+    const double narrowing = 1.0 - c[TRIODE_FOOT_GROWTH];
+    const double k = c[KP] * pow(root / FOOT_REFERENCE_VOLTS, narrowing);
+    const softplus soft = softplus_of(k * (1.0 / c[MU] + drive));
+    return (effective){
+        .volts = plate_volts / k * soft.value,
+        .by_electrode = (soft.value - narrowing * part * soft.above_chord) / k - part * soft.slope * drive,
+        .by_grid = plate_volts * soft.slope / root,
     };
 }
 
@@ -131,11 +167,11 @@ static void grid_current(const plw_law *law, double grid_volts, plw_currents *cu
 }
 
 static void triode_currents(const plw_law *law, double plate_volts, double grid_volts, plw_currents *currents) {
-    if (plate_volts <= 0.0) {
+    if (plate_volts < LEAST_PLATE_VOLTS) {
         return;
     }
     const double *c = law->coefficient;
-    const effective e = effective_volts(c[MU], c[KP], c[TRIODE_KVB], plate_volts, grid_volts + c[TRIODE_CONTACT]);
+    const effective e = triode_effective_volts(c, plate_volts, grid_volts);
     if (e.volts < LEAST_EFFECTIVE_VOLTS) {
         return;
     }

@@ -15,9 +15,9 @@ static inline plw_law made_up_law(plw_law_kind kind) {
     static const struct {
         const char *name;
         double pentode, triode;
-    } table[] = {{"mu", 19.5, 3.95},   {"exponent", 1.35, 1.4}, {"kg1", 400, 1500}, {"kp", 100, 65},
-                 {"kvb", 1, 300},      {"capture", 0.4, 1},     {"knee", 1.9, 1},   {"penetration", 0.004, 1},
-                 {"division", 8.5, 1}, {"contact-volts", 0, 0}};
+    } table[] = {{"mu", 19.5, 3.95},   {"exponent", 1.35, 1.4}, {"kg1", 400, 1500},   {"kp", 100, 65},
+                 {"kvb", 1, 300},      {"capture", 0.4, 1},     {"knee", 1.9, 1},     {"penetration", 0.004, 1},
+                 {"division", 8.5, 1}, {"contact-volts", 0, 0}, {"foot-growth", 1, 1}};
     plw_law law = {.kind = kind};
     for (size_t i = 0; i < plw_law_coefficient_count(kind); i++) {
         law.coefficient[i] = 1.0;

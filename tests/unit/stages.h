@@ -57,8 +57,8 @@ static inline double *coefficient_of(plw_law *law, const char *name) {
 }
 
 static inline plw_law triode_law(double mu, double exponent, double kg1, double kp, double kvb) {
-    const named_value values[] = {{"mu", mu}, {"exponent", exponent}, {"kg1", kg1},
-                                  {"kp", kp}, {"kvb", kvb},           {"contact-volts", 0.0}};
+    const named_value values[] = {{"mu", mu},   {"exponent", exponent}, {"kg1", kg1},        {"kp", kp},
+                                  {"kvb", kvb}, {"contact-volts", 0.0}, {"foot-growth", 1.0}};
     return law_of(PLW_LAW_TRIODE, values, sizeof values / sizeof values[0]);
 }
 

@@ -56,7 +56,7 @@ static void test_nothing_to_remark(void **state) {
     plw_tube *tube = tube_from(PLW_KIND_TRIODE, TRIODE CURVES);
     char *text = text_of(tube);
     expect(text, "6X99\n", true);
-    expect(text, "Model: koren-contact, fitted to 0 rows and 5 points", true);
+    expect(text, "Model: koren-foot, fitted to 0 rows and 5 points", true);
     expect(text, "Cannot both be true", false);
     expect(text, "did not settle", false);
     expect(text, "Stands out", false);
