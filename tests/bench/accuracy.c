@@ -1,12 +1,12 @@
 /* The law against every printed row of confidence high and medium: in the fit, with the row left out of the fit, and
  * triode-connected rows and characteristics predicted from pentode rows alone.  Run by `make accuracy`.
  *
- *   accuracy [--screened] [--summary NAME | --coefficients NAME] [FOLDER]
+ *   accuracy [--screened | --triodes] [--summary NAME | --coefficients NAME] [FOLDER]
  *
- * --screened      pentodes and beam tubes only
+ * --screened      pentodes and beam tubes only; --triodes: triodes only
  * --summary       for programs, with tabs between: NAME, basis, figure, then either "row", type, place, error (a point
  *                 has its place negative, -1 the first) or "total", median, 90 %, count
- * --coefficients  for programs: NAME, kind of tube, type, family (or type), coefficient, its place, value
+ * --coefficients  for programs: NAME, kind of tube (triodes with a filament apart), type, family (or type), coefficient, its place, value
  * SPDX-License-Identifier: GPL-3.0-or-later */
 #include <math.h>
 #include <stdint.h>
@@ -49,7 +49,7 @@ static const char *const set_names[SETS] = {"fit", "left out", "as triode"};
 typedef enum { WHOLE, SUMMARY, COEFFICIENTS } output;
 
 typedef struct {
-    bool screened_only;
+    bool screened_only, triodes_only;
     output output;
     const char *name;
     const char *folder;
@@ -230,9 +230,10 @@ static void compare_as_triode(comparison *all, const plw_tube *tube) {
 
 static void print_coefficients(const comparison *all, const plw_tube *tube, const plw_law *law) {
     for (size_t index = 0; index < plw_law_coefficient_count(law->kind); index++) {
-        printf("%s\t%s\t%s\t%s\t%s\t%zu\t%.6g\n", all->name, plw_tube_kind_name(tube->kind), tube->type,
-               tube->family != NULL ? tube->family : tube->type, plw_law_coefficient_name(law->kind, index), index,
-               law->coefficient[index]);
+        printf("%s\t%s%s\t%s\t%s\t%s\t%zu\t%.6g\n", all->name,
+               tube->kind == PLW_KIND_TRIODE && tube->directly_heated ? "filament " : "",
+               plw_tube_kind_name(tube->kind), tube->type, tube->family != NULL ? tube->family : tube->type,
+               plw_law_coefficient_name(law->kind, index), index, law->coefficient[index]);
     }
 }
 
@@ -301,6 +302,8 @@ static bool read_words(int count, char **words, comparison *all) {
         const bool named = at + 1 < count;
         if (strcmp(words[at], "--screened") == 0) {
             all->screened_only = true;
+        } else if (strcmp(words[at], "--triodes") == 0) {
+            all->triodes_only = true;
         } else if (named && (strcmp(words[at], "--summary") == 0 || strcmp(words[at], "--coefficients") == 0)) {
             all->output = words[at][2] == 's' ? SUMMARY : COEFFICIENTS;
             all->name = words[++at];
@@ -320,7 +323,7 @@ int main(int count, char **words) {
     size_t tubes_count;
     plw_error error = {0};
     if (!read_words(count, words, &all)) {
-        fputs("accuracy: [--screened] [--summary NAME | --coefficients NAME] [FOLDER]\n", stderr);
+        fputs("accuracy: [--screened | --triodes] [--summary NAME | --coefficients NAME] [FOLDER]\n", stderr);
         return 2;
     }
     if (plw_catalogue_open(&all.folder, 1, &catalogue, &error) != PLW_OK ||
@@ -333,7 +336,8 @@ int main(int count, char **words) {
     }
     for (size_t index = 0; index < tubes_count; index++) {
         const plw_tube_kind kind = tubes[index]->kind;
-        if (kind != PLW_KIND_RECTIFIER && !(all.screened_only && kind == PLW_KIND_TRIODE)) {
+        const bool left_aside = kind == PLW_KIND_TRIODE ? all.screened_only : all.triodes_only;
+        if (kind != PLW_KIND_RECTIFIER && !left_aside) {
             compare_tube(&all, tubes[index]);
         }
     }

@@ -1,5 +1,4 @@
-/* The functions of the law for a candidate: triodes and grid current as shipped, pentodes and beam tubes by the
- * candidate.
+/* The functions of the law for a candidate: grid current and tubes of the other kind as shipped.
  * SPDX-License-Identifier: GPL-3.0-or-later */
 #include "candidate.h"
 
@@ -102,22 +101,22 @@ sloped candidate_space_current(const double *c, sloped u, sloped grid, double so
 /* ---- the functions of law.h -------------------------------------------------------------------------------------- */
 
 size_t plw_law_coefficient_count(plw_law_kind kind) {
-    return kind == PLW_LAW_TRIODE ? shipped_coefficient_count(kind) : candidate_law.count;
+    return kind != candidate_law.kind ? shipped_coefficient_count(kind) : candidate_law.count;
 }
 
 const char *plw_law_coefficient_name(plw_law_kind kind, size_t index) {
-    if (kind == PLW_LAW_TRIODE) {
+    if (kind != candidate_law.kind) {
         return shipped_coefficient_name(kind, index);
     }
     return index < candidate_law.count ? candidate_law.names[index] : NULL;
 }
 
 const char *plw_law_name(plw_law_kind kind) {
-    return kind == PLW_LAW_TRIODE ? shipped_name(kind) : candidate_law.name;
+    return kind != candidate_law.kind ? shipped_name(kind) : candidate_law.name;
 }
 
 plw_status plw_law_validate(const plw_law *law, plw_error *error) {
-    if (law->kind == PLW_LAW_TRIODE) {
+    if (law->kind != candidate_law.kind) {
         return shipped_validate(law, error);
     }
     for (size_t index = 0; index < candidate_law.count; index++) {
@@ -131,7 +130,7 @@ plw_status plw_law_validate(const plw_law *law, plw_error *error) {
 
 void plw_law_evaluate(const plw_law *law, double plate_volts, double screen_volts, double grid_volts,
                       plw_currents *currents) {
-    if (law->kind == PLW_LAW_TRIODE || candidate_law.currents == NULL) {
+    if (law->kind != candidate_law.kind || candidate_law.currents == NULL) {
         shipped_evaluate(law, plate_volts, screen_volts, grid_volts, currents);
         return;
     }

@@ -1,5 +1,5 @@
-/* A candidate for the law of pentodes and beam tubes, which is to stand in the shipped law's place when a program is
- * linked.
+/* A candidate for the law of pentodes and beam tubes, or of triodes, which is to stand in the shipped law's place when a
+ * program is linked.
  * SPDX-License-Identifier: GPL-3.0-or-later */
 #ifndef TESTS_LAWS_CANDIDATE_H
 #define TESTS_LAWS_CANDIDATE_H
@@ -33,11 +33,12 @@ sloped candidate_space_current(const double *c, sloped u, sloped grid, double so
 
 typedef struct {
     const char *name;
+    plw_law_kind kind;        /* tubes of the other kind keep the shipped law and its expectations */
     size_t count;             /* of coefficients; mu, exponent, kg1, kp first, and every current is as 1/kg1 */
     const char *const *names; /* of the coefficients */
     size_t signed_index;      /* the one that may have either sign, or PLW_LAW_COEFFICIENTS_MOST */
     const double *most;       /* the largest value of each, or NULL */
-    /* Plate and screen current; NULL: the shipped law.  screen > 0 or plate > 0 */
+    /* Plate and screen current; NULL: the shipped law, as for every triode.  screen > 0 or plate > 0 */
     void (*currents)(const double *c, sloped plate, sloped screen, sloped grid, sloped *plate_amps,
                      sloped *screen_amps);
     const plw_expectation *weak; /* wide ones, for the first pass */

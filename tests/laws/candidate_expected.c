@@ -1,4 +1,4 @@
-/* What is expected of a candidate's coefficients: of triodes as shipped, of pentodes and beam tubes its own.
+/* What is expected of a candidate's coefficients; of tubes of the other kind as shipped.
  * SPDX-License-Identifier: GPL-3.0-or-later */
 #include <math.h>
 #include <stdio.h>
@@ -57,7 +57,8 @@ static void read_expectations(const char *name) {
 
 /* Each type's own, from the file that the variable EXPECTATIONS of the environment names; without it the wide ones. */
 const plw_expectation *plw_law_expectations(const plw_tube *tube) {
-    if (tube->kind != PLW_KIND_BEAM && tube->kind != PLW_KIND_PENTODE) {
+    const bool screened = tube->kind == PLW_KIND_BEAM || tube->kind == PLW_KIND_PENTODE;
+    if (screened != (candidate_law.kind == PLW_LAW_PENTODE)) {
         return shipped_expectations(tube);
     }
     const char *name = getenv("EXPECTATIONS");
@@ -76,11 +77,11 @@ const plw_expectation *plw_law_expectations(const plw_tube *tube) {
 }
 
 size_t plw_law_signed_coefficient(plw_law_kind kind) {
-    return kind == PLW_LAW_TRIODE ? shipped_signed_coefficient(kind) : candidate_law.signed_index;
+    return kind != candidate_law.kind ? shipped_signed_coefficient(kind) : candidate_law.signed_index;
 }
 
 double plw_law_coefficient_most(plw_law_kind kind, size_t index) {
-    if (kind == PLW_LAW_TRIODE) {
+    if (kind != candidate_law.kind) {
         return shipped_coefficient_most(kind, index);
     }
     return candidate_law.most != NULL && candidate_law.most[index] > 0.0 ? candidate_law.most[index] : (double)INFINITY;

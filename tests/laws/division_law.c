@@ -44,6 +44,7 @@ static const plw_expectation weak[COUNT] = {{10.0, 1.0}, {1.5, 0.08}, {1000.0, 3
 
 const candidate candidate_law = {
     .name = "division",
+    .kind = PLW_LAW_PENTODE,
     .count = COUNT,
     .names = names,
     .signed_index = CONTACT,

@@ -3,7 +3,8 @@
 # the line of type '*' is over all tubes of the kind, for the reader.
 #
 # Value: the median.  Deviation: half of what lies between 16 and 84 %, within limits that are the same for every law.
-# Of the logarithm; of kp: of kp/mu; of contact-volts: of the value itself.  mu and kg1 are left open.
+# Of the logarithm; of kp: of kp/mu; of contact-volts: of the value itself.  mu and kg1 are left open, foot-growth is
+# what the candidate has it to be.
 # SPDX-License-Identifier: GPL-3.0-or-later
 BEGIN { FS = "\t" }
 
@@ -29,6 +30,7 @@ function expect(type, kind, but_family,    place, middle, spread, name) {
     for (place = 0; place < places; place++) {
         name = name_of[place]
         collect(kind, place, but_family)
+        if (n == 0) continue
         middle = quantile(0.5)
         spread = (quantile(0.84) - quantile(0.16)) / 2
         if (name == "contact-volts") spread = limited(spread, 0.2, 0.5)
@@ -36,6 +38,7 @@ function expect(type, kind, but_family,    place, middle, spread, name) {
             middle = exp(middle)
             spread = name == "exponent" ? limited(spread, 0.02, 0.08) : limited(spread, 0.3, 1.0)
         }
+        if (name == "foot-growth") spread = 0.02
         if (name == "mu") { middle = 10; spread = 1 }
         if (name == "kg1") { middle = 1000; spread = 3 }
         if (type == "*") printf "%-12s %-8s %-14s %10.3g  +/- %.2g (%d tubes)\n", law, kind, name, middle, spread, n
@@ -60,6 +63,8 @@ END {
     if (summary) {
         expect("*", "pentode", "")
         expect("*", "beam", "")
+        expect("*", "triode", "")
+        expect("*", "filament triode", "")
     } else {
         for (tube = 1; tube <= tubes; tube++) expect(type_of[tube], kind_of[tube], family_of[tube])
     }
