@@ -98,7 +98,7 @@ plw_status plw_law_validate(const plw_law *law, plw_error *error) {
     return PLW_OK;
 }
 
-/* ln(1 + exp(a)), its slope, and what it lies above a times its slope, from one exponential. */
+/* ln(1 + exp(a)), its slope, and value - a slope without cancellation, from one exponential. */
 typedef struct {
     double value, slope, above_chord;
 } softplus;
@@ -156,14 +156,12 @@ static void grid_current(const plw_law *law, double grid_volts, plw_currents *cu
     if (grid_volts <= GRID_SILENT_VOLTS) {
         return;
     }
-    const double argument = (grid_volts + GRID_ONSET_VOLTS) / GRID_SOFT_VOLTS;
-    const double small = exp(-fabs(argument));
-    const double effective_grid_volts = GRID_SOFT_VOLTS * ((argument > 0.0 ? argument : 0.0) + log1p(small));
-    const double slope = (argument > 0.0 ? 1.0 : small) / (1.0 + small);
+    const softplus soft = softplus_of((grid_volts + GRID_ONSET_VOLTS) / GRID_SOFT_VOLTS);
+    const double effective_grid_volts = GRID_SOFT_VOLTS * soft.value;
     const double perveance = 1.0 / law->coefficient[KG1];
     const double root = sqrt(effective_grid_volts);
     currents->grid_amps = perveance * effective_grid_volts * root;
-    currents->grid_by_grid = 1.5 * perveance * root * slope;
+    currents->grid_by_grid = 1.5 * perveance * root * soft.slope;
 }
 
 static void triode_currents(const plw_law *law, double plate_volts, double grid_volts, plw_currents *currents) {
