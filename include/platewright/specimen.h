@@ -24,6 +24,7 @@ typedef struct {
     double model_cathode_amps; /* the bogey tube at the same voltages */
     double off_percent;        /* this tube's cathode current against the bogey's */
     double primary_ohms;       /* from supply and plate readings; NaN when not both were taken */
+    double screen_feed_ohms;   /* from the screen's reading and what feeds it, per tube; NaN when it was not taken */
     char doubt[320];           /* what can hardly be true of the readings; empty when nothing strikes */
     bool as_built_solved;
     plw_bias_option as_built; /* the stage as built with this very tube: rest, signal, ratings */
@@ -31,6 +32,7 @@ typedef struct {
     plw_tube tube;            /* shallow copy with the scaled law: do not free */
     bool resistor_found;
     plw_bias_choice choice;      /* the resistor that would suit this very tube */
+    double aim_before_percent;   /* 0, or what the usual aim was before it was lowered for the mains high */
     char resistor_obstacle[256]; /* why none was found */
 } plw_specimen;
 
@@ -38,11 +40,12 @@ typedef struct {
 #define PLW_SPECIMEN_MOST_PERCENT 60.0
 #define PLW_SPECIMEN_LEAST_PERCENT (-50.0)
 
-/* In:   a stage with a cathode resistor (with fixed bias the cathode does not tell the current), the readings
+/* In:   a stage with a cathode resistor (with fixed bias the cathode does not tell the current), the readings; the aim of
+ *       the resistor of its own, NULL: as plw_bias_choose_for_mains()
  * Out:  *specimen; its stage points into itself: do not copy it by value
  * Ret:  PLW_OK; PLW_E_USAGE: no cathode reading, fixed bias, readings that contradict each other (plate above supply,
  *       cathode above plate) */
-PLW_API plw_status plw_specimen_measure(const plw_stage *stage, const plw_meter_readings *readings, plw_aim aim,
+PLW_API plw_status plw_specimen_measure(const plw_stage *stage, const plw_meter_readings *readings, const plw_aim *aim,
                                         plw_series series, plw_specimen *specimen, plw_error *error) PLW_MUST_USE;
 
 /* Does this very tube keep its ratings: at rest as measured and, where it could be solved, in the stage as built, at

@@ -108,7 +108,9 @@ static plw_status check(cli_work *work, const plw_meter_readings *readings, plw_
         status = plw_bias_option_solve(&work->stage, work->stage.cathode_resistor_ohms, &option, error);
     }
     if (status == PLW_OK && specimen != NULL) {
-        status = plw_specimen_measure(&work->stage, readings, work->aim, work->series, specimen, error);
+        status =
+            plw_specimen_measure(&work->stage, readings, cli_argument_given(work->arguments, "aim") ? &work->aim : NULL,
+                                 work->series, specimen, error);
     }
     if (status != PLW_OK) {
         return status;

@@ -52,6 +52,7 @@ const plw_field plw_specimen_fields[] = {
     MEASURED(plate_watts),
     MEASURED(screen_watts),
     MEASURED(primary_ohms),
+    MEASURED(screen_feed_ohms),
     MEASURED(model_cathode_amps),
     MEASURED(off_percent),
 };

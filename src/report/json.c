@@ -234,6 +234,7 @@ static void put_specimen(const plw_json_sink *root, const plw_specimen *specimen
         {"model_cathode_amps", specimen->model_cathode_amps},
         {"off_percent", specimen->off_percent},
         {"primary_ohms", specimen->primary_ohms},
+        {"screen_feed_ohms", specimen->screen_feed_ohms},
     };
     for (size_t i = 0; i < sizeof figures / sizeof figures[0]; i++) {
         plw_json_put_number(&s, figures[i].name, figures[i].value);

@@ -390,12 +390,18 @@ static void specimen_lines(FILE *out, const plw_answer *a) {
     if (isfinite(s->primary_ohms)) {
         fprintf(out, "  copper             %s between supply and plate\n", plw_cell_ohms(s->primary_ohms).text);
     }
+    if (isfinite(s->screen_feed_ohms)) {
+        fprintf(out, "  screen feed        %s, by the model's screen current\n",
+                plw_cell_ohms(s->screen_feed_ohms).text);
+    }
     if (s->doubt[0] != '\0') {
         plw_put_paragraph(out, "  DOUBTFUL           ", s->doubt);
     }
-    if (!s->plate_read || !s->supply_read) {
-        fprintf(out, "  not read           so taken from the model:%s%s\n", s->supply_read ? "" : " supply",
-                s->plate_read ? "" : " plate");
+    if (!s->plate_read) {
+        fprintf(out, "  not read           so taken from the model:%s plate\n", s->supply_read ? "" : " supply");
+    } else if (!s->supply_read) {
+        fprintf(out, "  not read           supply: taken as %s, by the plate's reading\n",
+                plw_cell_volts(s->supply_volts).text);
     }
     if (s->off_percent > PLW_SPECIMEN_MOST_PERCENT || s->off_percent < PLW_SPECIMEN_LEAST_PERCENT) {
         return; /* a resistor for readings that are not believed would be no help */
@@ -404,6 +410,13 @@ static void specimen_lines(FILE *out, const plw_answer *a) {
         const plw_bias_option *o = &s->choice.option[s->choice.chosen];
         fprintf(out, "  its own resistor   %s, for ", plw_cell_ohms(o->ohms).text);
         aim_words(out, &s->choice.aim);
+        if (s->aim_before_percent > 0.0) {
+            fprintf(out, "\n                     (lowered from %.3g %%, for the mains 10 %% high)",
+                    s->aim_before_percent);
+        }
+        if (!s->choice.aim_reached) {
+            fputs("\n                     as near as another rating lets it", out);
+        }
         fprintf(out, ";\n                     then cathode %s, plate %s, %s\n",
                 plw_cell_volts(o->quiescent.cathode_volts).text, plw_cell_amps(o->quiescent.plate_amps).text,
                 plw_cell_watts(o->quiescent.plate_watts).text);

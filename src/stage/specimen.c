@@ -6,7 +6,11 @@
 #include <stdio.h>
 #include <string.h>
 
+#include "platewright/mains.h"
 #include "stage/circuit.h"
+
+/* Two meter readings in a row may differ from what they should by this. */
+#define SCREEN_READING_VOLTS 5.0
 
 static plw_status validate_readings(const plw_stage *stage, const plw_meter_readings *r, plw_error *error) {
     if (!isfinite(stage->cathode_resistor_ohms)) {
@@ -50,6 +54,17 @@ static plw_status validate_readings(const plw_stage *stage, const plw_meter_read
     return PLW_OK;
 }
 
+/* What feeds the screen, before its resistor. */
+static double screen_source_volts(const plw_stage *stage, const plw_circuit *circuit, const plw_specimen *s) {
+    double volts = isfinite(stage->screen_supply_volts) ? stage->screen_supply_volts : s->supply_volts;
+    const double through = s->plate_amps + circuit->tap * s->screen_amps;
+    if (circuit->screen_on_primary && through > 0.0) {
+        /* The copper up to the tap carries both currents, the rest the plate's alone. */
+        volts += circuit->tap * (s->plate_to_ground_volts - s->supply_volts) * s->cathode_amps / through;
+    }
+    return volts;
+}
+
 /* Currents at a share of the screen assumed, and with them the voltages read or, where none was read, those that the
  * circuit leaves.
  * Ret:  the share that the law gives at those voltages */
@@ -60,18 +75,16 @@ static double currents_at_share(const plw_stage *stage, const plw_circuit *circu
     const double amps[PLW_FLOWS] = {s->plate_amps, s->screen_amps};
     double ohms;
     plw_supply_at(&stage->supply, plw_circuit_supply_amps(circuit, amps), &s->supply_volts, &ohms);
+    const double through = s->plate_amps + circuit->tap * s->screen_amps;
     if (s->supply_read) {
         s->supply_volts = r->supply_volts;
+    } else if (s->plate_read) { /* the plate's reading and the copper as told say more of it than its description */
+        s->supply_volts = r->plate_volts + circuit->primary_ohms * through;
     }
-    const double through = s->plate_amps + circuit->tap * s->screen_amps;
     s->plate_to_ground_volts = s->plate_read ? r->plate_volts : s->supply_volts - circuit->primary_ohms * through;
-    double screen_source = isfinite(stage->screen_supply_volts) ? stage->screen_supply_volts : s->supply_volts;
-    if (circuit->screen_on_primary && through > 0.0) {
-        /* The copper up to the tap carries both currents, the rest the plate's alone. */
-        screen_source += circuit->tap * (s->plate_to_ground_volts - s->supply_volts) * s->cathode_amps / through;
-    }
     s->screen_to_ground_volts =
-        s->screen_read ? r->screen_volts : screen_source - stage->screen_resistor_ohms * s->screen_amps;
+        s->screen_read ? r->screen_volts
+                       : screen_source_volts(stage, circuit, s) - stage->screen_resistor_ohms * s->screen_amps;
     s->plate_volts = s->plate_to_ground_volts - s->cathode_volts;
     s->screen_volts = s->screen_to_ground_volts - s->cathode_volts;
     plw_currents c;
@@ -97,18 +110,21 @@ static void settle_currents(const plw_stage *stage, const plw_circuit *circuit, 
     (void)currents_at_share(stage, circuit, r, 0.5 * (low + high), s);
 }
 
-/* The stage as it is on the bench: supply, copper and tube as read. */
+/* The stage as it is on the bench: supply, copper, screen feed and tube as read. */
 static void measured_stage(const plw_stage *stage, const plw_circuit *circuit, plw_specimen *s) {
     s->tube = *stage->tube;
     plw_law_scale(&s->tube.model.law, s->cathode_amps / s->model_cathode_amps);
     s->stage = *stage;
     s->stage.tube = &s->tube;
     const double amps[PLW_FLOWS] = {s->plate_amps, s->screen_amps};
-    if (s->supply_read) {
-        double volts;
-        double ohms;
-        plw_supply_at(&stage->supply, plw_circuit_supply_amps(circuit, amps), &volts, &ohms);
-        s->stage.supply = plw_supply_moved(&stage->supply, s->supply_volts - volts);
+    double volts;
+    double ohms;
+    plw_supply_at(&stage->supply, plw_circuit_supply_amps(circuit, amps), &volts, &ohms);
+    s->stage.supply = plw_supply_moved(&stage->supply, s->supply_volts - volts);
+    s->screen_feed_ohms = (double)NAN;
+    if (s->screen_read && s->screen_amps > 0.0) {
+        const double fall = screen_source_volts(stage, circuit, s) - s->screen_to_ground_volts;
+        s->screen_feed_ohms = s->stage.screen_resistor_ohms = fmax(fall / s->screen_amps, 0.0);
     }
     s->primary_ohms = (double)NAN;
     if (s->supply_read && s->plate_read) {
@@ -134,7 +150,7 @@ static plw_status compare_with_supply(const plw_stage *stage, const plw_meter_re
 }
 
 /* What can hardly be true of the readings, though nothing forbids it. */
-static void doubt_readings(const plw_stage *told, plw_specimen *s) {
+static void doubt_readings(const plw_stage *told, double told_volts, plw_specimen *s) {
     s->doubt[0] = '\0';
     if (s->off_percent > PLW_SPECIMEN_MOST_PERCENT) {
         snprintf(
@@ -150,10 +166,21 @@ static void doubt_readings(const plw_stage *told, plw_specimen *s) {
         snprintf(s->doubt, sizeof s->doubt,
                  "Between supply and plate lie %.0f ohm, where the primary was told to have %.0f: read both again.",
                  s->primary_ohms, told->primary_ohms);
+    } else if (s->supply_read && fabs(s->screen_feed_ohms - told->screen_resistor_ohms) >
+                                     0.4 * told->screen_resistor_ohms + SCREEN_READING_VOLTS / s->screen_amps) {
+        snprintf(s->doubt, sizeof s->doubt,
+                 "By the model's screen current %.0f ohm lie in the screen's feed, where %.0f were told: what follows "
+                 "takes it as read; look for a resistor or a leaky capacitor there, or read it again.",
+                 s->screen_feed_ohms, told->screen_resistor_ohms);
+    } else if (s->plate_read && !s->supply_read && fabs(s->supply_volts - told_volts) > 0.05 * told_volts) {
+        snprintf(s->doubt, sizeof s->doubt,
+                 "With %.4g V at the plate the supply gives %.0f V, where %.0f were told: what follows takes it as "
+                 "read; read the supply too.",
+                 s->plate_to_ground_volts, s->supply_volts, told_volts);
     }
 }
 
-plw_status plw_specimen_measure(const plw_stage *stage, const plw_meter_readings *readings, plw_aim aim,
+plw_status plw_specimen_measure(const plw_stage *stage, const plw_meter_readings *readings, const plw_aim *aim,
                                 plw_series series, plw_specimen *specimen, plw_error *error) {
     plw_status status = plw_stage_validate(stage, true, error);
     if (status == PLW_OK) {
@@ -196,13 +223,20 @@ plw_status plw_specimen_measure(const plw_stage *stage, const plw_meter_readings
     s->screen_watts = s->screen_volts * s->screen_amps;
     s->off_percent = 100.0 * (s->cathode_amps / s->model_cathode_amps - 1.0);
     measured_stage(stage, &circuit, s);
-    doubt_readings(stage, s);
+    const double amps[PLW_FLOWS] = {s->plate_amps, s->screen_amps};
+    double told_volts;
+    double ohms;
+    plw_supply_at(&stage->supply, plw_circuit_supply_amps(&circuit, amps), &told_volts, &ohms);
+    doubt_readings(stage, told_volts, s);
     plw_error unsolved = {0};
     s->as_built_solved = plw_bias_option_solve(&s->stage, (double)NAN, &s->as_built, &unsolved) == PLW_OK;
     plw_stage wanted = s->stage;
     wanted.cathode_resistor_ohms = (double)NAN;
     plw_error why = {0};
-    s->resistor_found = plw_bias_choose(&wanted, aim, series, &s->choice, &why) == PLW_OK;
+    const plw_status chosen =
+        aim != NULL ? plw_bias_choose(&wanted, *aim, series, &s->choice, &why)
+                    : plw_bias_choose_for_mains(&wanted, series, &s->choice, &s->aim_before_percent, &why);
+    s->resistor_found = chosen == PLW_OK;
     if (!s->resistor_found) {
         snprintf(s->resistor_obstacle, sizeof s->resistor_obstacle, "%.250s", why.text);
     }

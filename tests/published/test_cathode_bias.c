@@ -147,7 +147,7 @@ static void two_tubes_on_one_resistor(void **state) {
     const plw_meter_readings readings = {UNKNOWN, 334.0, UNKNOWN, 11.6};
     plw_specimen specimen;
     assert_int_equal(
-        plw_specimen_measure(&stage, &readings, (plw_aim){PLW_AIM_CURRENT, 30e-3}, PLW_E12, &specimen, NULL), PLW_OK);
+        plw_specimen_measure(&stage, &readings, &(plw_aim){PLW_AIM_CURRENT, 30e-3}, PLW_E12, &specimen, NULL), PLW_OK);
     assert_near(2e3 * specimen.cathode_amps, 52.7, 0.05, "11.6 V / 220 ohm, printed 52.7 mA");
     assert_near(specimen.plate_volts, 322.4, 1e-9, "334 V - 11.6 V");
     assert_near(specimen.plate_watts, 8.495, 0.006, "printed 8.495 W, from 52.7 mA rounded");

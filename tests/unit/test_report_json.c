@@ -189,7 +189,7 @@ static void a_tube_on_the_bench_is_told(void **state) {
     const plw_meter_readings readings = {nan, nan, nan, 0.93 * rest->cathode_volts};
     const plw_aim aim = {PLW_AIM_DISSIPATION, PLW_AIM_DEFAULT_PERCENT};
     plw_error error = {0};
-    if (plw_specimen_measure(&s.stage, &readings, aim, PLW_E24, &specimen, &error) != PLW_OK) {
+    if (plw_specimen_measure(&s.stage, &readings, &aim, PLW_E24, &specimen, &error) != PLW_OK) {
         fail_msg("%s", error.text);
     }
     s.answer.specimen = &specimen;

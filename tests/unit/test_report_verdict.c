@@ -111,7 +111,7 @@ static void a_triode_has_no_screen_current(void **state) {
     const plw_quiescent *rest = &s.answer.option->quiescent;
     const plw_meter_readings readings = {(double)NAN, (double)NAN, (double)NAN, 1.0238 * rest->cathode_volts};
     const plw_aim aim = {PLW_AIM_DISSIPATION, 87.0};
-    assert_int_equal(plw_specimen_measure(&s.stage, &readings, aim, PLW_E24, &specimen, NULL), PLW_OK);
+    assert_int_equal(plw_specimen_measure(&s.stage, &readings, &aim, PLW_E24, &specimen, NULL), PLW_OK);
     s.answer.specimen = &specimen;
     json_t *root = parsed(&s.answer);
     assert_no_screen(at(root, "quiescent"));

@@ -1,5 +1,6 @@
 /* One tube by its meter readings: stronger and weaker tubes recognised, the screen's share, refusals.
  * SPDX-License-Identifier: GPL-3.0-or-later */
+#include "platewright/mains.h"
 #include "platewright/specimen.h"
 
 #include <string.h>
@@ -35,7 +36,7 @@ static plw_quiescent measure_strength(const plw_stage *bogey, double strength, p
     *readings = readings_of(&bench, &q);
     assert_int_equal(plw_quiescent_solve(bogey, &model, NULL), PLW_OK);
     plw_error error = {0};
-    if (plw_specimen_measure(bogey, readings, usual_aim, PLW_E24, specimen, &error) != PLW_OK) {
+    if (plw_specimen_measure(bogey, readings, &usual_aim, PLW_E24, specimen, &error) != PLW_OK) {
         fail_msg("%s", error.text);
     }
     return q;
@@ -124,7 +125,7 @@ static void connections_and_parallel_tubes_are_read_alike(void **state) {
         assert_near(s.primary_ohms, stage.primary_ohms, 1e-4 + 1e-6 * stage.primary_ohms, "drop over current");
         /* The cathode alone tells as much where the circuit is as described. */
         const plw_meter_readings cathode_only = {UNKNOWN, UNKNOWN, UNKNOWN, readings.cathode_volts};
-        assert_int_equal(plw_specimen_measure(&stage, &cathode_only, usual_aim, PLW_E24, &s, NULL), PLW_OK);
+        assert_int_equal(plw_specimen_measure(&stage, &cathode_only, &usual_aim, PLW_E24, &s, NULL), PLW_OK);
         assert_near(s.off_percent, 20.0, 1e-3, "strength 1.2");
         measured++;
     }
@@ -141,7 +142,7 @@ static void missing_readings_are_filled_in_and_flagged(void **state) {
     plw_specimen s;
     const plw_quiescent q = measure_strength(&stage, 1.2, &readings, &s);
     readings.supply_volts = readings.plate_volts = readings.screen_volts = UNKNOWN;
-    assert_int_equal(plw_specimen_measure(&stage, &readings, usual_aim, PLW_E24, &s, NULL), PLW_OK);
+    assert_int_equal(plw_specimen_measure(&stage, &readings, &usual_aim, PLW_E24, &s, NULL), PLW_OK);
     assert_false(s.supply_read || s.plate_read || s.screen_read);
     assert_true(isnan(s.primary_ohms));
     assert_near(s.off_percent, 20.0, 1e-4, "on a stiff supply the rest follows from the cathode");
@@ -161,7 +162,7 @@ static void the_supply_is_taken_as_read(void **state) {
     plw_stage described = stage;
     described.supply = stiff(285.0);
     plw_specimen s;
-    assert_int_equal(plw_specimen_measure(&described, &readings, usual_aim, PLW_E24, &s, NULL), PLW_OK);
+    assert_int_equal(plw_specimen_measure(&described, &readings, &usual_aim, PLW_E24, &s, NULL), PLW_OK);
     assert_near(s.off_percent, 0.0, 1e-4, "it is the bogey tube, on more volts");
     plw_quiescent again;
     assert_int_equal(plw_quiescent_solve(&s.stage, &again, NULL), PLW_OK);
@@ -182,10 +183,81 @@ static void the_copper_is_taken_as_read(void **state) {
     plw_stage described = stage;
     described.primary_ohms = 100.0;
     plw_specimen s;
-    assert_int_equal(plw_specimen_measure(&described, &readings, usual_aim, PLW_E24, &s, NULL), PLW_OK);
+    assert_int_equal(plw_specimen_measure(&described, &readings, &usual_aim, PLW_E24, &s, NULL), PLW_OK);
     assert_near(s.primary_ohms, 238.5, 1e-3, "drop over the current of both tubes");
     assert_int_equal(plw_quiescent_solve(&s.stage, &again, NULL), PLW_OK);
     assert_near(again.plate_to_ground_volts, readings.plate_volts, 1e-4, "as read");
+}
+
+/* A screen resistor that was not told: as read, the stage follows, and that is remarked. */
+static void the_screens_feed_is_taken_as_read(void **state) {
+    (void)state;
+    test_tube tube;
+    make_rated(&tube, pentode_law(TEST_BEAM_SMALL));
+    plw_stage stage = pentode_stage(&tube);
+    stage.screen_resistor_ohms = 4700.0;
+    plw_quiescent q, again;
+    const plw_meter_readings readings = readings_of(&stage, &q);
+    plw_stage described = stage;
+    described.screen_resistor_ohms = 0.0;
+    plw_specimen s;
+    assert_int_equal(plw_specimen_measure(&described, &readings, &usual_aim, PLW_E24, &s, NULL), PLW_OK);
+    assert_near_relative(s.screen_feed_ohms, 4700.0, 1e-6, "fall over the screen's current");
+    assert_non_null(strstr(s.doubt, "screen's feed"));
+    assert_int_equal(plw_quiescent_solve(&s.stage, &again, NULL), PLW_OK);
+    assert_near(again.screen_to_ground_volts, readings.screen_volts, 1e-4, "as read");
+    assert_near(again.cathode_volts, readings.cathode_volts, 1e-4, "as read");
+    assert_int_equal(plw_specimen_measure(&stage, &readings, &usual_aim, PLW_E24, &s, NULL), PLW_OK);
+    assert_string_equal(s.doubt, "");
+}
+
+/* The plate read and the supply not: the plate's reading and the copper as told make the supply. */
+static void the_plates_reading_makes_the_supply(void **state) {
+    (void)state;
+    test_tube tube;
+    make_rated(&tube, pentode_law(TEST_BEAM_SMALL));
+    plw_stage stage = pentode_stage(&tube);
+    stage.supply = stiff(297.0);
+    plw_quiescent q, again;
+    plw_meter_readings readings = readings_of(&stage, &q);
+    readings.supply_volts = readings.screen_volts = UNKNOWN;
+    plw_stage described = stage;
+    described.supply = stiff(279.0);
+    plw_specimen s;
+    assert_int_equal(plw_specimen_measure(&described, &readings, &usual_aim, PLW_E24, &s, NULL), PLW_OK);
+    assert_false(s.supply_read);
+    assert_near(s.supply_volts, 297.0, 1e-6, "plate and the fall across the copper");
+    assert_near(s.off_percent, 0.0, 1e-4, "it is the bogey tube, on more volts");
+    assert_non_null(strstr(s.doubt, "read the supply too")); /* 18 V of 279 are 6 % */
+    assert_int_equal(plw_quiescent_solve(&s.stage, &again, NULL), PLW_OK);
+    assert_near(again.plate_to_ground_volts, readings.plate_volts, 1e-4, "as read");
+    assert_near_relative(again.plate_watts, s.plate_watts, 1e-6, "the heat by the meter is that of the stage");
+}
+
+/* Without an aim the tube's own resistor holds its ratings with the mains high, as the choice for a stage does. */
+static void its_own_resistor_allows_for_the_mains(void **state) {
+    (void)state;
+    test_tube tube;
+    make_rated(&tube, pentode_law(TEST_BEAM_SMALL));
+    tube.ratings[0].system = PLW_SYSTEM_DESIGN_MAXIMUM;
+    plw_stage stage = pentode_stage(&tube);
+    plw_quiescent q;
+    const plw_meter_readings readings = readings_of(&stage, &q);
+    plw_specimen s, told;
+    assert_int_equal(plw_specimen_measure(&stage, &readings, NULL, PLW_E24, &s, NULL), PLW_OK);
+    assert_int_equal(plw_specimen_measure(&stage, &readings, &usual_aim, PLW_E24, &told, NULL), PLW_OK);
+    assert_true(s.resistor_found && told.resistor_found);
+    assert_near(s.aim_before_percent, PLW_AIM_DEFAULT_PERCENT, 0.0, "lowered");
+    assert_near(told.aim_before_percent, 0.0, 0.0, "an aim that is told stays");
+    assert_true(s.choice.option[s.choice.chosen].ohms > told.choice.option[told.choice.chosen].ohms);
+    plw_mains mains;
+    plw_stage trial = s.stage;
+    trial.cathode_resistor_ohms = s.choice.option[s.choice.chosen].ohms;
+    assert_int_equal(plw_mains_solve(&trial, &mains, NULL), PLW_OK);
+    for (size_t i = 0; i < mains.high.ratings_count; i++) {
+        assert_true(mains.high.ratings[i].ok || mains.high.ratings[i].unit == PLW_UNIT_VOLT ||
+                    mains.high.ratings[i].when == PLW_AT_FULL_DRIVE);
+    }
 }
 
 /* The resistor that suits this very tube: the aim met with the scaled law. */
@@ -208,7 +280,7 @@ static void the_resistor_found_suits_this_tube(void **state) {
     assert_near_relative(q.plate_watts, 0.9 * 12.0, 1e-6, "the aim");
     tube.ratings[0].plate_watts = 120.0;
     const plw_meter_readings same = readings_of(&stage, &q);
-    assert_int_equal(plw_specimen_measure(&stage, &same, usual_aim, PLW_E24, &strong, NULL), PLW_OK);
+    assert_int_equal(plw_specimen_measure(&stage, &same, &usual_aim, PLW_E24, &strong, NULL), PLW_OK);
     assert_false(strong.resistor_found);
     assert_non_null(strstr(strong.resistor_obstacle, "out of reach"));
 }
@@ -261,7 +333,7 @@ static void readings_no_tube_explains_are_doubted(void **state) {
     assert_non_null(strstr(s.doubt, "this little current"));
     measure_strength(&stage, 1.0, &readings, &s);
     readings.plate_volts -= 20.0; /* 20 V more across the primary: several times the copper told */
-    assert_int_equal(plw_specimen_measure(&stage, &readings, usual_aim, PLW_E24, &s, NULL), PLW_OK);
+    assert_int_equal(plw_specimen_measure(&stage, &readings, &usual_aim, PLW_E24, &s, NULL), PLW_OK);
     assert_non_null(strstr(s.doubt, "Between supply and plate"));
 }
 
@@ -296,7 +368,7 @@ static void readings_that_contradict_are_refused(void **state) {
                                              wrong[index].cathode};
         plw_specimen s;
         plw_error error = {0};
-        if (plw_specimen_measure(&stage, &readings, usual_aim, PLW_E24, &s, &error) != PLW_E_USAGE) {
+        if (plw_specimen_measure(&stage, &readings, &usual_aim, PLW_E24, &s, &error) != PLW_E_USAGE) {
             fail_msg("readings %zu were accepted", index);
         }
         if (strstr(error.text, wrong[index].text) == NULL) {
@@ -307,7 +379,7 @@ static void readings_that_contradict_are_refused(void **state) {
     stage.cathode_resistor_ohms = UNKNOWN;
     plw_specimen s;
     plw_error error = {0};
-    assert_int_equal(plw_specimen_measure(&stage, &good, usual_aim, PLW_E24, &s, &error), PLW_E_USAGE);
+    assert_int_equal(plw_specimen_measure(&stage, &good, &usual_aim, PLW_E24, &s, &error), PLW_E_USAGE);
     assert_non_null(strstr(error.text, "fixed bias"));
 }
 
@@ -319,6 +391,9 @@ int main(void) {
         cmocka_unit_test(missing_readings_are_filled_in_and_flagged),
         cmocka_unit_test(the_supply_is_taken_as_read),
         cmocka_unit_test(the_copper_is_taken_as_read),
+        cmocka_unit_test(the_screens_feed_is_taken_as_read),
+        cmocka_unit_test(the_plates_reading_makes_the_supply),
+        cmocka_unit_test(its_own_resistor_allows_for_the_mains),
         cmocka_unit_test(the_resistor_found_suits_this_tube),
         cmocka_unit_test(the_tube_measured_is_the_one_judged),
         cmocka_unit_test(readings_no_tube_explains_are_doubted),
