@@ -44,6 +44,8 @@ typedef struct {
     plw_rating_check ratings[PLW_RATING_CHECKS_MOST];
     size_t ratings_count;
     bool within_ratings;
+    bool within_at_mains; /* the ratings that count there are kept with the mains low and high: plw_mains_judge(), else
+                             true */
 } plw_bias_option;
 
 enum { PLW_NEIGHBOURS = 1, PLW_BIAS_OPTIONS = 2 * PLW_NEIGHBOURS + 1 };

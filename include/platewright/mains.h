@@ -43,6 +43,11 @@ typedef struct {
  * the others. */
 PLW_API plw_status plw_mains_solve(const plw_stage *stage, plw_mains *mains, plw_error *error) PLW_MUST_USE;
 
+/* Judge every option of a choice with the mains low and high: within_at_mains.  What no corner can be solved for counts
+ * as kept.  plw_bias_choose_for_mains() has done it.
+ * In:   the stage the choice was made for; *choice, changed in place */
+PLW_API void plw_mains_judge(const plw_stage *stage, plw_bias_choice *choice);
+
 /* Choose the cathode resistor when no aim is told: as plw_bias_choose() for PLW_AIM_DEFAULT_PERCENT of the rated
  * dissipation, lowered as far as the ratings of heat and current need that must hold with the mains high.  (Ratings of
  * voltage no resistor cures.)  A rating that only full drive at high mains breaks is worth up to PLW_DRIVEN_RAISE_MOST times the

@@ -136,7 +136,11 @@ int cli_work_end(cli_work *work, plw_status status, bool kept, plw_error *error)
 /* An aim that is told is taken as it is. */
 static plw_status choose(cli_work *work, plw_bias_choice *choice, plw_error *error) {
     if (cli_argument_given(work->arguments, "aim")) {
-        return plw_bias_choose(&work->stage, work->aim, work->series, choice, error);
+        const plw_status status = plw_bias_choose(&work->stage, work->aim, work->series, choice, error);
+        if (status == PLW_OK) {
+            plw_mains_judge(&work->stage, choice);
+        }
+        return status;
     }
     const plw_status status =
         plw_bias_choose_for_mains(&work->stage, work->series, choice, &work->aim_before_percent, error);

@@ -6,6 +6,7 @@
 #include "platewright/report.h"
 #include "report/fields.h"
 #include "report/text_buffer.h"
+#include "report/verdict.h"
 
 enum { CSV_DIGITS = 9 };
 
@@ -98,7 +99,7 @@ static void put_option(FILE *file, const plw_answer *answer, const plw_bias_opti
     put_number(file, option->watts);
     put_number(file, option->rating_watts);
     put_number(file, stage->fixed_bias_volts);
-    fprintf(file, ",%s,%s", chosen ? "yes" : "no", option->within_ratings ? "yes" : "no");
+    fprintf(file, ",%s,%s", chosen ? "yes" : "no", plw_option_within(answer, option) ? "yes" : "no");
     put_fields(file, plw_quiescent_fields, plw_quiescent_fields_count, &option->quiescent);
     put_fields(file, plw_signal_fields, plw_signal_fields_count, &option->signal);
     for (int h = 2; h <= PLW_HARMONICS_MOST; h++) {

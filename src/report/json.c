@@ -10,6 +10,7 @@
 #include "report/json_sink.h"
 #include "report/supply_report.h"
 #include "report/text_buffer.h"
+#include "report/verdict.h"
 
 static void put_fields(const plw_json_sink *s, const plw_field *fields, size_t count, const void *record) {
     for (size_t i = 0; i < count; i++) {
@@ -130,15 +131,16 @@ static void put_ratings(const plw_json_sink *root, const plw_answer *answer) {
     plw_json_put(root, "ratings", ratings);
 }
 
-static json_t *choices_array(const plw_bias_choice *choice, unsigned tubes, bool *failed) {
+static json_t *choices_array(const plw_answer *answer, bool *failed) {
+    const plw_bias_choice *choice = answer->choice;
     json_t *choices = json_array();
     for (size_t i = 0; choice != NULL && i < choice->options; i++) {
         const plw_bias_option *option = &choice->option[i];
         const plw_json_sink s = {json_object(), failed};
         put_resistor(&s, option);
         plw_json_put(&s, "chosen", json_boolean(i == choice->chosen));
-        plw_json_put(&s, "within_ratings", json_boolean(option->within_ratings));
-        put_quiescent(&s, &option->quiescent, tubes);
+        plw_json_put(&s, "within_ratings", json_boolean(plw_option_within(answer, option)));
+        put_quiescent(&s, &option->quiescent, answer->stage->parallel);
         put_signal(&s, "signal", &option->signal);
         put_signal(&s, "clean_signal", &option->clean);
         plw_json_append(choices, s.object, failed);
@@ -262,6 +264,20 @@ static void put_cautions(const plw_json_sink *root, const plw_answer *answer) {
     plw_json_put(root, "cautions", cautions);
 }
 
+/* The same that the text says first. */
+static void put_verdict(const plw_json_sink *root, const plw_answer *answer) {
+    const plw_json_sink s = plw_json_object_in(root, "verdict");
+    char heading[80];
+    char what[120];
+    char text[204];
+    plw_verdict_words(answer, heading, what);
+    snprintf(text, sizeof text, "%s%s%s", heading, what[0] == '\0' ? "" : " ", what);
+    const size_t broken = plw_verdict_of(answer).broken;
+    plw_json_put(&s, "within_ratings", json_boolean(broken == 0));
+    plw_json_put(&s, "broken", json_integer((json_int_t)broken));
+    plw_json_put(&s, "text", json_string(text));
+}
+
 plw_status plw_report_json(const plw_answer *answer, char **text, plw_error *error) {
     bool failed = false;
     const plw_json_sink root = {json_object(), &failed};
@@ -272,12 +288,13 @@ plw_status plw_report_json(const plw_answer *answer, char **text, plw_error *err
         const plw_bias_choice *choice = answer->choice;
         put_aim(&root, choice->aim, answer->aim_before_percent, choice->aim_reached, choice->obstacle);
     }
+    put_verdict(&root, answer);
     put_supply(&root, answer);
     put_quiescent(&root, &answer->option->quiescent, answer->stage->parallel);
     put_signal(&root, "signal", &answer->option->signal);
     put_signal(&root, "clean_signal", &answer->option->clean);
     put_ratings(&root, answer);
-    plw_json_put(&root, "choices", choices_array(answer->choice, answer->stage->parallel, &failed));
+    plw_json_put(&root, "choices", choices_array(answer, &failed));
     put_specimen(&root, answer->specimen);
     put_uncertainty(&root, answer->uncertainty);
     put_hum(&root, answer->hum);

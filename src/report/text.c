@@ -11,6 +11,7 @@
 #include "report/layout.h"
 #include "report/supply_report.h"
 #include "report/text_buffer.h"
+#include "report/verdict.h"
 
 static const char *tube_name(const plw_stage *stage) {
     return stage->variant >= 0 ? stage->tube->variants[stage->variant].type : stage->tube->type;
@@ -32,73 +33,14 @@ static void title(FILE *out, const plw_answer *a) {
             plw_cell_ohms(stage->load_ohms).text);
 }
 
-#define VERDICT_MARK "VERDICT           "
-#define VERDICT_INDENT "                  "
-
-/* The rating passed by most among those at rest or driven; NULL: none is passed. */
-static const plw_rating_check *worst_check(const plw_rating_check *checks, size_t count, plw_when when) {
-    const plw_rating_check *worst = NULL;
-    for (size_t index = 0; index < count; index++) {
-        const plw_rating_check *check = &checks[index];
-        if (!check->ok && check->when == when && (worst == NULL || check->share_percent > worst->share_percent)) {
-            worst = check;
-        }
+static void verdict_lines(FILE *out, const plw_answer *a) {
+    char heading[80];
+    char what[120];
+    plw_verdict_words(a, heading, what);
+    fprintf(out, "VERDICT           %s\n", heading);
+    if (what[0] != '\0') {
+        fprintf(out, "                  %s\n", what);
     }
-    return worst;
-}
-
-static void over_line(FILE *out, const char *where, const plw_rating_check *worst) {
-    fprintf(out, VERDICT_MARK "OVER A RATING %s%s:\n" VERDICT_INDENT "%s %s of %s\n", where,
-            worst->when == PLW_AT_IDLE ? "at rest" : "at full drive", worst->name,
-            plw_cell_quantity(worst->value, worst->unit, 3).text, plw_cell_quantity(worst->limit, worst->unit, 3).text);
-}
-
-/* The worst of the tube's ratings that are not kept: at rest before driven. */
-static bool tube_is_over(FILE *out, const char *where, const plw_rating_check *checks, size_t count) {
-    const plw_rating_check *worst = worst_check(checks, count, PLW_AT_IDLE);
-    if (worst == NULL) {
-        worst = worst_check(checks, count, PLW_AT_FULL_DRIVE);
-    }
-    if (worst != NULL) {
-        over_line(out, where, worst);
-    }
-    return worst != NULL;
-}
-
-static bool supply_is_over(FILE *out, const plw_supply_answer *supply) {
-    for (size_t index = 0; index < supply->checks_count; index++) {
-        const plw_supply_check *check = &supply->checks[index];
-        if (!check->ok) {
-            char name[64];
-            fprintf(out, VERDICT_MARK "OVER A RATING of the supply:\n" VERDICT_INDENT "%s %s of %s\n",
-                    plw_supply_check_name(check, name, sizeof name),
-                    plw_cell_quantity(check->value, check->unit, 3).text,
-                    plw_cell_quantity(check->limit, check->unit, 3).text);
-            return true;
-        }
-    }
-    return false;
-}
-
-/* What is not kept, the tube's ratings first, or that all are: the same that the exit status says. */
-static void verdict_line(FILE *out, const plw_answer *a) {
-    if (tube_is_over(out, "", a->option->ratings, a->option->ratings_count)) {
-        return;
-    }
-    const plw_mains *mains = a->mains;
-    if (mains != NULL && mains->counted) {
-        if ((mains->high.solved &&
-             tube_is_over(out, "with the mains 10 % up, ", mains->high.ratings, mains->high.ratings_count)) ||
-            (mains->low.solved &&
-             tube_is_over(out, "with the mains 10 % down, ", mains->low.ratings, mains->low.ratings_count))) {
-            return;
-        }
-    }
-    if (a->supply != NULL && !a->supply->within_ratings && supply_is_over(out, a->supply)) {
-        return;
-    }
-    fprintf(out, VERDICT_MARK "within every rating, at rest and at full drive%s\n",
-            mains != NULL && mains->counted && mains->high.solved ? ", mains 10 % up" : "");
 }
 
 static void aim_words(FILE *out, const plw_aim *aim) {
@@ -363,7 +305,7 @@ static void neighbour_lines(FILE *out, const plw_answer *a) {
         plw_put_right(out, plw_cell_watts(o->quiescent.plate_watts).text, 13);
         plw_put_right(out, plw_cell_watts(o->clean.speaker_watts).text, 11);
         plw_put_right(out, plw_cell_watts(o->signal.speaker_watts).text, 10);
-        fprintf(out, " %4.1f %%%s\n", o->signal.thd_percent, o->within_ratings ? "" : " !!");
+        fprintf(out, " %4.1f %%%s\n", o->signal.thd_percent, plw_option_within(a, o) ? "" : " !!");
     }
 }
 
@@ -502,7 +444,7 @@ plw_status plw_report_text(const plw_answer *answer, char **text, plw_error *err
     }
     FILE *out = buffer.file;
     title(out, answer);
-    verdict_line(out, answer);
+    verdict_lines(out, answer);
     bias_lines(out, answer);
     specimen_lines(out, answer);
     meter_lines(out, answer);

@@ -35,6 +35,7 @@ plw_status plw_bias_option_solve(const plw_stage *stage, double ohms, plw_bias_o
         o.watts = o.quiescent.cathode_resistor_watts;
         o.rating_watts = plw_resistor_rating_watts(o.watts, PLW_RESISTOR_MARGIN);
     }
+    o.within_at_mains = true;
     o.within_ratings = plw_limits_check(&trial, &o.quiescent, &o.signal, o.ratings, &o.ratings_count);
     *option = o;
     return PLW_OK;
@@ -153,6 +154,9 @@ static const char *remedy(const plw_rating_check *check, const plw_stage *stage)
     }
     if (strcmp(check->name, "plate voltage") == 0) {
         return "a lower supply voltage or a tube rated higher would help";
+    }
+    if (strcmp(check->name, "cathode current") == 0) { /* the same watts on more volts take less current */
+        return "a lower aim, a higher supply voltage, a higher load or a tube rated higher would help";
     }
     return "a higher resistor, a lower supply voltage or a tube rated higher would help";
 }

@@ -99,6 +99,16 @@ static bool lower_for_drive(const plw_stage *stage, plw_series series, plw_aim a
     return false;
 }
 
+void plw_mains_judge(const plw_stage *stage, plw_bias_choice *choice) {
+    for (size_t index = 0; index < choice->options; index++) {
+        plw_stage trial = *stage;
+        plw_mains mains;
+        trial.cathode_resistor_ohms = choice->option[index].ohms;
+        choice->option[index].within_at_mains = !leaves_mains_to_builder(rating_system(stage)) ||
+                                                plw_mains_solve(&trial, &mains, NULL) != PLW_OK || mains.within_ratings;
+    }
+}
+
 plw_status plw_bias_choose_for_mains(const plw_stage *stage, plw_series series, plw_bias_choice *choice,
                                      double *before_percent, plw_error *error) {
     plw_aim aim = {.kind = PLW_AIM_DISSIPATION, .value = PLW_AIM_DEFAULT_PERCENT};
@@ -122,5 +132,6 @@ plw_status plw_bias_choose_for_mains(const plw_stage *stage, plw_series series, 
     if (lower_for_drive(stage, series, choice->aim, choice)) {
         *before_percent = PLW_AIM_DEFAULT_PERCENT;
     }
+    plw_mains_judge(stage, choice);
     return PLW_OK;
 }

@@ -145,6 +145,13 @@ static void the_aim_is_lowered_for_the_drive(void **state) {
     stage.cathode_resistor_ohms = plain.option[plain.chosen].ohms;
     assert_int_equal(plw_mains_solve(&stage, &mains, NULL), PLW_OK);
     assert_true(mains.within_ratings);
+    for (size_t i = 0; i < plain.options; i++) { /* every option is judged as the stage with it would be */
+        plw_stage trial = stage;
+        trial.cathode_resistor_ohms = plain.option[i].ohms;
+        plw_mains there;
+        assert_int_equal(plw_mains_solve(&trial, &there, NULL), PLW_OK);
+        assert_int_equal(plain.option[i].within_at_mains, there.within_ratings);
+    }
     const double watts = mains.high.signal.screen_watts;
     assert_true(watts > mains.high.quiescent.screen_watts);
     const struct {

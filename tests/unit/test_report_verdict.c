@@ -195,6 +195,42 @@ static void the_verdict_names_what_is_broken(void **state) {
     assert_verdict(&s.answer, "OVER A RATING of the supply:\n");
     s.answer.supply = NULL;
     assert_verdict(&s.answer, "within every rating, at rest and at full drive\n");
+    s.choice.aim_reached = false; /* ends with exit status 1 too */
+    assert_verdict(&s.answer, "within every rating, at rest and at full drive;\n");
+    s.choice.aim_reached = true;
+}
+
+/* Text, CSV and JSON have one verdict, on every option; each of the three reasons alone is enough. */
+static void one_verdict_in_every_format(void **state) {
+    (void)state;
+    static solved_stage s;
+    static plw_mains mains;
+    stage_begin(&s, PLW_LAW_PENTODE);
+    s.ratings.system = PLW_SYSTEM_DESIGN_MAXIMUM;
+    s.ratings.screen_watts = 4.3;
+    stage_solve(&s);
+    assert_int_equal(plw_mains_solve(&s.stage, &mains, NULL), PLW_OK);
+    assert_false(mains.within_ratings); /* at 90 % of 12 W, with the mains high */
+    s.answer.mains = &mains;
+    plw_mains_judge(&s.stage, &s.choice);
+    assert_false(s.choice.option[0].within_at_mains); /* the lower resistor */
+    json_t *root = parsed(&s.answer);
+    assert_true(json_is_false(at(root, "verdict.within_ratings")));
+    assert_true(number_at(root, "verdict.broken") >= 1.0);
+    const char *text = json_string_value(at(root, "verdict.text"));
+    assert_non_null(strstr(text, "OVER A RATING with the mains 10 % up, at rest: plate dissipation "));
+    size_t index;
+    json_t *entry;
+    json_array_foreach(at(root, "choices"), index, entry) {
+        assert_true(json_is_true(at(entry, "within_ratings")) ==
+                    (s.choice.option[index].within_ratings && s.choice.option[index].within_at_mains));
+    }
+    json_decref(root);
+    char *csv = NULL;
+    assert_int_equal(plw_report_csv(&s.answer, &csv, NULL), PLW_OK);
+    assert_null(strstr(csv, ",yes,yes,")); /* chosen, and within ratings */
+    assert_non_null(strstr(csv, ",yes,no,"));
+    plw_text_free(csv);
 }
 
 int main(void) {
@@ -204,6 +240,7 @@ int main(void) {
         cmocka_unit_test(ok_is_the_plain_comparison),
         cmocka_unit_test(a_triode_has_no_screen_current),
         cmocka_unit_test(the_verdict_names_what_is_broken),
+        cmocka_unit_test(one_verdict_in_every_format),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
