@@ -9,7 +9,7 @@ enum { CURVE_POINTS = 160, HYPERBOLA_POINTS = 80, FAMILY_MOST = 24 };
 /* Parts of the frame: a curve below the first is the axis; labels nearer than the others would touch. */
 #define CLEAR_OF_AXIS 0.006
 #define LABEL_HEIGHT 0.037
-#define LABEL_WIDTH 0.085
+#define LABEL_WIDTH 0.075
 
 double plw_family_amps(const plw_plate_family *family, double plate_volts, double grid_volts) {
     const double screen_volts = family->screen_volts + family->tap * (plate_volts - family->plate_volts);

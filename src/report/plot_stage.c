@@ -27,9 +27,13 @@ static void put_title(FILE *file, const plw_answer *answer) {
     }
     plw_script_value(answer->option->quiescent.supply_volts, PLW_UNIT_VOLT, 3, supply, sizeof supply);
     plw_script_value(stage->load_ohms, PLW_UNIT_OHM, 3, load, sizeof load);
+    char tap[24] = "";
+    if (stage->tube->kind != PLW_KIND_TRIODE && stage->connection == PLW_CONNECTION_ULTRALINEAR) {
+        snprintf(tap, sizeof tap, " at %.3g %%", 100.0 * stage->tap);
+    }
     char text[512];
-    snprintf(text, sizeof text, "%s%.200s, %s, %s, %s, %s", tubes, plw_stage_tube_type(stage),
-             plw_connection_name(stage->tube->kind == PLW_KIND_TRIODE ? PLW_CONNECTION_TRIODE : stage->connection),
+    snprintf(text, sizeof text, "%s%.200s, %s%s, %s, %s, %s", tubes, plw_stage_tube_type(stage),
+             plw_connection_name(stage->tube->kind == PLW_KIND_TRIODE ? PLW_CONNECTION_TRIODE : stage->connection), tap,
              bias_text, supply, load);
     fputs("set label ", file);
     plw_script_quoted(file, text);
