@@ -28,8 +28,8 @@ typedef enum {
     PLW_SYSTEM_STATED
 } plw_rating_system;
 
-/* How a value was obtained, and the compiler's confidence in it. */
-typedef enum { PLW_HOW_READ, PLW_HOW_MEMORY } plw_how;
+/* How a value was obtained (told: given to the program without a source), and the compiler's confidence in it. */
+typedef enum { PLW_HOW_READ, PLW_HOW_MEMORY, PLW_HOW_TOLD } plw_how;
 typedef enum { PLW_CONFIDENCE_HIGH, PLW_CONFIDENCE_MEDIUM, PLW_CONFIDENCE_LOW } plw_confidence;
 
 typedef struct {

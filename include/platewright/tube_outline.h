@@ -15,7 +15,7 @@ typedef struct {
     const char *type; /* needed */
     plw_tube_kind kind;
     const char *base;
-    const char *source; /* of heater and limits; NULL: "as given on the command line" */
+    const char *source; /* where heater and limits were read; NULL: told, "as given on the command line" */
     double heater_volts, heater_amps;
     bool directly_heated;
     double plate_volts, screen_volts; /* limits */
@@ -24,7 +24,7 @@ typedef struct {
 
 /* Make a tube of an outline: one set of ratings (system: as stated), no rows yet.
  * Out:  *tube, to be freed with plw_tube_free(); not written unless PLW_OK
- * Ret:  PLW_OK; PLW_E_NO_MEMORY; PLW_E_USAGE naming the entry: no type, a rectifier, a number out of range, limits of a
+ * Ret:  PLW_OK; PLW_E_NO_MEMORY; PLW_E_USAGE naming the entry: no type, a blank source, a rectifier, a number out of range, limits of a
  *       screen for a triode */
 PLW_API plw_status plw_tube_outline_make(const plw_tube_outline *outline, plw_tube **tube,
                                          plw_error *error) PLW_MUST_USE;

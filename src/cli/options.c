@@ -224,6 +224,12 @@ static const cli_option options[] = {
      .group = CLI_GROUP_TABLE,
      .commands = CLI_FIT,
      .help = "screen dissipation limit, e.g. 2W; none for a triode"},
+    {.name = "source",
+     .value = CLI_VALUE_TEXT,
+     .placeholder = "TITLE",
+     .group = CLI_GROUP_TABLE,
+     .commands = CLI_FIT,
+     .help = "the sheet that heater and limits were read from: title, publisher, year; without it they count as told"},
 
     {.name = "like",
      .value = CLI_VALUE_TEXT,

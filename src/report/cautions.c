@@ -344,6 +344,9 @@ static void notes(plw_caution_list *l, const plw_answer *answer) {
             l,
             "The ratings of the %.60s were written down from memory of the maker's sheet: compare them with the sheet.",
             plw_stage_tube_type(stage));
+    } else if (ratings != NULL && ratings->provenance.how == PLW_HOW_TOLD) {
+        plw_caution_say(l, "The ratings of the %.60s were told without a source: compare them with the maker's sheet.",
+                        plw_stage_tube_type(stage));
     }
 }
 

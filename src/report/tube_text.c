@@ -84,6 +84,13 @@ static plw_cell cite(source_list *sources, const plw_provenance *provenance) {
     return c;
 }
 
+static const char *how_words(plw_how how) {
+    if (how == PLW_HOW_TOLD) {
+        return "told";
+    }
+    return how == PLW_HOW_READ ? "read there" : "from memory";
+}
+
 static void put_sources(FILE *out, const source_list *sources) {
     fputs("\nSources\n", out);
     for (size_t i = 0; i < sources->count; i++) {
@@ -91,8 +98,7 @@ static void put_sources(FILE *out, const source_list *sources) {
         char mark[CELL];
         char line[LINE];
         snprintf(mark, sizeof mark, "  [%zu] ", i + 1);
-        snprintf(line, sizeof line, "%s (%s, confidence %s)", provenance->source,
-                 provenance->how == PLW_HOW_READ ? "read there" : "from memory",
+        snprintf(line, sizeof line, "%s (%s, confidence %s)", provenance->source, how_words(provenance->how),
                  plw_confidence_name(provenance->confidence));
         paragraph(out, mark, "      ", line);
     }

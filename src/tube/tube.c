@@ -106,7 +106,7 @@ const char *plw_point_kind_name(plw_point_kind kind) {
 }
 
 const char *plw_how_name(plw_how how) {
-    static const char *const names[] = {"read", "memory"};
+    static const char *const names[] = {"read", "memory", "told"};
     return NAME_FROM(names, how);
 }
 

@@ -38,9 +38,16 @@ static bool has_screen(const plw_tube_outline *outline) {
     return outline->kind == PLW_KIND_PENTODE || outline->kind == PLW_KIND_BEAM;
 }
 
+static bool is_blank(const char *text) {
+    return text == NULL || text[strspn(text, " \t\r\n")] == '\0';
+}
+
 static plw_status check(const plw_tube_outline *outline, plw_error *error) {
-    if (outline->type == NULL || outline->type[strspn(outline->type, " \t")] == '\0') {
+    if (is_blank(outline->type)) {
         return plw_fail(error, PLW_E_USAGE, "type: give the tube a type designation");
+    }
+    if (outline->source != NULL && is_blank(outline->source)) {
+        return plw_fail(error, PLW_E_USAGE, "source: is blank; name title, publisher and year");
     }
     if (outline->kind == PLW_KIND_RECTIFIER) {
         return plw_fail(error, PLW_E_USAGE, "kind: a rectifier has no grid; triode, pentode or beam");
@@ -71,14 +78,16 @@ plw_status plw_tube_outline_complete(const plw_tube_outline *outline, plw_error 
     return PLW_OK;
 }
 
+/* Without a source nobody can look it up: it is worth what memory is. */
 static bool set_provenance(plw_provenance *provenance, const char *source) {
-    *provenance = (plw_provenance){.how = PLW_HOW_READ, .confidence = PLW_CONFIDENCE_HIGH, .source = strdup(source)};
+    *provenance = source == NULL ? (plw_provenance){.how = PLW_HOW_TOLD, .confidence = PLW_CONFIDENCE_MEDIUM}
+                                 : (plw_provenance){.how = PLW_HOW_READ, .confidence = PLW_CONFIDENCE_HIGH};
+    provenance->source = strdup(source == NULL ? SOURCE_OTHERWISE : source);
     return provenance->source != NULL;
 }
 
 /* Ret: false without memory */
 static bool fill(plw_tube *tube, const plw_tube_outline *outline) {
-    const char *source = outline->source == NULL ? SOURCE_OTHERWISE : outline->source;
     tube->type = strdup(outline->type);
     tube->base = outline->base == NULL ? NULL : strdup(outline->base);
     tube->kind = outline->kind;
@@ -87,7 +96,7 @@ static bool fill(plw_tube *tube, const plw_tube_outline *outline) {
     tube->directly_heated = outline->directly_heated;
     tube->ratings = calloc(1, sizeof *tube->ratings);
     if (tube->type == NULL || tube->ratings == NULL || (outline->base != NULL && tube->base == NULL) ||
-        !set_provenance(&tube->heater_provenance, source)) {
+        !set_provenance(&tube->heater_provenance, outline->source)) {
         return false;
     }
     tube->ratings_count = 1;
@@ -100,7 +109,7 @@ static bool fill(plw_tube *tube, const plw_tube_outline *outline) {
     ratings->screen_volts = outline->screen_volts;
     ratings->plate_watts = outline->plate_watts;
     ratings->screen_watts = outline->screen_watts;
-    return ratings->service != NULL && set_provenance(&ratings->provenance, source);
+    return ratings->service != NULL && set_provenance(&ratings->provenance, outline->source);
 }
 
 plw_status plw_tube_outline_make(const plw_tube_outline *outline, plw_tube **tube, plw_error *error) {

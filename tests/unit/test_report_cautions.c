@@ -99,6 +99,9 @@ static void doubtful_data_have_their_cautions(void **state) {
     assert_true(warned(&s.answer, "known only roughly"));
     s.ratings.provenance.how = PLW_HOW_MEMORY;
     assert_true(warned(&s.answer, "from memory"));
+    s.ratings.provenance.how = PLW_HOW_TOLD;
+    assert_true(warned(&s.answer, "told without a source"));
+    assert_false(warned(&s.answer, "from memory"));
     s.ratings.plate_watts_unpublished = true;
     assert_true(warned(&s.answer, "prints no plate dissipation"));
     plw_error error = {0};

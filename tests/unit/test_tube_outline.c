@@ -36,7 +36,26 @@ static void test_made_whole(void **state) {
     assert_true(ratings->plate_volts == 315.0 && ratings->screen_volts == 285.0);
     assert_true(ratings->plate_watts == 12.0 && ratings->screen_watts == 2.0);
     assert_true(isnan(ratings->cathode_amps));
+    /* Nothing says where they are from. */
+    assert_int_equal(ratings->provenance.how, PLW_HOW_TOLD);
+    assert_int_equal(tube->heater_provenance.how, PLW_HOW_TOLD);
+    assert_string_equal(ratings->provenance.source, "as given on the command line");
     assert_false(tube->has_model);
+    plw_tube_free(tube);
+}
+
+static void test_with_a_source(void **state) {
+    (void)state;
+    plw_tube_outline outline = whole;
+    plw_tube *tube = NULL;
+    outline.source = "A sheet, a maker, 1938";
+    assert_int_equal(plw_tube_outline_make(&outline, &tube, NULL), PLW_OK);
+    const plw_provenance *of[] = {&tube->heater_provenance, &tube->ratings[0].provenance};
+    for (int i = 0; i < 2; i++) {
+        assert_int_equal(of[i]->how, PLW_HOW_READ);
+        assert_int_equal(of[i]->confidence, PLW_CONFIDENCE_HIGH);
+        assert_string_equal(of[i]->source, outline.source);
+    }
     plw_tube_free(tube);
 }
 
@@ -58,6 +77,8 @@ static void test_written_and_read_again(void **state) {
     assert_true(again->points[0].uncertainty_percent == 1.5 && again->points[0].plate_amps == 0.045);
     assert_string_equal(again->points[0].provenance.source, "bench.csv");
     assert_true(again->ratings[0].plate_watts == 12.0);
+    assert_int_equal(again->ratings[0].provenance.how, PLW_HOW_TOLD);
+    assert_int_equal(again->ratings[0].provenance.confidence, PLW_CONFIDENCE_MEDIUM);
     plw_tube_free(again);
     plw_tube_free(tube);
     assert_int_equal(remove(path), 0);
@@ -80,6 +101,9 @@ static void test_refusals(void **state) {
     expect_refusal(outline, "type: give");
     outline.type = "  ";
     expect_refusal(outline, "type: give");
+    outline = whole;
+    outline.source = " ";
+    expect_refusal(outline, "source: is blank");
     outline = whole;
     outline.kind = PLW_KIND_RECTIFIER;
     expect_refusal(outline, "kind: a rectifier");
@@ -122,6 +146,7 @@ static void test_what_a_file_needs(void **state) {
 int main(void) {
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(test_made_whole),
+        cmocka_unit_test(test_with_a_source),
         cmocka_unit_test(test_written_and_read_again),
         cmocka_unit_test(test_refusals),
         cmocka_unit_test(test_what_a_file_needs),
