@@ -20,11 +20,13 @@ typedef struct {
     bool directly_heated;
     double plate_volts, screen_volts; /* limits */
     double plate_watts, screen_watts; /* limits */
+    const char *rating_system;        /* of the limits, as plw_rating_system_name() has it; NULL: stated */
 } plw_tube_outline;
 
-/* Make a tube of an outline: one set of ratings (system: as stated), no rows yet.
+/* Make a tube of an outline: one set of ratings, no rows yet.
  * Out:  *tube, to be freed with plw_tube_free(); not written unless PLW_OK
- * Ret:  PLW_OK; PLW_E_NO_MEMORY; PLW_E_USAGE naming the entry: no type, a blank source, a rectifier, a number out of range, limits of a
+ * Ret:  PLW_OK; PLW_E_NO_MEMORY; PLW_E_USAGE naming the entry: no type, a blank source, a rectifier, an unknown rating
+ *       system, a number out of range, limits of a
  *       screen for a triode */
 PLW_API plw_status plw_tube_outline_make(const plw_tube_outline *outline, plw_tube **tube,
                                          plw_error *error) PLW_MUST_USE;

@@ -42,6 +42,18 @@ static bool is_blank(const char *text) {
     return text == NULL || text[strspn(text, " \t\r\n")] == '\0';
 }
 
+/* Ret: false when no system is called so */
+static bool find_system(const char *name, plw_rating_system *system) {
+    *system = PLW_SYSTEM_STATED;
+    if (name == NULL) {
+        return true;
+    }
+    while ((int)*system > 0 && strcmp(name, plw_rating_system_name(*system)) != 0) {
+        *system = (plw_rating_system)((int)*system - 1);
+    }
+    return strcmp(name, plw_rating_system_name(*system)) == 0;
+}
+
 static plw_status check(const plw_tube_outline *outline, plw_error *error) {
     if (is_blank(outline->type)) {
         return plw_fail(error, PLW_E_USAGE, "type: give the tube a type designation");
@@ -51,6 +63,12 @@ static plw_status check(const plw_tube_outline *outline, plw_error *error) {
     }
     if (outline->kind == PLW_KIND_RECTIFIER) {
         return plw_fail(error, PLW_E_USAGE, "kind: a rectifier has no grid; triode, pentode or beam");
+    }
+    plw_rating_system system;
+    if (!find_system(outline->rating_system, &system)) {
+        return plw_fail(error, PLW_E_USAGE,
+                        "rating-system: '%.40s' is not known; design-center, design-maximum, absolute or stated",
+                        outline->rating_system);
     }
     for (size_t i = 0; i < ENTRIES; i++) {
         const double value = entry_value(outline, &entries[i]);
@@ -104,7 +122,7 @@ static bool fill(plw_tube *tube, const plw_tube_outline *outline) {
     plw_fields_clear(plw_ratings_fields, ratings);
     ratings->service = strdup("class A1 amplifier");
     ratings->connection = has_screen(outline) ? PLW_CONNECTION_PENTODE : PLW_CONNECTION_TRIODE;
-    ratings->system = PLW_SYSTEM_STATED;
+    (void)find_system(outline->rating_system, &ratings->system); /* check() has seen to it that there is one */
     ratings->plate_volts = outline->plate_volts;
     ratings->screen_volts = outline->screen_volts;
     ratings->plate_watts = outline->plate_watts;

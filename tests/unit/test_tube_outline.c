@@ -59,6 +59,18 @@ static void test_with_a_source(void **state) {
     plw_tube_free(tube);
 }
 
+static void test_rating_systems(void **state) {
+    (void)state;
+    for (int system = PLW_SYSTEM_DESIGN_CENTER; system <= PLW_SYSTEM_STATED; system++) {
+        plw_tube_outline outline = whole;
+        plw_tube *tube = NULL;
+        outline.rating_system = plw_rating_system_name((plw_rating_system)system);
+        assert_int_equal(plw_tube_outline_make(&outline, &tube, NULL), PLW_OK);
+        assert_int_equal(tube->ratings[0].system, system);
+        plw_tube_free(tube);
+    }
+}
+
 static void test_written_and_read_again(void **state) {
     (void)state;
     static const char text[] = "plate_volts,screen_volts,grid_volts,plate_ma,screen_ma,gm_umho,plate_resistance_ohms,"
@@ -105,6 +117,9 @@ static void test_refusals(void **state) {
     outline.source = " ";
     expect_refusal(outline, "source: is blank");
     outline = whole;
+    outline.rating_system = "maximum";
+    expect_refusal(outline, "rating-system: 'maximum' is not known; design-center, ");
+    outline = whole;
     outline.kind = PLW_KIND_RECTIFIER;
     expect_refusal(outline, "kind: a rectifier");
     outline.kind = PLW_KIND_TRIODE;
@@ -145,11 +160,9 @@ static void test_what_a_file_needs(void **state) {
 
 int main(void) {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(test_made_whole),
-        cmocka_unit_test(test_with_a_source),
-        cmocka_unit_test(test_written_and_read_again),
-        cmocka_unit_test(test_refusals),
-        cmocka_unit_test(test_what_a_file_needs),
+        cmocka_unit_test(test_made_whole),     cmocka_unit_test(test_with_a_source),
+        cmocka_unit_test(test_rating_systems), cmocka_unit_test(test_written_and_read_again),
+        cmocka_unit_test(test_refusals),       cmocka_unit_test(test_what_a_file_needs),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
