@@ -3,6 +3,7 @@
 #include <math.h>
 #include <stdlib.h>
 
+#include "platewright/fit.h"
 #include "report/plot_curves.h"
 #include "report/text_buffer.h"
 
@@ -37,51 +38,37 @@ typedef struct {
     const plw_ratings *ratings;
 } sheet;
 
-/* What a row or point says of the static current, NaN where it says nothing. */
-static mark mark_of(const sheet *s, double plate_volts, double screen_volts, double grid_volts, double amps) {
-    mark m = {plate_volts, screen_volts, grid_volts, amps, (double)NAN, MARK_PRINTED};
-    if (s->family.tap > 0.0) {
-        m.screen_volts = plate_volts;
-    }
-    plw_currents currents;
-    if (isfinite(plate_volts) && isfinite(m.screen_volts) && isfinite(grid_volts) && amps > 0.0) {
-        plw_law_evaluate(s->family.law, plate_volts, m.screen_volts, grid_volts, &currents);
-        const double law_amps = currents.plate_amps + (s->family.together ? currents.screen_amps : 0.0);
-        m.miss_percent = 100.0 * (law_amps / amps - 1.0);
-    }
-    return m;
-}
-
-/* With cathode bias alone printed, the grid volts follow from the current in the resistor. */
-static double row_grid_volts(const plw_row *row) {
-    if (isfinite(row->grid_volts)) {
-        return row->grid_volts;
-    }
-    const bool screen_apart = row->connection != PLW_CONNECTION_TRIODE;
-    return -row->cathode_resistor_ohms * (row->plate_amps + (screen_apart ? row->screen_amps : 0.0));
-}
-
-static void add(sheet *s, mark m, const plw_provenance *provenance) {
-    if (isfinite(m.miss_percent)) {
-        m.kind = provenance->confidence == PLW_CONFIDENCE_LOW ? MARK_DOUBTFUL : MARK_PRINTED;
-        s->marks[s->count++] = m;
+/* What a row or point says of the current at rest beside what the law says: the same miss as in the table of a fit.  A
+ * row that prints no grid volts finds its bias by its cathode resistor, which makes up for part of the miss.
+ * In:   amps: printed */
+static void add(sheet *s, const plw_prediction *law, double plate_volts, double screen_volts, double amps,
+                const plw_provenance *provenance) {
+    const double screen = s->family.tap > 0.0 ? plate_volts : screen_volts;
+    if (isfinite(plate_volts) && isfinite(screen) && isfinite(law->plate_amps) && amps > 0.0) {
+        s->marks[s->count++] = (mark){plate_volts,
+                                      screen,
+                                      law->grid_volts,
+                                      amps,
+                                      100.0 * (law->plate_amps / amps - 1.0),
+                                      provenance->confidence == PLW_CONFIDENCE_LOW ? MARK_DOUBTFUL : MARK_PRINTED};
     }
 }
 
 static void collect(sheet *s) {
+    plw_prediction law;
     for (size_t i = 0; i < s->tube->rows_count; i++) {
         const plw_row *row = &s->tube->rows[i];
-        if (row->connection == s->connection) {
-            add(s, mark_of(s, row->plate_volts, row->screen_volts, row_grid_volts(row), row->plate_amps),
-                &row->provenance);
+        plw_row at_rest = *row;
+        at_rest.drive_peak_volts = (double)NAN; /* a cycle would be solved for nothing */
+        if (row->connection == s->connection && plw_predict_row(s->family.law, &at_rest, &law, NULL) == PLW_OK) {
+            add(s, &law, row->plate_volts, row->screen_volts, row->plate_amps, &row->provenance);
         }
     }
     for (size_t i = 0; i < s->tube->points_count; i++) {
         const plw_point *point = &s->tube->points[i];
         if (point->connection == s->connection && point->kind != PLW_POINT_REMARK &&
-            point->kind != PLW_POINT_INNER_MU) {
-            add(s, mark_of(s, point->plate_volts, point->screen_volts, point->grid_volts, point->plate_amps),
-                &point->provenance);
+            point->kind != PLW_POINT_INNER_MU && plw_predict_point(s->family.law, point, &law, NULL) == PLW_OK) {
+            add(s, &law, point->plate_volts, point->screen_volts, point->plate_amps, &point->provenance);
         }
     }
 }

@@ -3,6 +3,7 @@
 #include <sys/wait.h>
 
 #include "folder.h"
+#include "platewright/fit.h"
 #include "report/plot_stage.h"
 #include "report/script.h"
 #include "report/text_buffer.h"
@@ -353,6 +354,24 @@ static void printed_rows_are_marked_with_their_misses(void **state) {
     plw_text_free(script);
 }
 
+/* A row that prints its cathode resistor alone is missed by as much as a fit's table says: the bias is the one that the
+ * law's own current makes in it. */
+static void a_row_by_its_resistor_misses_as_in_the_table(void **state) {
+    (void)state;
+    static solved_stage s;
+    stage_begin(&s, PLW_LAW_PENTODE);
+    plw_row *row = &s.rows[0];
+    row->grid_volts = (double)NAN;
+    row->cathode_resistor_ohms = 130.0;
+    plw_prediction law;
+    assert_int_equal(plw_predict_row(&s.tube.model.law, row, &law, NULL), PLW_OK);
+    char *script = family_of(&s.tube, PLW_CONNECTION_PENTODE, PLW_PLOT_SVG);
+    const char *miss = strstr(script, "\n247.3 49.1 ");
+    assert_non_null(miss);
+    assert_near(strtod(miss + 12, NULL), 100 * (law.plate_amps / 0.0491 - 1), 1e-3, "as written in the script");
+    plw_text_free(script);
+}
+
 static void what_cannot_be_drawn_is_refused(void **state) {
     (void)state;
     static solved_stage s;
@@ -491,6 +510,7 @@ int main(void) {
         cmocka_unit_test(the_resistor_line_meets_the_cathode_current),
         cmocka_unit_test(without_a_cycle_the_rest_is_still_drawn),
         cmocka_unit_test(printed_rows_are_marked_with_their_misses),
+        cmocka_unit_test(a_row_by_its_resistor_misses_as_in_the_table),
         cmocka_unit_test(what_cannot_be_drawn_is_refused),
         cmocka_unit_test(output_keeps_its_last_part_only),
         cmocka_unit_test(the_same_answer_gives_the_same_bytes),
