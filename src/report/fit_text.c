@@ -184,6 +184,32 @@ static void put_residual(FILE *out, const plw_residual *residual) {
     fputc('\n', out);
 }
 
+static void put_not_used(FILE *out, const plw_tube *tube, bool is_row, size_t index, bool first) {
+    char name[NAME];
+    char text[TEXT];
+    fputs(first ? "\n" : "", out);
+    snprintf(text, sizeof text, "%s: low confidence, not used", line_name(tube, is_row, index, name));
+    plw_put_paragraph(out, "", text);
+}
+
+/* Lines of the tube that the fit passes over because little is thought of them; a remark is none. */
+static void put_left_aside(FILE *out, const plw_tube *tube) {
+    bool first = true;
+    for (size_t i = 0; i < tube->rows_count; i++) {
+        if (tube->rows[i].provenance.confidence == PLW_CONFIDENCE_LOW) {
+            put_not_used(out, tube, true, i, first);
+            first = false;
+        }
+    }
+    for (size_t i = 0; i < tube->points_count; i++) {
+        const plw_point *point = &tube->points[i];
+        if (point->provenance.confidence == PLW_CONFIDENCE_LOW && point->kind != PLW_POINT_REMARK) {
+            put_not_used(out, tube, false, i, first);
+            first = false;
+        }
+    }
+}
+
 plw_status plw_fit_text(const plw_tube *tube, const plw_fit *fit, char **text, plw_error *error) {
     plw_text_buffer buffer;
     const plw_status status = plw_text_begin(&buffer, error);
@@ -193,6 +219,7 @@ plw_status plw_fit_text(const plw_tube *tube, const plw_fit *fit, char **text, p
     fprintf(buffer.file, "%s\n", tube->type);
     put_warnings(buffer.file, tube, fit);
     plw_put_model(buffer.file, tube);
+    put_left_aside(buffer.file, tube);
     put_scale(buffer.file, fit);
     if (!fit->settled) {
         fputs("\nThe search did not settle: take these coefficients as a first guess\n", buffer.file);

@@ -60,6 +60,7 @@ static void test_nothing_to_remark(void **state) {
     expect(text, "Cannot both be true", false);
     expect(text, "did not settle", false);
     expect(text, "Stands out", false);
+    expect(text, "not used", false);
     expect(text, "  kvb: would show in currents at low plate volts and small bias\n", true);
     expect(text, "  mu: would show", false);
     expect(text, "\n  point   5  plate current                      87.0 mA ", true);
@@ -79,7 +80,9 @@ static void test_contradiction_and_outlier(void **state) {
            "\nStands out from all the rest: look it up again, or leave it out\n  point 6 (200 V, grid -25.0 V): "
            "plate current 66.0 mA; by the others 4",
            true);
-    expect(text, "point   7", false); /* of low confidence: not in the fit */
+    expect(text, "point   7", false); /* of low confidence: not in the fit, and said so */
+    expect(text, "\npoint 7 (250 V, grid -27.0 V): low confidence, not used\n", true);
+    expect(text, "point 6 (200 V, grid -25.0 V): low confidence", false);
     plw_text_free(text);
     plw_tube_free(tube);
 }
