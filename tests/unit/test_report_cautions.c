@@ -89,6 +89,9 @@ static void doubtful_data_have_their_cautions(void **state) {
     solve_one(&s, PLW_LAW_PENTODE);
     s.tube.model.left_out_error.plate_current_percent = 8.3;
     assert_true(warned(&s.answer, "misses printed plate currents by 8.3 %"));
+    s.tube.model.left_out_error.screen_current_percent = 49.6;
+    assert_true(warned(&s.answer, "misses printed screen currents by 50 %"));
+    s.tube.model.left_out_error.screen_current_percent = (double)NAN;
     s.tube.model.left_out_error.plate_current_percent = (double)NAN;
     assert_false(warned(&s.answer, "misses printed plate currents"));
     s.tube.model.fit_error.plate_current_percent = (double)NAN;
