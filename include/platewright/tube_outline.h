@@ -15,7 +15,8 @@ typedef struct {
     const char *type; /* needed */
     plw_tube_kind kind;
     const char *base;
-    const char *source; /* where heater and limits were read; NULL: told, "as given on the command line" */
+    const char *pins;   /* "2=heater,3=plate,5=grid 1", in the words of the tube files */
+    const char *source; /* where pins, heater and limits were read; NULL: told, "as given on the command line" */
     double heater_volts, heater_amps;
     bool directly_heated;
     double plate_volts, screen_volts; /* limits */
@@ -25,9 +26,8 @@ typedef struct {
 
 /* Make a tube of an outline: one set of ratings, no rows yet.
  * Out:  *tube, to be freed with plw_tube_free(); not written unless PLW_OK
- * Ret:  PLW_OK; PLW_E_NO_MEMORY; PLW_E_USAGE naming the entry: no type, a blank source, a rectifier, an unknown rating
- *       system, a number out of range, limits of a
- *       screen for a triode */
+ * Ret:  PLW_OK; PLW_E_NO_MEMORY; PLW_E_USAGE naming the entry: no type, a blank source, a rectifier, an unknown pin
+ *       or rating system, a number out of range, limits of a screen for a triode */
 PLW_API plw_status plw_tube_outline_make(const plw_tube_outline *outline, plw_tube **tube,
                                          plw_error *error) PLW_MUST_USE;
 

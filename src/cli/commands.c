@@ -95,8 +95,8 @@ static const cli_command commands[] = {
                   {"The same, and keep the coefficients", "platewright fit 6V6GT.xml --output 6V6GT.xml"},
                   {"A tube that is in no catalogue, from its sheet typed into a table",
                    "platewright fit sheet.csv --type 6X99 --kind beam --heater-volts 6.3V --heater-amps 450mA "
-                   "--plate-volts 315V --screen-volts 285V --plate-watts 12W --screen-watts 2W --output 6X99.xml "
-                   "--plot 6X99.svg"}},
+                   "--plate-volts 315V --screen-volts 285V --plate-watts 12W --screen-watts 2W --rating-system "
+                   "design-center --source 'A sheet, a maker, 1938' --output 6X99.xml --plot 6X99.svg"}},
      .run = cli_run_fit},
 };
 

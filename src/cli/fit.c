@@ -60,6 +60,7 @@ static plw_status outline_of(const cli_arguments *arguments, plw_tube_outline *o
     const char *direct = cli_argument(arguments, "directly-heated");
     *outline = (plw_tube_outline){.type = cli_argument(arguments, "type"),
                                   .base = cli_argument(arguments, "base"),
+                                  .pins = cli_argument(arguments, "pins"),
                                   .source = cli_argument(arguments, "source"),
                                   .rating_system = cli_argument(arguments, "rating-system"),
                                   .directly_heated = cli_argument_given(arguments, "directly-heated") &&
@@ -112,7 +113,7 @@ static plw_status read_table(const cli_arguments *arguments, plw_tube **tube, pl
 /* ---- a tube file ------------------------------------------------------------------------------------------------- */
 
 static plw_status read_tube(const cli_arguments *arguments, plw_tube **tube, plw_error *error) {
-    static const char *const others[] = {"type", "kind", "base", "directly-heated", "rating-system", "source"};
+    static const char *const others[] = {"type", "kind", "base", "directly-heated", "pins", "rating-system", "source"};
     const char *given = NULL;
     for (size_t i = 0; i < sizeof others / sizeof others[0]; i++) {
         given = cli_argument_given(arguments, others[i]) ? others[i] : given;

@@ -225,6 +225,13 @@ static const cli_option options[] = {
      .group = CLI_GROUP_TABLE,
      .commands = CLI_FIT,
      .help = "screen dissipation limit, e.g. 2W; none for a triode"},
+    {.name = "pins",
+     .value = CLI_VALUE_TEXT,
+     .placeholder = "LIST",
+     .group = CLI_GROUP_TABLE,
+     .commands = CLI_FIT,
+     .help = "its pins, e.g. \"2=heater, 3=plate, 4=screen, 5=grid 1, 7=heater, 8=cathode\": reports name the pin then "
+             "that the meter goes to"},
     {.name = "rating-system",
      .value = CLI_VALUE_CHOICE,
      .placeholder = "SYSTEM",
@@ -238,7 +245,8 @@ static const cli_option options[] = {
      .placeholder = "TITLE",
      .group = CLI_GROUP_TABLE,
      .commands = CLI_FIT,
-     .help = "the sheet that heater and limits were read from: title, publisher, year; without it they count as told"},
+     .help = "the sheet that pins, heater and limits were read from: title, publisher, year; without it they count as "
+             "told"},
 
     {.name = "like",
      .value = CLI_VALUE_TEXT,

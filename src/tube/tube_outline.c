@@ -6,6 +6,7 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "tube/outline_pins.h"
 #include "tube/tube_fields.h"
 
 #define SOURCE_OTHERWISE "as given on the command line"
@@ -54,6 +55,23 @@ static bool find_system(const char *name, plw_rating_system *system) {
     return strcmp(name, plw_rating_system_name(*system)) == 0;
 }
 
+static plw_status check_numbers(const plw_tube_outline *outline, plw_error *error) {
+    for (size_t i = 0; i < ENTRIES; i++) {
+        const double value = entry_value(outline, &entries[i]);
+        if (isnan(value)) {
+            continue;
+        }
+        if (!(value >= entries[i].least && value <= entries[i].most)) {
+            return plw_fail(error, PLW_E_USAGE, "%s: %g is out of range; it must lie between %g and %g",
+                            entries[i].name, value, entries[i].least, entries[i].most);
+        }
+        if (entries[i].of_screen && !has_screen(outline)) {
+            return plw_fail(error, PLW_E_USAGE, "%s: a triode has no screen", entries[i].name);
+        }
+    }
+    return PLW_OK;
+}
+
 static plw_status check(const plw_tube_outline *outline, plw_error *error) {
     if (is_blank(outline->type)) {
         return plw_fail(error, PLW_E_USAGE, "type: give the tube a type designation");
@@ -70,20 +88,9 @@ static plw_status check(const plw_tube_outline *outline, plw_error *error) {
                         "rating-system: '%.40s' is not known; design-center, design-maximum, absolute or stated",
                         outline->rating_system);
     }
-    for (size_t i = 0; i < ENTRIES; i++) {
-        const double value = entry_value(outline, &entries[i]);
-        if (isnan(value)) {
-            continue;
-        }
-        if (!(value >= entries[i].least && value <= entries[i].most)) {
-            return plw_fail(error, PLW_E_USAGE, "%s: %g is out of range; it must lie between %g and %g",
-                            entries[i].name, value, entries[i].least, entries[i].most);
-        }
-        if (entries[i].of_screen && !has_screen(outline)) {
-            return plw_fail(error, PLW_E_USAGE, "%s: a triode has no screen", entries[i].name);
-        }
-    }
-    return PLW_OK;
+    plw_outline_pins pins;
+    const plw_status status = plw_outline_pins_parse(outline->pins, &pins, error);
+    return status == PLW_OK ? check_numbers(outline, error) : status;
 }
 
 plw_status plw_tube_outline_complete(const plw_tube_outline *outline, plw_error *error) {
@@ -105,6 +112,28 @@ static bool set_provenance(plw_provenance *provenance, const char *source) {
 }
 
 /* Ret: false without memory */
+static bool fill_pins(plw_tube *tube, const plw_tube_outline *outline) {
+    plw_outline_pins pins;
+    if (plw_outline_pins_parse(outline->pins, &pins, NULL) != PLW_OK || pins.count == 0) {
+        return true; /* check() has seen to it that the text can be read */
+    }
+    tube->pins = calloc(pins.count, sizeof *tube->pins);
+    if (tube->pins == NULL || !set_provenance(&tube->pins_provenance, outline->source)) {
+        return false;
+    }
+    for (int number = 1; number <= PLW_OUTLINE_PINS_MOST; number++) {
+        if (pins.electrode[number] != NULL) {
+            plw_pin *pin = &tube->pins[tube->pins_count++];
+            *pin = (plw_pin){number, strdup(pins.electrode[number])};
+            if (pin->electrode == NULL) {
+                return false;
+            }
+        }
+    }
+    return true;
+}
+
+/* Ret: false without memory */
 static bool fill(plw_tube *tube, const plw_tube_outline *outline) {
     tube->type = strdup(outline->type);
     tube->base = outline->base == NULL ? NULL : strdup(outline->base);
@@ -114,7 +143,7 @@ static bool fill(plw_tube *tube, const plw_tube_outline *outline) {
     tube->directly_heated = outline->directly_heated;
     tube->ratings = calloc(1, sizeof *tube->ratings);
     if (tube->type == NULL || tube->ratings == NULL || (outline->base != NULL && tube->base == NULL) ||
-        !set_provenance(&tube->heater_provenance, outline->source)) {
+        !fill_pins(tube, outline) || !set_provenance(&tube->heater_provenance, outline->source)) {
         return false;
     }
     tube->ratings_count = 1;

@@ -59,6 +59,28 @@ static void test_with_a_source(void **state) {
     plw_tube_free(tube);
 }
 
+static void test_pins(void **state) {
+    (void)state;
+    plw_tube_outline outline = whole;
+    plw_tube *tube = NULL;
+    assert_int_equal(plw_tube_outline_make(&outline, &tube, NULL), PLW_OK);
+    assert_true(tube->pins_count == 0 && tube->pins_provenance.source == NULL);
+    plw_tube_free(tube);
+    outline.pins = "8=cathode, 5=grid 1 ,3=plate,4=screen";
+    assert_int_equal(plw_tube_outline_make(&outline, &tube, NULL), PLW_OK);
+    static const struct {
+        int number;
+        const char *electrode;
+    } wanted[] = {{3, "plate"}, {4, "screen"}, {5, "grid 1"}, {8, "cathode"}};
+    assert_int_equal(tube->pins_count, 4);
+    for (size_t i = 0; i < 4; i++) {
+        assert_int_equal(tube->pins[i].number, wanted[i].number);
+        assert_string_equal(tube->pins[i].electrode, wanted[i].electrode);
+    }
+    assert_int_equal(tube->pins_provenance.how, PLW_HOW_TOLD);
+    plw_tube_free(tube);
+}
+
 static void test_rating_systems(void **state) {
     (void)state;
     for (int system = PLW_SYSTEM_DESIGN_CENTER; system <= PLW_SYSTEM_STATED; system++) {
@@ -119,6 +141,22 @@ static void test_refusals(void **state) {
     outline = whole;
     outline.rating_system = "maximum";
     expect_refusal(outline, "rating-system: 'maximum' is not known; design-center, ");
+    static const char *const pins[][2] = {
+        {"", "pins: '': give number"},
+        {"plate", "pins: 'plate': give number"},
+        {"3", "pins: '3': give number"},
+        {"0=plate", "pins: '0=plate': give number (1 to 16)"},
+        {"17=plate", "pins: '17=plate': give number (1 to 16)"},
+        {"3=plate,", "pins: '': give number"},
+        {"3=", "pins: '3=': the electrode is not known"},
+        {"3=plate,4=g2", "pins: '4=g2': the electrode is not known; plate, grid 1, "},
+        {"3=plate,3=screen", "pins: pin 3 is given twice"},
+    };
+    for (size_t i = 0; i < sizeof pins / sizeof pins[0]; i++) {
+        outline = whole;
+        outline.pins = pins[i][0];
+        expect_refusal(outline, pins[i][1]);
+    }
     outline = whole;
     outline.kind = PLW_KIND_RECTIFIER;
     expect_refusal(outline, "kind: a rectifier");
@@ -160,9 +198,13 @@ static void test_what_a_file_needs(void **state) {
 
 int main(void) {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(test_made_whole),     cmocka_unit_test(test_with_a_source),
-        cmocka_unit_test(test_rating_systems), cmocka_unit_test(test_written_and_read_again),
-        cmocka_unit_test(test_refusals),       cmocka_unit_test(test_what_a_file_needs),
+        cmocka_unit_test(test_made_whole),
+        cmocka_unit_test(test_with_a_source),
+        cmocka_unit_test(test_pins),
+        cmocka_unit_test(test_rating_systems),
+        cmocka_unit_test(test_written_and_read_again),
+        cmocka_unit_test(test_refusals),
+        cmocka_unit_test(test_what_a_file_needs),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
