@@ -9,6 +9,9 @@
 /* The line is shown to both axes unless that would leave the tube in a corner of the picture. */
 #define VOLTS_MOST_OF_REST 2.5
 #define AMPS_MOST_OF_REST 3.2
+#define PI 3.14159265358979323846
+
+enum { PARTS_OF_STEP = 4 }; /* points of the swing between two solved instants */
 
 typedef struct {
     plw_frame frame;
@@ -75,12 +78,38 @@ static void falling_line(FILE *file, const picture *p, const char *name, double 
                           1e3 * (p->rest_amps - (right - p->rest_volts) / ohms));
 }
 
+/* A quantity between the solved instants, which lie at the cosines of equal phases: the polynomial through all of them,
+ * in its barycentric form (J.-P. Berrut, L. N. Trefethen, SIAM Review 46(3), 2004, p. 501), but nowhere beyond the solved
+ * ones: where the drive clips it would swing a little past them. */
+static double at_phase(const double path[PLW_PATH_POINTS], double phase) {
+    double above = 0.0;
+    double below = 0.0;
+    double least = path[0];
+    double most = path[0];
+    for (size_t i = 0; i < PLW_PATH_POINTS; i++) {
+        const double from = cos(phase) - cos(PI * (double)i / (PLW_PATH_POINTS - 1));
+        if (fabs(from) < 1e-12) {
+            return path[i];
+        }
+        const double end = i == 0 || i == PLW_PATH_POINTS - 1 ? 0.5 : 1.0;
+        const double weight = (i % 2 == 0 ? end : -end) / from;
+        above += weight * path[i];
+        below += weight;
+        least = fmin(least, path[i]);
+        most = fmax(most, path[i]);
+    }
+    return fmin(fmax(above / below, least), most);
+}
+
 static void path_blocks(FILE *file, const plw_answer *answer) {
     const plw_signal *signal = &answer->option->signal;
+    enum { STEPS = PARTS_OF_STEP * (PLW_PATH_POINTS - 1) };
     fputs("$swing << EOD\n", file);
-    for (size_t i = 0; i < PLW_PATH_POINTS; i++) {
-        plw_script_point(file, signal->path_plate_volts[i],
-                         1e3 * plw_drawn_amps(answer, signal->path_plate_amps[i], signal->path_screen_amps[i]));
+    for (int step = 0; step <= STEPS; step++) {
+        const double phase = PI * step / STEPS;
+        plw_script_point(file, at_phase(signal->path_plate_volts, phase),
+                         1e3 * plw_drawn_amps(answer, at_phase(signal->path_plate_amps, phase),
+                                              at_phase(signal->path_screen_amps, phase)));
     }
     fputs("EOD\n", file);
     /* From the end of the swing down to the scale, where the peak is read. */

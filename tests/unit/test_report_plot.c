@@ -216,12 +216,16 @@ static void the_swing_and_the_limits_are_drawn(void **state) {
     static solved_stage s;
     solve_one(&s, PLW_LAW_PENTODE);
     char *script = load_line_of(&s);
-    double swing[PLW_PATH_POINTS + 1][2];
+    enum { PARTS = 4, DRAWN = PARTS * (PLW_PATH_POINTS - 1) + 1 };
+    double swing[DRAWN + 1][2];
     const plw_signal *signal = &s.answer.option->signal;
-    assert_int_equal(block_points(script, "swing", swing, PLW_PATH_POINTS + 1), PLW_PATH_POINTS);
+    assert_int_equal(block_points(script, "swing", swing, DRAWN + 1), DRAWN);
     for (size_t i = 0; i < PLW_PATH_POINTS; i++) {
-        assert_near_relative(swing[i][0], signal->path_plate_volts[i], WRITTEN, "as solved");
-        assert_near_relative(swing[i][1], 1e3 * signal->path_plate_amps[i], WRITTEN, "as solved");
+        assert_near_relative(swing[PARTS * i][0], signal->path_plate_volts[i], WRITTEN, "as solved");
+        assert_near_relative(swing[PARTS * i][1], 1e3 * signal->path_plate_amps[i], WRITTEN, "as solved");
+    }
+    for (size_t i = 1; i < DRAWN; i++) { /* from the lowest plate volts to the highest without turning back */
+        assert_true(swing[i][0] >= swing[i - 1][0] * (1.0 - WRITTEN));
     }
     double hyperbola[200][2];
     const size_t count = block_points(script, "dissipation", hyperbola, 200);
