@@ -87,10 +87,13 @@ typedef struct {
 typedef struct {
     const plw_plate_supply *supply;
     double amps, volts;
-    double source_ohms;    /* -dV/dI there */
-    double volts_error;    /* a standard error, from those of the readings; NaN without readings */
-    double off_load_volts; /* nothing drawn, nominal mains */
+    double source_ohms; /* -dV/dI there */
+    double volts_error; /* a standard error, from those of the readings; NaN without readings */
+    double
+        off_load_volts; /* nothing drawn, nominal mains; a fitted bleeder taken as open: what capacitors must stand */
     double off_load_high_volts;
+    double bled_volts; /* off load with the fitted bleeder drawing, nominal mains; NaN without one */
+    double bled_high_volts;
     double mains_high_percent;
     bool has_state; /* the steady state of the rectifier is known */
     plw_rectifier_state state;

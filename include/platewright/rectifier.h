@@ -153,7 +153,7 @@ PLW_API plw_status plw_rectifier_waveform(const plw_rectifier *supply, plw_dc_lo
                                           plw_rectifier_instant *instants, size_t count, plw_rectifier_state *state,
                                           plw_error *error) PLW_MUST_USE;
 
-/* Off-load voltage: the peak of the winding, less the drop of silicon, with a bleeder taken as part of the load.
+/* Off-load voltage: the peak of the winding, less the drop of silicon.  A bleeder is part of the load: taken as open.
  * Ret:  V */
 PLW_API double plw_rectifier_peak_volts(const plw_rectifier *supply);
 

@@ -294,12 +294,14 @@ static void of_voltages(plw_caution_list *l, const plw_answer *answer) {
     const double off_load_volts = answer->supply != NULL ? answer->supply->off_load_volts : supply->volts;
     if (supply->kind != PLW_SUPPLY_STIFF && isfinite(off_load_volts)) {
         char off_load[TEXT_SIZE];
+        const bool bled = answer->supply != NULL && isfinite(answer->supply->bled_volts);
         plw_caution_say(
             l,
             "Rate capacitors and windings for the unloaded supply at high mains: %s off load, %s with the mains 10 %% "
-            "up. With cold tubes it stands there at every switching on.",
-            written(off_load_volts, PLW_UNIT_VOLT, off_load),
-            written(HIGH_MAINS * off_load_volts, PLW_UNIT_VOLT, high));
+            "up. %s",
+            written(off_load_volts, PLW_UNIT_VOLT, off_load), written(HIGH_MAINS * off_load_volts, PLW_UNIT_VOLT, high),
+            bled ? "With cold tubes it climbs there should the bleeder open."
+                 : "With cold tubes it stands there at every switching on.");
     } else {
         plw_caution_say(
             l,

@@ -100,7 +100,13 @@ static void of_readings(plw_caution_list *l, const plw_supply_answer *a) {
 static void of_off_load(plw_caution_list *l, const plw_supply_answer *a) {
     char off[TEXT_SIZE];
     char high[TEXT_SIZE];
-    if (isfinite(a->off_load_volts)) {
+    if (isfinite(a->bled_volts)) {
+        plw_caution_say(l,
+                        "Rate every capacitor for %s: with the mains high the supply climbs there, off load or with "
+                        "cold tubes, should the bleeder open; %s at nominal mains.",
+                        written(a->off_load_high_volts, PLW_UNIT_VOLT, high),
+                        written(a->off_load_volts, PLW_UNIT_VOLT, off));
+    } else if (isfinite(a->off_load_volts)) {
         plw_caution_say(l,
                         "Rate every capacitor for %s: the supply stands at %s off load, higher still with high mains, "
                         "at every switching on, as long as the tubes are cold.",

@@ -78,6 +78,8 @@ void plw_json_put_supply(const plw_json_sink *root, const plw_supply_answer *a) 
     plw_json_put(&s, "transformerless", json_boolean(a->supply->transformerless));
     plw_json_put_number(&s, "off_load_volts", a->off_load_volts);
     plw_json_put_number(&s, "off_load_volts_mains_high", a->off_load_high_volts);
+    plw_json_put_number(&s, "off_load_volts_bleeder_drawing", a->bled_volts);
+    plw_json_put_number(&s, "off_load_volts_bleeder_drawing_mains_high", a->bled_high_volts);
     plw_json_put_number(&s, "loaded_volts", a->volts);
     plw_json_put_number(&s, "amps", a->amps);
     plw_json_put_number(&s, "ripple_volts_peak_to_peak",

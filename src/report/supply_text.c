@@ -82,6 +82,17 @@ static void off_load_line(FILE *out, const plw_supply_answer *a) {
         }
         return;
     }
+    if (isfinite(a->bled_volts)) {
+        char text[160];
+        snprintf(text, sizeof text, "%s with the bleeder drawing, %s with the mains %.3g %% up",
+                 plw_cell_volts(a->bled_volts).text, plw_cell_volts(a->bled_high_volts).text,
+                 a->mains_high_percent - 100.0);
+        plw_put_paragraph(out, "OFF LOAD          ", text);
+        snprintf(text, sizeof text, "should it open: %s and %s, which capacitors must stand",
+                 plw_cell_volts(a->off_load_volts).text, plw_cell_volts(a->off_load_high_volts).text);
+        plw_put_paragraph(out, INDENT, text);
+        return;
+    }
     fprintf(out, "OFF LOAD          %s; %s with the mains %.3g %% up: capacitors must stand it\n",
             plw_cell_volts(a->off_load_volts).text, plw_cell_volts(a->off_load_high_volts).text,
             a->mains_high_percent - 100.0);
@@ -359,9 +370,9 @@ static void bleeder_lines(FILE *out, const plw_supply_answer *a) {
     if (isfinite(a->bleeder.rating_watts)) {
         fprintf(out, ", a %g W part", a->bleeder.rating_watts);
     }
-    fprintf(out, " (%s);\n" INDENT "from %s it falls to 60 V in %.0f s, nothing else drawing\n",
-            plw_cell_watts(a->bleeder.watts).text, plw_cell_volts(a->off_load_high_volts).text,
-            ceil(a->bleeder.seconds_to_60_volts));
+    const double from = a->bleeder_fitted ? a->bled_high_volts : a->off_load_high_volts;
+    fprintf(out, " (%s at high mains);\n" INDENT "from %s it falls to 60 V in %.0f s, nothing else drawing\n",
+            plw_cell_watts(a->bleeder.watts).text, plw_cell_volts(from).text, ceil(a->bleeder.seconds_to_60_volts));
     if (a->bleeder.seconds_to_60_volts > 5.0) {
         plw_put_paragraph(out, INDENT, "IEC 60204-1 wants 5 s of machines; wait, and verify with the meter");
     }

@@ -217,9 +217,15 @@ static void supply_lines(FILE *out, const plw_answer *a) {
     if (s == NULL || !s->supply->has_winding) {
         return;
     }
+    const bool bled = isfinite(s->bled_volts);
     fprintf(out, "\nPLATE SUPPLY      off load %s, at high mains %s; %s in the path\n",
-            plw_cell_volts(s->off_load_volts).text, plw_cell_volts(s->off_load_high_volts).text,
+            plw_cell_volts(bled ? s->bled_volts : s->off_load_volts).text,
+            plw_cell_volts(bled ? s->bled_high_volts : s->off_load_high_volts).text,
             plw_cell_ohms(s->supply->parts.path_ohms).text);
+    if (bled) {
+        fprintf(out, "                  should the bleeder open: %s, at high mains %s\n",
+                plw_cell_volts(s->off_load_volts).text, plw_cell_volts(s->off_load_high_volts).text);
+    }
     if (isfinite(s->volts_error)) {
         fprintf(out, "                  loaded %s, +/- %s by the readings\n", plw_cell_volts(s->volts).text,
                 plw_cell_quantity(s->volts_error, PLW_UNIT_VOLT, 2).text);

@@ -44,16 +44,37 @@ static double readings_error(const plw_supply *line, double amps) {
     return hypot((1 - share) * part * left->volts, share * part * right->volts);
 }
 
-static void fill_off_load(const plw_plate_supply *supply, plw_supply_answer *a) {
+/* Off load the fitted bleeder still draws: behind a choke input it may hold the output far below the peak. */
+static plw_status fill_bled(const plw_rectifier *nominal, const plw_rectifier *high, plw_supply_answer *a,
+                            plw_error *error) {
+    if (!(nominal->bleeder_ohms > 0)) {
+        return PLW_OK;
+    }
+    const plw_dc_load nothing = {.amps = 0};
+    plw_rectifier_state state;
+    plw_status status = plw_rectifier_steady(nominal, nothing, &state, error);
+    if (status == PLW_OK) {
+        a->bled_volts = state.volts;
+        status = plw_rectifier_steady(high, nothing, &state, error);
+    }
+    if (status == PLW_OK) {
+        a->bled_high_volts = state.volts;
+    }
+    return status;
+}
+
+static plw_status fill_off_load(const plw_plate_supply *supply, plw_supply_answer *a, plw_error *error) {
+    a->bled_volts = a->bled_high_volts = (double)NAN;
     a->off_load_volts = supply->line.kind == PLW_SUPPLY_STIFF ? (double)NAN : supply->line.volts;
     if (supply->has_winding) {
         /* A bleeder that is part of the supply may fail or not be there yet: what capacitors must stand is the peak. */
         a->off_load_volts = plw_rectifier_peak_volts(&supply->parts);
         const plw_rectifier high = plw_rectifier_at_mains(&supply->parts, a->mains_high_percent);
         a->off_load_high_volts = plw_rectifier_peak_volts(&high);
-    } else {
-        a->off_load_high_volts = a->mains_high_percent / 100 * a->off_load_volts;
+        return fill_bled(&supply->parts, &high, a, error);
     }
+    a->off_load_high_volts = a->mains_high_percent / 100 * a->off_load_volts;
+    return PLW_OK;
 }
 
 /* What to do about a current that the readings do not reach: into which resistor to read again. */
@@ -143,8 +164,9 @@ static void fill_bleeder(const plw_plate_supply *supply, const plw_supply_questi
     if (!supply->has_winding || supply->reservoir_assumed) {
         return;
     }
-    const double ohms = supply->parts.bleeder_ohms, from = a->off_load_high_volts;
+    const double ohms = supply->parts.bleeder_ohms;
     if (ohms > 0) {
+        const double from = a->bled_high_volts;
         const double watts = from * from / ohms;
         a->bleeder = (plw_bleeder){.ohms = ohms,
                                    .amps = from / ohms,
@@ -155,8 +177,8 @@ static void fill_bleeder(const plw_plate_supply *supply, const plw_supply_questi
         return;
     }
     /* E12 by nature: nobody hunts for a finer value. */
-    a->has_bleeder = plw_bleeder_for(&supply->parts, from, question->bleeder_seconds, PLW_E12, BLEEDER_MARGIN,
-                                     &a->bleeder, NULL) == PLW_OK;
+    a->has_bleeder = plw_bleeder_for(&supply->parts, a->off_load_high_volts, question->bleeder_seconds, PLW_E12,
+                                     BLEEDER_MARGIN, &a->bleeder, NULL) == PLW_OK;
 }
 
 static double told(double value, double fallback) {
@@ -243,7 +265,9 @@ plw_status plw_plate_supply_ask(const plw_plate_supply *supply, const plw_supply
     a.mains_high_percent = told(question->ratings.mains_high_percent, MAINS_HIGH_PERCENT);
     plw_status status = fill_state(supply, &a, error);
     if (status == PLW_OK) {
-        fill_off_load(supply, &a);
+        status = fill_off_load(supply, &a, error);
+    }
+    if (status == PLW_OK) {
         status = fill_line(supply, &a, error);
     }
     if (status == PLW_OK) {
