@@ -87,14 +87,16 @@ static const cli_option options[] = {
     {STAGE_OPTION("cathode-resistor", CLI_GROUP_BIAS, CLI_CHECK | CLI_PLOT | CLI_SUPPLY, "OHMS",
                   "cathode resistor as fitted, e.g. 270"),
      .elsewhere = WHY_NOT_IN_DESIGN},
-    {STAGE_OPTION("fixed-bias", CLI_GROUP_BIAS, CLI_CHECK | CLI_PLOT | CLI_SUPPLY, "VOLTS",
-                  "grid bias from a supply of its own, e.g. -12.5V"),
+    {STAGE_OPTION(
+         "fixed-bias", CLI_GROUP_BIAS, CLI_CHECK | CLI_PLOT | CLI_SUPPLY, "VOLTS",
+         "grid bias from a supply of its own, e.g. -12.5V; with the mains low and high it is taken to follow them"),
      .elsewhere = WHY_NOT_IN_DESIGN},
     {STAGE_SWITCH("resistor-each", CLI_GROUP_BIAS, "with --parallel: one cathode resistor a tube, not one for all")},
     {STAGE_SWITCH("unbypassed", CLI_GROUP_BIAS, "no capacitor across the cathode resistor")},
 
-    {STAGE_OPTION("screen-supply", CLI_GROUP_SCREEN, CLI_STAGE, "VOLTS",
-                  "screen fed from a supply of its own, e.g. 250V; else from the plate supply")},
+    {STAGE_OPTION(
+        "screen-supply", CLI_GROUP_SCREEN, CLI_STAGE, "VOLTS",
+        "screen fed from a supply of its own, e.g. 250V, taken to follow the mains; else from the plate supply")},
     {STAGE_OPTION("screen-resistor", CLI_GROUP_SCREEN, CLI_STAGE, "OHMS",
                   "resistor in the screen lead, one a tube, e.g. 1k")},
     {STAGE_SWITCH("screen-bypassed", CLI_GROUP_SCREEN, "a capacitor holds the screen side of that resistor")},

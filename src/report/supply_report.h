@@ -12,9 +12,11 @@ void plw_json_put_supply(const plw_json_sink *root, const plw_supply_answer *ans
 /* The ratings of its parts, appended to those of the tube. */
 void plw_json_append_supply_ratings(json_t *ratings, const plw_supply_answer *answer, bool *failed);
 
-/* The ratings of its parts as lines, and the line group for mains low and high. */
+/* The ratings of its parts as lines. */
 void plw_put_supply_ratings(FILE *out, const plw_supply_answer *answer);
-void plw_put_mains(FILE *out, const plw_mains *mains, const plw_quiescent *rest);
+
+/* The group of lines for mains low and high.  In: the answer has mains. */
+void plw_put_mains(FILE *out, const plw_answer *answer);
 
 /* "capacitor 2 ripple current": what a check is of; cut if too small. */
 const char *plw_supply_check_name(const plw_supply_check *check, char *buffer, size_t size);

@@ -457,7 +457,7 @@ plw_status plw_report_text(const plw_answer *answer, char **text, plw_error *err
     tube_lines(out, answer);
     rating_lines(out, answer);
     if (answer->mains != NULL) {
-        plw_put_mains(out, answer->mains, &answer->option->quiescent);
+        plw_put_mains(out, answer);
     }
     supply_lines(out, answer);
     power_lines(out, answer);
