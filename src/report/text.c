@@ -199,7 +199,7 @@ static void rating_lines(FILE *out, const plw_answer *a) {
         const double limit = driven != NULL ? driven->limit : check->limit;
         plw_put_right(out, plw_cell_quantity(limit, check->unit, 3).text, 9);
         if (driven != NULL && driven->limit != check->limit) {
-            fprintf(out, " (at rest %s)", plw_cell_quantity(check->limit, check->unit, 3).text);
+            fprintf(out, "\n    its limit at rest is %s", plw_cell_quantity(check->limit, check->unit, 3).text);
         }
         fputc('\n', out);
     }
@@ -300,13 +300,13 @@ static void neighbour_lines(FILE *out, const plw_answer *a) {
     if (choice == NULL || choice->options < 2) {
         return;
     }
-    fprintf(out, "\nA STEP EITHER WAY   cathode     plate  dissipation  up to %2.0f %%      full drive\n",
+    fprintf(out, "\nA STEP EITHER WAY  cathode     plate  dissipation  up to %2.0f %%      full drive\n",
             plw_stage_clean_percent(a->stage));
     for (size_t index = 0; index < choice->options; index++) {
         const plw_bias_option *o = &choice->option[index];
         fputs(index == choice->chosen ? "  > " : "    ", out);
         plw_put_right(out, plw_cell_ohms(o->ohms).text, 9);
-        plw_put_right(out, plw_cell_volts(o->quiescent.cathode_volts).text, 14);
+        plw_put_right(out, plw_cell_volts(o->quiescent.cathode_volts).text, 13);
         plw_put_right(out, plw_cell_amps(o->quiescent.plate_amps).text, 10);
         plw_put_right(out, plw_cell_watts(o->quiescent.plate_watts).text, 13);
         plw_put_right(out, plw_cell_watts(o->clean.speaker_watts).text, 11);

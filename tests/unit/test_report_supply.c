@@ -4,6 +4,7 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "narrow.h"
 #include "near.h"
 #include "platewright/dummy_meaning.h"
 #include "report/cautions.h"
@@ -139,20 +140,6 @@ static void json_of_the_stage_holds_it(void **state) {
     json_decref(other);
 }
 
-static void widest_line(const char *text, size_t most) {
-    for (const char *line = text; *line != '\0';) {
-        const size_t length = strcspn(line, "\n");
-        size_t letters = 0;
-        for (size_t i = 0; i < length; i++) {
-            letters += ((unsigned char)line[i] & 0xC0U) != 0x80U;
-        }
-        if (letters > most) {
-            fail_msg("%zu columns: %.*s", letters, (int)length, line);
-        }
-        line += length + (line[length] == '\n' ? 1 : 0);
-    }
-}
-
 static void words_for_the_bench(void **state) {
     (void)state;
     static found f;
@@ -171,7 +158,7 @@ static void words_for_the_bench(void **state) {
         }
         at = here == NULL ? at : here;
     }
-    widest_line(text, 80);
+    assert_narrow(text);
     plw_text_free(text);
     assert_int_equal(plw_report_text(&f.s.answer, &text, NULL), PLW_OK);
     assert_non_null(strstr(text, "\nMAINS, at rest"));

@@ -2,6 +2,7 @@
  * SPDX-License-Identifier: GPL-3.0-or-later */
 #include <jansson.h>
 
+#include "narrow.h"
 #include "near.h"
 #include "platewright/catalogue.h"
 #include "platewright/report.h"
@@ -100,17 +101,12 @@ static void one_tube_is_told_whole(void **state) {
     assert_int_equal(plw_tube_text(tube, &text, &error), PLW_OK);
     assert_non_null(strstr(text, "Ratings of the variant 6V6GTA"));
     assert_non_null(strstr(text, "left out"));
+    assert_narrow(text);
+    plw_text_free(text);
+    assert_int_equal(plw_tube_text(entry_of(catalogue, "300B").tube, &text, &error), PLW_OK); /* its loads are wide */
+    assert_narrow(text);
     plw_text_free(text);
     plw_catalogue_free(catalogue);
-}
-
-/* No line wider than the screen. */
-static void assert_narrow(const char *text) {
-    while (*text != '\0') {
-        const size_t length = strcspn(text, "\n");
-        assert_true(length <= 80);
-        text += length + (text[length] == '\n' ? 1 : 0);
-    }
 }
 
 static void differences_are_in_plain_words(void **state) {
