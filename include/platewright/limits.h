@@ -14,6 +14,9 @@ extern "C" {
 
 typedef enum { PLW_AT_IDLE, PLW_AT_FULL_DRIVE } plw_when;
 
+/* The name of the rating that counts plate and screen together, as makers do in triode connection. */
+#define PLW_NAME_PLATE_AND_SCREEN "plate and screen dissipation"
+
 typedef struct {
     const char *name; /* "plate dissipation" ... a constant */
     double value, limit;

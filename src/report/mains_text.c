@@ -6,10 +6,17 @@
 #include "report/layout.h"
 #include "report/supply_report.h"
 
+/* The longest name, "plate and screen dissipation", fits below "at full drive" too. */
+enum { NAME_WIDTH = 30, VALUE_WIDTH = 9, SHARE_WIDTH = 10 };
+
+static void supply_cell(FILE *out, const plw_mains_corner *corner) {
+    plw_put_right(out, plw_cell_volts(corner->solved ? corner->quiescent.supply_volts : (double)NAN).text, VALUE_WIDTH);
+}
+
 /* A cell of the mains group.  In: last: nothing stands behind it in its line */
 static void mains_cell(FILE *out, const plw_mains_corner *corner, size_t index, bool counted, bool last) {
     if (!corner->solved || index >= corner->ratings_count) {
-        plw_put_right(out, "-", 12);
+        plw_put_right(out, "-", VALUE_WIDTH);
         fputs(last ? "" : "          ", out);
         return;
     }
@@ -17,20 +24,20 @@ static void mains_cell(FILE *out, const plw_mains_corner *corner, size_t index, 
     const char *mark = check->ok ? "" : counted ? " !!" : " *";
     const plw_cell value =
         check->unit == PLW_UNIT_WATT ? plw_cell_watts(check->value) : plw_cell_quantity(check->value, check->unit, 3);
-    plw_put_right(out, value.text, 12);
+    plw_put_right(out, value.text, VALUE_WIDTH);
     fprintf(out, last ? " %4.0f %%%s" : " %4.0f %%%-3s", check->share_percent, mark);
 }
 
 /* The supply's volts, then every rating; ret: whether one is passed. */
 static bool mains_table(FILE *out, const plw_mains *mains, const plw_quiescent *rest) {
     const plw_mains_corner *names = mains->high.solved ? &mains->high : &mains->low;
-    fputs("\nMAINS, at rest                       10 % low            10 % high     (now)\n", out);
-    fprintf(out, "  %-24s", "supply");
-    plw_put_right(out, plw_cell_volts(mains->low.solved ? mains->low.quiescent.supply_volts : (double)NAN).text, 12);
-    fputs("         ", out);
-    plw_put_right(out, plw_cell_volts(mains->high.solved ? mains->high.quiescent.supply_volts : (double)NAN).text, 12);
-    fputs("         ", out);
-    plw_put_right(out, plw_cell_volts(rest->supply_volts).text, 9);
+    fprintf(out, "\nMAINS, at rest%34s%19s%12s\n", "10 % low", "10 % high", "(now)");
+    fprintf(out, "  %-*s", NAME_WIDTH, "supply");
+    supply_cell(out, &mains->low);
+    fprintf(out, "%*s", SHARE_WIDTH, "");
+    supply_cell(out, &mains->high);
+    fprintf(out, "%*s", SHARE_WIDTH, "");
+    plw_put_right(out, plw_cell_volts(rest->supply_volts).text, VALUE_WIDTH);
     fputc('\n', out);
     bool starred = false;
     bool driven = false;
@@ -39,7 +46,8 @@ static bool mains_table(FILE *out, const plw_mains *mains, const plw_quiescent *
             fputs("  at full drive\n", out);
             driven = true;
         }
-        fprintf(out, driven ? "    %-22s" : "  %-24s", names->ratings[i].name);
+        const int indent = driven ? 4 : 2;
+        fprintf(out, "%*s%-*s", indent, "", NAME_WIDTH + 2 - indent, names->ratings[i].name);
         mains_cell(out, &mains->low, i, mains->counted, false);
         mains_cell(out, &mains->high, i, mains->counted, true);
         fputc('\n', out);

@@ -295,6 +295,16 @@ static void power_lines(FILE *out, const plw_answer *a) {
             plw_cell_amps(least_amps).text, plw_cell_amps(most_amps).text);
 }
 
+/* The heat that is held against the rating of the plate: with the screen's where the maker rates both together. */
+static double rated_watts(const plw_bias_option *o) {
+    for (size_t index = 0; index < o->ratings_count; index++) {
+        if (o->ratings[index].when == PLW_AT_IDLE && strcmp(o->ratings[index].name, PLW_NAME_PLATE_AND_SCREEN) == 0) {
+            return o->ratings[index].value;
+        }
+    }
+    return o->quiescent.plate_watts;
+}
+
 static void neighbour_lines(FILE *out, const plw_answer *a) {
     const plw_bias_choice *choice = a->choice;
     if (choice == NULL || choice->options < 2) {
@@ -308,7 +318,7 @@ static void neighbour_lines(FILE *out, const plw_answer *a) {
         plw_put_right(out, plw_cell_ohms(o->ohms).text, 9);
         plw_put_right(out, plw_cell_volts(o->quiescent.cathode_volts).text, 13);
         plw_put_right(out, plw_cell_amps(o->quiescent.plate_amps).text, 10);
-        plw_put_right(out, plw_cell_watts(o->quiescent.plate_watts).text, 13);
+        plw_put_right(out, plw_cell_watts(rated_watts(o)).text, 13);
         plw_put_right(out, plw_cell_watts(o->clean.speaker_watts).text, 11);
         plw_put_right(out, plw_cell_watts(o->signal.speaker_watts).text, 10);
         fprintf(out, " %4.1f %%%s\n", o->signal.thd_percent, plw_option_within(a, o) ? "" : " !!");

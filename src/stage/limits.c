@@ -35,7 +35,7 @@ static void compare_load(tally *t, const plw_ratings *r, bool both_as_triode, do
                          double cathode_amps, plw_when when) {
     const double screen = isfinite(screen_watts) ? screen_watts : 0.0;
     if (both_as_triode) {
-        compare(t, "plate and screen dissipation", plate_watts + screen, r->plate_watts, PLW_UNIT_WATT, when);
+        compare(t, PLW_NAME_PLATE_AND_SCREEN, plate_watts + screen, r->plate_watts, PLW_UNIT_WATT, when);
     } else {
         compare(t, "plate dissipation", plate_watts, r->plate_watts, PLW_UNIT_WATT, when);
         const bool driven_limit = when == PLW_AT_FULL_DRIVE && isfinite(r->screen_watts_full_drive);
