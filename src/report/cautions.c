@@ -8,6 +8,7 @@
 #include <string.h>
 
 #include "report/fields.h"
+#include "report/layout.h"
 #include "report/text_buffer.h"
 
 /* From here a rating is called near.  Mains 5 % high raise the dissipation by about 10 %: both volts and current rise.
@@ -65,8 +66,8 @@ static void of_ratings(plw_caution_list *l, const plw_answer *answer) {
         written(check->limit, check->unit, limit);
         const char *when = check->when == PLW_AT_IDLE ? "idle" : "full drive";
         if (!check->ok) {
-            plw_caution_say(l, "Rating exceeded at %s: %s is %s, the limit %s (%.0f %%). %s", when, check->name, value,
-                            limit, check->share_percent,
+            plw_caution_say(l, "Rating exceeded at %s: %s is %s, the limit %s (%s). %s", when, check->name, value,
+                            limit, plw_cell_share(check->share_percent, false).text,
                             check->when == PLW_AT_IDLE ? "Do not build it so."
                                                        : "Speech and music heat less than this steady tone.");
         } else if (check->share_percent >= NEAR_PERCENT && check->when == PLW_AT_IDLE && !room_left) {
@@ -105,13 +106,13 @@ static void of_mains(plw_caution_list *l, const plw_answer *answer) {
         if (!check->ok && !broken_anyhow(answer->option, check)) {
             char value[TEXT_SIZE];
             char limit[TEXT_SIZE];
-            plw_caution_say(
-                l,
-                "With the mains 10 %% up the %s%s is %s, the limit %s (%.0f %%): a %s rating must hold there "
-                "too. %s",
-                check->name, check->when == PLW_AT_IDLE ? "" : " at full drive",
-                written(check->value, check->unit, value), written(check->limit, check->unit, limit),
-                check->share_percent, plw_rating_system_name(mains->system), mains_remedy(check));
+            plw_caution_say(l,
+                            "With the mains 10 %% up the %s%s is %s, the limit %s (%s): a %s rating must hold there "
+                            "too. %s",
+                            check->name, check->when == PLW_AT_IDLE ? "" : " at full drive",
+                            written(check->value, check->unit, value), written(check->limit, check->unit, limit),
+                            plw_cell_share(check->share_percent, false).text, plw_rating_system_name(mains->system),
+                            mains_remedy(check));
         }
     }
 }

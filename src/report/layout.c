@@ -2,10 +2,10 @@
  * SPDX-License-Identifier: GPL-3.0-or-later */
 #include "report/layout.h"
 
-#include <stdbool.h>
+#include <math.h>
 #include <string.h>
 
-enum { WIDTH = 78 };
+enum { WIDTH = 78, SHARE_WIDTH = 6 };
 
 plw_cell plw_cell_quantity(double value, plw_unit unit, int digits) {
     plw_cell c = {""};
@@ -29,6 +29,17 @@ plw_cell plw_cell_ohms(double value) {
     return plw_cell_quantity(value, PLW_UNIT_OHM, 3);
 }
 
+plw_cell plw_cell_share(double percent, bool ok) {
+    plw_cell c = {""};
+    if (!ok && percent >= 99.5 && percent < 100.5) {
+        const int tenths = (int)lround(10.0 * fmax(percent, 100.1)); /* over, however little */
+        snprintf(c.text, sizeof c.text, "%d.%d %%", tenths / 10, tenths % 10);
+    } else {
+        snprintf(c.text, sizeof c.text, "%.0f %%", percent);
+    }
+    return c;
+}
+
 /* Print a text into a field of `width` columns, right-aligned; UTF-8 letters count once. */
 void plw_put_right(FILE *out, const char *text, int width) {
     int letters = 0;
@@ -36,6 +47,13 @@ void plw_put_right(FILE *out, const char *text, int width) {
         letters += ((unsigned char)*at & 0xC0U) != 0x80U;
     }
     fprintf(out, "%*s%s", width > letters ? width - letters : 0, "", text);
+}
+
+void plw_put_share(FILE *out, const char *value, int width, double percent, bool ok) {
+    const plw_cell share = plw_cell_share(percent, ok);
+    const int wider = (int)strlen(share.text) - SHARE_WIDTH;
+    plw_put_right(out, value, wider > 0 ? width - wider : width);
+    fprintf(out, " %*s", SHARE_WIDTH, share.text);
 }
 
 void plw_put_paragraph(FILE *out, const char *mark, const char *text) {

@@ -24,8 +24,8 @@ static void mains_cell(FILE *out, const plw_mains_corner *corner, size_t index, 
     const char *mark = check->ok ? "" : counted ? " !!" : " *";
     const plw_cell value =
         check->unit == PLW_UNIT_WATT ? plw_cell_watts(check->value) : plw_cell_quantity(check->value, check->unit, 3);
-    plw_put_right(out, value.text, VALUE_WIDTH);
-    fprintf(out, last ? " %4.0f %%%s" : " %4.0f %%%-3s", check->share_percent, mark);
+    plw_put_share(out, value.text, VALUE_WIDTH, check->share_percent, check->ok);
+    fprintf(out, last ? "%s" : "%-3s", mark);
 }
 
 /* The supply's volts, then every rating; ret: whether one is passed. */

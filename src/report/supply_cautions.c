@@ -5,6 +5,7 @@
 #include <string.h>
 
 #include "report/cautions.h"
+#include "report/layout.h"
 #include "report/supply_report.h"
 
 enum { TEXT_SIZE = 64 };
@@ -44,8 +45,9 @@ static void of_check(plw_caution_list *l, const plw_supply_check *check) {
         plw_caution_say(l, "Rating of the supply not kept: %s is %s, %s is the least.",
                         plw_supply_check_name(check, name, sizeof name), value, limit);
     } else {
-        plw_caution_say(l, "Rating of the supply exceeded: %s is %s, the limit %s (%.0f %%).",
-                        plw_supply_check_name(check, name, sizeof name), value, limit, check->share_percent);
+        plw_caution_say(l, "Rating of the supply exceeded: %s is %s, the limit %s (%s).",
+                        plw_supply_check_name(check, name, sizeof name), value, limit,
+                        plw_cell_share(check->share_percent, false).text);
     }
 }
 

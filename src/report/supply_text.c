@@ -163,12 +163,14 @@ void plw_put_supply_ratings(FILE *out, const plw_supply_answer *a) {
         const plw_supply_check *check = &a->checks[i];
         char name[64];
         fprintf(out, "  %-38s", plw_supply_check_name(check, name, sizeof name));
-        plw_put_right(out, plw_cell_quantity(check->value, check->unit, 3).text, 10);
+        const plw_cell value = plw_cell_quantity(check->value, check->unit, 3);
         if (check->at_least) { /* a share of the least would read upside down */
-            fprintf(out, "       %s", check->ok ? "   " : " !!");
+            plw_put_right(out, value.text, 10);
+            fputs("       ", out);
         } else {
-            fprintf(out, " %4.0f %%%s", check->share_percent, check->ok ? "   " : " !!");
+            plw_put_share(out, value.text, 10, check->share_percent, check->ok);
         }
+        fputs(check->ok ? "   " : " !!", out);
         plw_put_right(out, plw_cell_quantity(check->limit, check->unit, 3).text, 9);
         fprintf(out, "%s%s\n", check->at_least ? " or more" : "",
                 check->when == PLW_SUPPLY_OFF_LOAD_HIGH ? " (off load)" : "");

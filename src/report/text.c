@@ -178,8 +178,8 @@ static void rating_cell(FILE *out, const plw_rating_check *check) {
     }
     const plw_cell value =
         check->unit == PLW_UNIT_WATT ? plw_cell_watts(check->value) : plw_cell_quantity(check->value, check->unit, 3);
-    plw_put_right(out, value.text, 10);
-    fprintf(out, " %4.0f %%%s", check->share_percent, check->ok ? "   " : " !!");
+    plw_put_share(out, value.text, 10, check->share_percent, check->ok);
+    fputs(check->ok ? "   " : " !!", out);
 }
 
 /* Every rating: at rest, at full drive, the limit. */

@@ -135,11 +135,42 @@ static void a_filament_has_no_cathode(void **state) {
     plw_text_free(text);
 }
 
+/* A share that is over but rounds to 100 % has a decimal, and its line no more columns. */
+static void little_over_is_seen(void **state) {
+    (void)state;
+    static solved_stage s;
+    static plw_bias_option option;
+    solve_one(&s, PLW_LAW_PENTODE);
+    option = *s.answer.option;
+    s.answer.option = &option;
+    option.ratings[0].share_percent = 100.37;
+    option.ratings[0].ok = false;
+    char *text = text_of(&s.answer);
+    assert_non_null(strstr(text, "(100.4"));
+    const char *cell = strstr(text, " V 100.4 % !!");
+    assert_non_null(cell);
+    const char *const line = strstr(text, "\n  plate voltage ");
+    const char *const below = strchr(line + 1, '\n');
+    assert_true(cell + strlen(" V 100.4 %") - line == strchr(below, '%') + 1 - below);
+    plw_text_free(text);
+    option.ratings[0].ok = true; /* within what three digits tell apart */
+    option.ratings[0].share_percent = 100.04;
+    text = text_of(&s.answer);
+    assert_non_null(strstr(text, " V  100 %   "));
+    plw_text_free(text);
+    option.ratings[0].ok = false; /* never "100.0 %" */
+    option.ratings[0].share_percent = 100.01;
+    text = text_of(&s.answer);
+    assert_non_null(strstr(text, " V 100.1 % !!"));
+    plw_text_free(text);
+}
+
 int main(void) {
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(a_meter_reads_to_chassis),
         cmocka_unit_test(fixed_bias_stands_at_the_grid),
         cmocka_unit_test(a_filament_has_no_cathode),
+        cmocka_unit_test(little_over_is_seen),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
