@@ -130,9 +130,10 @@ static void of_grid_current(plw_caution_list *l, const plw_stage *stage, const p
         char fall[TEXT_SIZE];
         plw_caution_say(
             l,
-            "At the %s peak given the grid draws up to %s, which takes %s off the crest: that clipping is reckoned "
+            "At the %s peak given %s grid draws up to %s, which takes %s off the crest: that clipping is reckoned "
             "with. What it charges a coupling capacitor to, and so the bias after loud passages, is not.",
-            drive, written(signal->grid_amps_most, PLW_UNIT_AMPERE, amps), written(fall_volts, PLW_UNIT_VOLT, fall));
+            drive, stage->parallel > 1 ? "each" : "the", written(signal->grid_amps_most, PLW_UNIT_AMPERE, amps),
+            written(fall_volts, PLW_UNIT_VOLT, fall));
     } else if (signal->grid_current && !(stage->driver_ohms > 0.0)) {
         plw_caution_say(
             l,

@@ -29,15 +29,17 @@ static void mains_cell(FILE *out, const plw_mains_corner *corner, size_t index, 
 }
 
 /* The supply's volts, then every rating; ret: whether one is passed. */
-static bool mains_table(FILE *out, const plw_mains *mains, const plw_quiescent *rest) {
+static bool mains_table(FILE *out, const plw_answer *answer) {
+    const plw_mains *mains = answer->mains;
     const plw_mains_corner *names = mains->high.solved ? &mains->high : &mains->low;
-    fprintf(out, "\nMAINS, at rest%34s%19s%12s\n", "10 % low", "10 % high", "(now)");
+    const char *title = answer->stage->parallel > 1 ? "MAINS, at rest, each tube" : "MAINS, at rest";
+    fprintf(out, "\n%-29s%19s%19s%12s\n", title, "10 % low", "10 % high", "(now)");
     fprintf(out, "  %-*s", NAME_WIDTH, "supply");
     supply_cell(out, &mains->low);
     fprintf(out, "%*s", SHARE_WIDTH, "");
     supply_cell(out, &mains->high);
     fprintf(out, "%*s", SHARE_WIDTH, "");
-    plw_put_right(out, plw_cell_volts(rest->supply_volts).text, VALUE_WIDTH);
+    plw_put_right(out, plw_cell_volts(answer->option->quiescent.supply_volts).text, VALUE_WIDTH);
     fputc('\n', out);
     bool starred = false;
     bool driven = false;
@@ -94,6 +96,6 @@ void plw_put_mains(FILE *out, const plw_answer *answer) {
     if (!mains->low.solved && !mains->high.solved) {
         return;
     }
-    system_line(out, mains, mains_table(out, mains, &answer->option->quiescent));
+    system_line(out, mains, mains_table(out, answer));
     held_line(out, answer->stage);
 }

@@ -186,7 +186,8 @@ static void rating_cell(FILE *out, const plw_rating_check *check) {
 static void rating_lines(FILE *out, const plw_answer *a) {
     const plw_bias_option *o = a->option;
     const plw_ratings *ratings = plw_tube_ratings(a->stage->tube, a->stage->variant, a->stage->connection);
-    fputs("\nRATINGS                          at rest       at full drive      limit\n", out);
+    fprintf(out, "\n%-33sat rest       at full drive      limit\n",
+            a->stage->parallel > 1 ? "RATINGS, each tube" : "RATINGS");
     for (size_t index = 0; index < o->ratings_count; index++) {
         const plw_rating_check *check = &o->ratings[index];
         if (check->when != PLW_AT_IDLE) {
@@ -285,14 +286,16 @@ static void power_lines(FILE *out, const plw_answer *a) {
     if (a->stage->driver_ohms > 0.0) {
         fprintf(out, "                  from a driver of %s; grid current %s at the crest,\n",
                 plw_cell_ohms(a->stage->driver_ohms).text, plw_cell_amps(s->grid_amps_most).text);
-        fprintf(out, "                  %s on the average\n", plw_cell_amps(s->grid_amps).text);
+        fprintf(out, "                  %s on the average%s\n", plw_cell_amps(s->grid_amps).text,
+                a->stage->parallel > 1 ? ", each tube" : "");
     }
     double least_amps;
     double most_amps;
     current_swing(a, &least_amps, &most_amps);
-    fprintf(out, "                  plate to cathode swings %s to %s, %s to %s\n",
+    fprintf(out, "                  plate to cathode swings %s to %s,%s%s to %s\n",
             plw_cell_volts(s->plate_volts_least).text, plw_cell_volts(s->plate_volts_most).text,
-            plw_cell_amps(least_amps).text, plw_cell_amps(most_amps).text);
+            a->stage->parallel > 1 ? "\n                  each tube's current " : " ", plw_cell_amps(least_amps).text,
+            plw_cell_amps(most_amps).text);
 }
 
 /* The heat that is held against the rating of the plate: with the screen's where the maker rates both together. */
@@ -322,6 +325,9 @@ static void neighbour_lines(FILE *out, const plw_answer *a) {
         plw_put_right(out, plw_cell_watts(o->clean.speaker_watts).text, 11);
         plw_put_right(out, plw_cell_watts(o->signal.speaker_watts).text, 10);
         fprintf(out, " %4.1f %%%s\n", o->signal.thd_percent, plw_option_within(a, o) ? "" : " !!");
+    }
+    if (a->stage->parallel > 1) {
+        fputs("  plate current and dissipation of each tube, power of all together\n", out);
     }
 }
 
@@ -414,15 +420,16 @@ static void trust_lines(FILE *out, const plw_answer *a) {
         plw_cell by_model;
         plw_cell by_supply;
         const bool supply = u->plate_amps.supply > 0.0;
+        const bool several = a->stage->parallel > 1;
         deviation_text(u->plate_amps.supply, PLW_UNIT_AMPERE, &by_supply);
         snprintf(text, sizeof text,
-                 "How sure: plate current +/- %s (tubes of one type %s, model %s%s%s), plate dissipation +/- %s, "
-                 "power +/- %s: two in three amplifiers lie within; the %s counts most.",
-                 deviation_text(u->plate_amps.all, PLW_UNIT_AMPERE, &current),
+                 "How sure: %splate current +/- %s (tubes of one type %s, model %s%s%s), plate dissipation +/- %s, "
+                 "power%s +/- %s: two in three amplifiers lie within; the %s counts most.",
+                 several ? "each tube's " : "", deviation_text(u->plate_amps.all, PLW_UNIT_AMPERE, &current),
                  deviation_text(u->plate_amps.tubes, PLW_UNIT_AMPERE, &by_tubes),
                  deviation_text(u->plate_amps.model, PLW_UNIT_AMPERE, &by_model), supply ? ", supply " : "",
                  supply ? by_supply.text : "", deviation_text(u->plate_watts.all, PLW_UNIT_WATT, &heat),
-                 deviation_text(u->speaker_watts.all, PLW_UNIT_WATT, &power),
+                 several ? " of all together" : "", deviation_text(u->speaker_watts.all, PLW_UNIT_WATT, &power),
                  u->dominant == PLW_BY_TUBES ? "spread of tubes" : plw_deviation_cause_name(u->dominant));
         plw_put_paragraph(out, "", text);
     }
