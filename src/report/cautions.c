@@ -190,9 +190,9 @@ static void of_screen(plw_caution_list *l, const plw_answer *answer) {
             char driven_text[TEXT_SIZE];
             plw_caution_say(
                 l,
-                "Screen dissipation rises from %s idle to %s at full drive: a resistor in the screen lead spares it.",
+                "Screen dissipation rises from %s idle to %s at full drive: a %sresistor in the screen lead spares it.",
                 written(option->quiescent.screen_watts, PLW_UNIT_WATT, idle_text),
-                written(driven, PLW_UNIT_WATT, driven_text));
+                written(driven, PLW_UNIT_WATT, driven_text), stage->screen_resistor_ohms > 0.0 ? "larger " : "");
         }
     }
 }

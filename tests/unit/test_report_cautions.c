@@ -72,7 +72,10 @@ static void conditions_have_their_cautions(void **state) {
     option.signal.limit = PLW_DRIVE_GRID_CURRENT;
     assert_true(warned(&s.answer, "beyond it the grid draws current"));
     option.signal.screen_watts = 1.87;
-    assert_true(warned(&s.answer, "spares it"));
+    assert_true(warned(&s.answer, ": a resistor in the screen lead spares it"));
+    s.stage.screen_resistor_ohms = 1030.0;
+    assert_true(warned(&s.answer, ": a larger resistor in the screen lead spares it"));
+    s.stage.screen_resistor_ohms = 0.0;
     s.stage.parallel = 2;
     assert_true(warned(&s.answer, "2 tubes share one cathode resistor"));
     s.stage.resistor_each = true;
