@@ -329,6 +329,25 @@ void plw_cautions_standing(plw_caution_list *l, bool live_chassis) {
     plw_caution_say(l, "Local codes and the judgement of a licensed practitioner go before anything said here.");
 }
 
+/* The largest grid resistor by the tube's sheet, which is another with fixed bias.  The stray grid currents of tubes on
+ * one resistor add up in it, so that each of them is left its part only. */
+static void of_grid_resistor(plw_caution_list *l, const plw_stage *stage, const plw_ratings *ratings) {
+    const bool fixed = isfinite(stage->fixed_bias_volts);
+    const double ohms = fixed ? ratings->grid_ohms_fixed_bias : ratings->grid_ohms_cathode_bias;
+    char most[TEXT_SIZE];
+    char shared[TEXT_SIZE];
+    if (!isfinite(ohms)) {
+        return;
+    }
+    written(ohms, PLW_UNIT_OHM, most);
+    if (stage->parallel > 1) {
+        plw_caution_say(l, "Grid resistor: up to %s with %s bias for each tube (the sheet); one for all, up to %s.",
+                        most, fixed ? "fixed" : "cathode", written(ohms / stage->parallel, PLW_UNIT_OHM, shared));
+    } else {
+        plw_caution_say(l, "Grid resistor: up to %s with %s bias (the sheet).", most, fixed ? "fixed" : "cathode");
+    }
+}
+
 /* What holds for every stage of its kind, in this stage's figures. */
 static void notes(plw_caution_list *l, const plw_answer *answer) {
     const plw_stage *stage = answer->stage;
@@ -342,6 +361,9 @@ static void notes(plw_caution_list *l, const plw_answer *answer) {
         char value[TEXT_SIZE];
         plw_caution_say(l, "Rate the cathode bypass capacitor for twice the bias, %s at least.",
                         written(2.0 * answer->option->quiescent.cathode_volts, PLW_UNIT_VOLT, value));
+    }
+    if (ratings != NULL) {
+        of_grid_resistor(l, stage, ratings);
     }
     if (ratings != NULL && ratings->provenance.how == PLW_HOW_MEMORY) {
         plw_caution_say(

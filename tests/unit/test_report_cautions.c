@@ -115,6 +115,25 @@ static void doubtful_data_have_their_cautions(void **state) {
     assert_true(warned(&s.answer, "332 V off load, 365 V with the mains 10 % up"));
 }
 
+/* As printed, apart for either bias; nothing where the sheet is silent. */
+static void the_largest_grid_resistor_is_named(void **state) {
+    (void)state;
+    static solved_stage s;
+    solve_one(&s, PLW_LAW_PENTODE);
+    assert_false(warned(&s.answer, "Grid resistor"));
+    s.ratings.grid_ohms_fixed_bias = 270e3;
+    assert_false(warned(&s.answer, "Grid resistor"));
+    s.ratings.grid_ohms_cathode_bias = 680e3;
+    assert_true(warned(&s.answer, "Grid resistor: up to 680 k\xCE\xA9 with cathode bias (the sheet)."));
+    s.stage.parallel = 4;
+    assert_true(warned(&s.answer, "with cathode bias for each tube (the sheet); one for all, up to 170 k"));
+    s.stage.parallel = 1;
+    s.stage.fixed_bias_volts = -9.7;
+    assert_true(warned(&s.answer, "Grid resistor: up to 270 k\xCE\xA9 with fixed bias (the sheet)."));
+    s.ratings.grid_ohms_fixed_bias = (double)NAN;
+    assert_false(warned(&s.answer, "Grid resistor"));
+}
+
 static void cautions_are_cut_between_characters(void **state) {
     (void)state;
     static solved_stage s;
@@ -134,9 +153,8 @@ static void cautions_are_cut_between_characters(void **state) {
 
 int main(void) {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(standing_cautions_are_always_there),
-        cmocka_unit_test(conditions_have_their_cautions),
-        cmocka_unit_test(doubtful_data_have_their_cautions),
+        cmocka_unit_test(standing_cautions_are_always_there),  cmocka_unit_test(conditions_have_their_cautions),
+        cmocka_unit_test(doubtful_data_have_their_cautions),   cmocka_unit_test(the_largest_grid_resistor_is_named),
         cmocka_unit_test(cautions_are_cut_between_characters),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
