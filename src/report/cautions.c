@@ -77,6 +77,26 @@ static void of_ratings(plw_caution_list *l, const plw_answer *answer) {
     }
 }
 
+/* Makers who rate a tube apart for fixed bias that is not adjusted to the very tube (300B) allow less of it. */
+static void of_fixed_bias(plw_caution_list *l, const plw_answer *answer) {
+    const plw_stage *stage = answer->stage;
+    const plw_quiescent *rest = &answer->option->quiescent;
+    for (size_t i = 0; isfinite(stage->fixed_bias_volts) && i < stage->tube->ratings_count; i++) {
+        const plw_ratings *r = &stage->tube->ratings[i];
+        const bool apart = r->service != NULL && strstr(r->service, "fixed bias") != NULL &&
+                           rest->cathode_amps > r->cathode_amps && r->provenance.confidence != PLW_CONFIDENCE_LOW;
+        if (apart && r != plw_tube_ratings(stage->tube, stage->variant, stage->connection)) {
+            char value[TEXT_SIZE];
+            char limit[TEXT_SIZE];
+            plw_caution_say(l,
+                            "It idles at %s of cathode current: with fixed bias that is not adjusted to the very tube "
+                            "the maker allows %s (%s).",
+                            written(rest->cathode_amps, PLW_UNIT_AMPERE, value),
+                            written(r->cathode_amps, PLW_UNIT_AMPERE, limit), r->service);
+        }
+    }
+}
+
 /* Is the rating broken at nominal mains too, driven alike? */
 static bool broken_anyhow(const plw_bias_option *option, const plw_rating_check *at_mains) {
     for (size_t i = 0; i < option->ratings_count; i++) {
@@ -388,6 +408,7 @@ size_t plw_report_cautions(const plw_answer *answer, char (*lines)[PLW_CAUTION_S
     }
     of_ratings(&l, answer);
     of_mains(&l, answer);
+    of_fixed_bias(&l, answer);
     of_drive(&l, answer);
     of_screen(&l, answer);
     of_bias(&l, answer);

@@ -8,6 +8,7 @@
 #define MEDIAN_OF_NORMAL 0.6745  /* median of |x| over the standard deviation of x, for normal x */
 #define LEAST_MODEL_ERROR 0.02   /* no fit to rounded tables is better than the rounding */
 #define UNTRIED_MODEL_ERROR 0.05 /* with one row only, nothing could be left out to try the fit */
+#define ROWLESS_MODEL_ERROR 0.10 /* with none, a point or two: as rows of tubes printed twice, left out at the worst */
 #define DATA_RANGE_LEAST 0.7
 #define DATA_RANGE_MOST 1.5
 
@@ -100,11 +101,12 @@ static void compare_region(const plw_region *r, const plw_quiescent *q, plw_unce
 }
 
 /* One standard deviation, as part of one, of a median error in percent. */
-static double model_part(double left_out_percent, double fit_percent) {
+static double model_part(const plw_model *model, double left_out_percent, double fit_percent) {
     if (isfinite(left_out_percent)) {
         return fmax(left_out_percent / MEDIAN_OF_NORMAL / 100.0, LEAST_MODEL_ERROR);
     }
-    return fmax(isfinite(fit_percent) ? fit_percent / MEDIAN_OF_NORMAL / 100.0 : 0.0, UNTRIED_MODEL_ERROR);
+    return fmax(isfinite(fit_percent) ? fit_percent / MEDIAN_OF_NORMAL / 100.0 : 0.0,
+                model->rows_fitted > 0 ? UNTRIED_MODEL_ERROR : ROWLESS_MODEL_ERROR);
 }
 
 plw_status plw_uncertainty_estimate(const plw_stage *stage, const plw_quiescent *quiescent, const plw_signal *signal,
@@ -121,8 +123,8 @@ plw_status plw_uncertainty_estimate(const plw_stage *stage, const plw_quiescent 
     }
     plw_uncertainty u = {.outside_data = false};
     compare_region(&m->region, quiescent, &u);
-    double model = model_part(m->left_out_error.plate_current_percent, m->fit_error.plate_current_percent);
-    double power = model_part(m->left_out_error.power_percent, m->fit_error.power_percent);
+    double model = model_part(m, m->left_out_error.plate_current_percent, m->fit_error.plate_current_percent);
+    double power = model_part(m, m->left_out_error.power_percent, m->fit_error.power_percent);
     if (u.outside_data) { /* common practice, no source: beyond the data the fit's own errors no longer hold */
         model *= 2.0;
         power *= 2.0;

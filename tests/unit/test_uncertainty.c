@@ -27,6 +27,7 @@ static plw_uncertainty estimate(const plw_stage *stage) {
 static void trust(test_tube *tube, double left_out_current, double left_out_power) {
     tube->tube.model.fit_error = (plw_model_errors){1.3, 4.1, 2.7, 0.6};
     tube->tube.model.left_out_error = (plw_model_errors){left_out_current, 6.3, left_out_power, 0.9};
+    tube->tube.model.rows_fitted = 3;
     tube->tube.model.region = (plw_region){180.0, 450.0, 180.0, 320.0, 0.02, 0.08};
 }
 
@@ -177,6 +178,8 @@ static void rows_left_out_count_before_rows_fitted(void **state) {
     assert_near_relative(estimate(&stage).model_percent, 7.1 / 0.6745, 1e-9, "a bad fit, untried");
     tube.tube.model.fit_error.plate_current_percent = UNKNOWN;
     assert_near_relative(estimate(&stage).model_percent, 5.0, 1e-9, "nothing known of the fit");
+    tube.tube.model.rows_fitted = 0; /* a point or two */
+    assert_near_relative(estimate(&stage).model_percent, 10.0, 1e-9, "no row at all");
 }
 
 /* The law's own error of power comes on top of what a stronger tube does to it. */
