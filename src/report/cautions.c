@@ -7,6 +7,8 @@
 #include <stdio.h>
 #include <string.h>
 
+#include "platewright/bypass.h"
+#include "platewright/preferred.h"
 #include "report/fields.h"
 #include "report/layout.h"
 #include "report/text_buffer.h"
@@ -368,6 +370,19 @@ static void of_grid_resistor(plw_caution_list *l, const plw_stage *stage, const 
     }
 }
 
+static void of_bypass(plw_caution_list *l, const plw_stage *stage, const plw_quiescent *rest) {
+    char volts[TEXT_SIZE];
+    char farads[TEXT_SIZE];
+    const double least = plw_bypass_farads(stage, rest, PLW_BYPASS_HERTZ);
+    plw_caution_say(l, "Rate the cathode bypass capacitor for twice the bias, %s at least.",
+                    written(2.0 * rest->cathode_volts, PLW_UNIT_VOLT, volts));
+    if (least > 0.0) {
+        plw_caution_say(l, "%s across the cathode resistor%s, or more, keeps the loss at %.0f Hz below 3 dB.",
+                        written(plw_preferred_at_least(least, PLW_E6), PLW_UNIT_FARAD, farads),
+                        stage->parallel > 1 && stage->resistor_each ? " of each tube" : "", PLW_BYPASS_HERTZ);
+    }
+}
+
 /* What holds for every stage of its kind, in this stage's figures. */
 static void notes(plw_caution_list *l, const plw_answer *answer) {
     const plw_stage *stage = answer->stage;
@@ -378,9 +393,7 @@ static void notes(plw_caution_list *l, const plw_answer *answer) {
                            "the screen overheats.");
     }
     if (isfinite(stage->cathode_resistor_ohms) && !stage->unbypassed) {
-        char value[TEXT_SIZE];
-        plw_caution_say(l, "Rate the cathode bypass capacitor for twice the bias, %s at least.",
-                        written(2.0 * answer->option->quiescent.cathode_volts, PLW_UNIT_VOLT, value));
+        of_bypass(l, stage, &answer->option->quiescent);
     }
     if (ratings != NULL) {
         of_grid_resistor(l, stage, ratings);

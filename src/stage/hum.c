@@ -4,37 +4,16 @@
 
 #include <math.h>
 
-#include "base/numeric.h"
-#include "stage/circuit.h"
+#include "stage/linear.h"
 
-/* With ripple e at the supply, currents i of plate and screen, electrode volts v = s e - R i, and i = G v by the law:
- *     (1 + G R) i = G s e
- * where R are the resistances in which the currents fall at once and s tells which electrode stands on the supply.  */
 double plw_hum_share(const plw_stage *stage, const plw_quiescent *quiescent) {
     plw_circuit circuit;
     plw_circuit_prepare(stage, &circuit);
-    plw_currents c;
-    const double screen_volts = circuit.has_screen ? quiescent->screen_volts : 0.0;
-    plw_law_evaluate(&stage->tube->model.law, quiescent->plate_volts, screen_volts, quiescent->grid_volts, &c);
     const bool screen_quiet =
         !circuit.has_screen || isfinite(stage->screen_supply_volts) || (stage->screen_bypassed && circuit.tap <= 0.0);
     const double on_supply[PLW_ELECTRODES] = {[PLW_AT_PLATE] = 1.0, [PLW_AT_SCREEN] = screen_quiet ? 0.0 : 1.0};
-    const double conductance[PLW_FLOWS][PLW_ELECTRODES] = {
-        [PLW_OF_PLATE] = {c.plate_by_plate, c.plate_by_screen, c.plate_by_grid},
-        [PLW_OF_SCREEN] = {c.screen_by_plate, c.screen_by_screen, c.screen_by_grid}};
-    double matrix[2][2] = {{1.0, 0.0}, {0.0, 1.0}};
-    double right[2] = {0.0, 0.0};
-    for (int flow = 0; flow < PLW_FLOWS; flow++) {
-        for (int at = 0; at < PLW_ELECTRODES; at++) {
-            right[flow] += conductance[flow][at] * on_supply[at];
-            for (int other = 0; other < PLW_FLOWS; other++) {
-                matrix[flow][other] += conductance[flow][at] * circuit.feed.ohms[at][other];
-            }
-        }
-    }
-    const double held[2][2] = {{matrix[0][0], matrix[0][1]}, {matrix[1][0], matrix[1][1]}};
-    double amps[2];
-    if (!plw_solve_2x2(held, right, amps)) {
+    double amps[PLW_FLOWS];
+    if (!plw_linear_currents(&circuit, quiescent, on_supply, amps)) {
         return (double)NAN;
     }
     /* What the speaker sees through the turns, without the copper. */
