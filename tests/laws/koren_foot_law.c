@@ -1,20 +1,5 @@
-/* Candidate for triodes: the shipped triode law, whose foot widens more slowly than the plate volts.
+/* Candidate for triodes: the shipped law, whose foot widens more slowly than the plate volts.
  * SPDX-License-Identifier: GPL-3.0-or-later */
-#include "candidate.h"
+#include "triode_candidate.h"
 
-enum { CONTACT = 5, COUNT = 7 };
-
-static const char *const names[COUNT] = {"mu", "exponent", "kg1", "kp", "kvb", "contact-volts", "foot-growth"};
-
-static const plw_expectation weak[COUNT] = {{10.0, 1.5},  {1.5, 0.08}, {1500.0, 4.0}, {7.0, 1.0},
-                                            {300.0, 0.5}, {0.5, 0.5},  {0.7, 0.02}};
-
-const candidate candidate_law = {
-    .name = "koren-foot",
-    .kind = PLW_LAW_TRIODE,
-    .count = COUNT,
-    .names = names,
-    .signed_index = CONTACT,
-    .currents = NULL,
-    .weak = weak,
-};
+TRIODE_CANDIDATE("koren-foot", 0.7);
