@@ -133,8 +133,8 @@ $(B)/tests/bench/%: $(B)/tests/bench/%.o $(STATIC)
 # A test that needs a library of its own says so beside it.
 include $(wildcard tests/*/*.mk)
 
-.PHONY: check check-headers check-units check-cli
-check: all check-headers check-units check-cli
+.PHONY: check check-headers check-units check-accuracy check-cli
+check: all check-headers check-units check-accuracy check-cli
 	@echo 'check: all passed'
 
 # Each public header must compile alone.
@@ -146,6 +146,10 @@ check-headers:
 check-units: $(TESTS)
 	@failed=0; for test in $(TESTS); do \
 	  echo "== $${test#$(B)/tests/}"; LC_ALL=C.UTF-8 $(RUNNER) $$test || failed=1; done; exit $$failed
+
+# The law against every printed row, in the fit and left out of it.
+check-accuracy: $(B)/tests/bench/accuracy
+	@$< --marks tubedata
 
 check-cli: $(PROGRAM)
 	@B='$(B)' RUNNER='$(RUNNER)' LC_ALL=C.UTF-8 sh tests/cli/run

@@ -1,9 +1,10 @@
 /* The law against every printed row of confidence high and medium: in the fit, with the row left out of the fit, and
  * triode-connected rows and characteristics predicted from pentode rows alone.  Run by `make accuracy`.
  *
- *   accuracy [--screened | --triodes] [--summary NAME | --coefficients NAME] [FOLDER]
+ *   accuracy [--screened | --triodes] [--marks | --summary NAME | --coefficients NAME] [FOLDER]
  *
  * --screened      pentodes and beam tubes only; --triodes: triodes only
+ * --marks         only the marks, and exit status 1 when one is not met: run by `make check`
  * --summary       for programs, with tabs between: NAME, basis, figure, then either "row", type, place, error (a point
  *                 has its place negative, -1 the first) or "total", median, 90 %, count
  * --coefficients  for programs: NAME, kind of tube (triodes with a filament apart), type, family (or type), coefficient, its place, value
@@ -46,7 +47,7 @@ typedef enum { FITTED, LEFT_OUT, AS_TRIODE, SETS } basis;
 
 static const char *const set_names[SETS] = {"fit", "left out", "as triode"};
 
-typedef enum { WHOLE, SUMMARY, COEFFICIENTS } output;
+typedef enum { WHOLE, MARKS, SUMMARY, COEFFICIENTS } output;
 
 typedef struct {
     bool screened_only, triodes_only;
@@ -178,7 +179,7 @@ static void note_errors(comparison *all, const compared *c, const double errors[
     tally(&all->tables[c->set], errors);
     if (all->output == WHOLE) {
         print_errors(c, errors);
-    } else {
+    } else if (all->output == SUMMARY) {
         list_errors(all, c, errors);
     }
 }
@@ -296,6 +297,26 @@ static void print_whole(comparison *all) {
     }
 }
 
+/* Ret:  how many marks are not met */
+static int print_marks(comparison *all) {
+    int missed = 0;
+    for (basis set = FITTED; set <= LEFT_OUT; set++) {
+        table *t = &all->tables[set];
+        const size_t at = set == FITTED ? 0 : 2;
+        for (size_t f = 0; f < FIGURES; f++) {
+            const double median = quantile(t->value[f], t->count[f], 0.5);
+            const double nine_tenths = quantile(t->value[f], t->count[f], 0.9);
+            if (wanted[f][at] > 0.0) {
+                const bool met = median <= wanted[f][at] && nine_tenths <= wanted[f][at + 1];
+                printf("%-9s %-32s %6.2f / %5.2f, at most %g / %g%s\n", set_names[set], figure_names[f], median,
+                       nine_tenths, wanted[f][at], wanted[f][at + 1], met ? "" : "  NOT MET");
+                missed += met ? 0 : 1;
+            }
+        }
+    }
+    return missed;
+}
+
 static bool read_words(int count, char **words, comparison *all) {
     all->folder = "tubedata";
     for (int at = 1; at < count; at++) {
@@ -304,6 +325,8 @@ static bool read_words(int count, char **words, comparison *all) {
             all->screened_only = true;
         } else if (strcmp(words[at], "--triodes") == 0) {
             all->triodes_only = true;
+        } else if (strcmp(words[at], "--marks") == 0) {
+            all->output = MARKS;
         } else if (named && (strcmp(words[at], "--summary") == 0 || strcmp(words[at], "--coefficients") == 0)) {
             all->output = words[at][2] == 's' ? SUMMARY : COEFFICIENTS;
             all->name = words[++at];
@@ -323,7 +346,7 @@ int main(int count, char **words) {
     size_t tubes_count;
     plw_error error = {0};
     if (!read_words(count, words, &all)) {
-        fputs("accuracy: [--screened | --triodes] [--summary NAME | --coefficients NAME] [FOLDER]\n", stderr);
+        fputs("accuracy: [--screened | --triodes] [--marks | --summary NAME | --coefficients NAME] [FOLDER]\n", stderr);
         return 2;
     }
     if (plw_catalogue_open(&all.folder, 1, &catalogue, &error) != PLW_OK ||
@@ -346,6 +369,7 @@ int main(int count, char **words) {
     } else if (all.output == SUMMARY) {
         print_summary(&all);
     }
+    const int missed = all.output == MARKS ? print_marks(&all) : 0;
     plw_catalogue_free(catalogue);
-    return 0;
+    return missed > 0 ? 1 : 0;
 }
