@@ -50,8 +50,8 @@ PLW_API void plw_mains_judge(const plw_stage *stage, plw_bias_choice *choice);
 
 /* Choose the cathode resistor when no aim is told: as plw_bias_choose() for PLW_AIM_DEFAULT_PERCENT of the rated
  * dissipation, lowered as far as the ratings of heat and current need that must hold with the mains high.  (Ratings of
- * voltage no resistor cures.)  A rating that only full drive at high mains breaks is worth up to PLW_DRIVEN_RAISE_MOST times the
- * resistance, where that cures it.
+ * voltage no resistor cures.)  A rating that only full drive at high mains breaks is worth up to PLW_DRIVEN_RAISE_MOST
+ * times the resistance, where that cures it.
  * Out:  *choice, whose aim is the one taken; *before_percent: 0, or what the aim was before it was lowered
  * Ret:  as plw_bias_choose() */
 PLW_API plw_status plw_bias_choose_for_mains(const plw_stage *stage, plw_series series, plw_bias_choice *choice,

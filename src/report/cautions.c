@@ -112,7 +112,7 @@ static bool broken_anyhow(const plw_bias_option *option, const plw_rating_check 
 
 static const char *mains_remedy(const plw_rating_check *check) {
     if (check->when == PLW_AT_FULL_DRIVE) {
-        return "Speech and music heat less than this steady tone; a higher resistor or a lower supply cures it.";
+        return "Speech and music heat less than this steady tone; a lower supply or a higher resistor may cure it.";
     }
     return check->unit == PLW_UNIT_VOLT ? "A lower supply cures it." : "A higher resistor or a lower aim cures it.";
 }
