@@ -68,12 +68,12 @@ static double over_at_high_mains(const plw_stage *stage, double ohms) {
     return worst;
 }
 
-/* Is the choice kept at nominal mains, and at high mains too, driven fully? */
-static bool kept_driven(const plw_stage *stage, const plw_bias_option *option, double mains_percent) {
+/* Is the choice kept at high mains, driven fully? */
+static bool kept_driven(const plw_stage *stage, const plw_bias_choice *choice) {
     plw_stage trial = *stage;
-    trial.cathode_resistor_ohms = option->ohms;
-    const plw_mains_corner corner = solve_corner(&trial, mains_percent, true);
-    return option->within_ratings && (!corner.solved || corner.within_ratings);
+    trial.cathode_resistor_ohms = choice->option[choice->chosen].ohms;
+    const plw_mains_corner high = solve_corner(&trial, PLW_MAINS_HIGH_PERCENT, true);
+    return !high.solved || high.within_ratings;
 }
 
 /* Where only full drive at high mains breaks a rating, a little more resistance may cure it: taken when it does, else
@@ -81,8 +81,7 @@ static bool kept_driven(const plw_stage *stage, const plw_bias_option *option, d
 static bool lower_for_drive(const plw_stage *stage, plw_series series, plw_aim aim, plw_bias_choice *choice) {
     const plw_bias_option *first = &choice->option[choice->chosen];
     const double most = PLW_DRIVEN_RAISE_MOST * first->ohms;
-    if (!leaves_mains_to_builder(rating_system(stage)) || !first->within_ratings ||
-        kept_driven(stage, first, PLW_MAINS_HIGH_PERCENT)) {
+    if (!leaves_mains_to_builder(rating_system(stage)) || !first->within_ratings || kept_driven(stage, choice)) {
         return false;
     }
     for (int round = 0; round < DRIVEN_ROUNDS; round++) {
@@ -91,7 +90,7 @@ static bool lower_for_drive(const plw_stage *stage, plw_series series, plw_aim a
         if (plw_bias_choose(stage, aim, series, &trial, NULL) != PLW_OK || trial.option[trial.chosen].ohms > most) {
             return false;
         }
-        if (kept_driven(stage, &trial.option[trial.chosen], PLW_MAINS_HIGH_PERCENT)) {
+        if (kept_driven(stage, &trial)) {
             *choice = trial;
             return true;
         }

@@ -157,6 +157,15 @@ static void break_one(plw_rating_check *checks, size_t count, plw_when when) {
     checks[i].ok = false;
 }
 
+/* A stage whose ratings are kept at nominal mains and counted at high mains. */
+static void solve_design_maximum(solved_stage *s, plw_mains *mains) {
+    stage_begin(s, PLW_LAW_PENTODE);
+    s->ratings.system = PLW_SYSTEM_DESIGN_MAXIMUM;
+    s->ratings.screen_watts = 4.3;
+    stage_solve(s);
+    assert_int_equal(plw_mains_solve(&s->stage, mains, NULL), PLW_OK);
+}
+
 /* What ends with exit status 1 is never called within the ratings: the nearest to the bench comes first. */
 static void the_verdict_names_what_is_broken(void **state) {
     (void)state;
@@ -164,11 +173,7 @@ static void the_verdict_names_what_is_broken(void **state) {
     static plw_mains mains;
     static plw_supply_answer supply;
     static plw_supply line;
-    stage_begin(&s, PLW_LAW_PENTODE);
-    s.ratings.system = PLW_SYSTEM_DESIGN_MAXIMUM;
-    s.ratings.screen_watts = 4.3;
-    stage_solve(&s);
-    assert_int_equal(plw_mains_solve(&s.stage, &mains, NULL), PLW_OK);
+    solve_design_maximum(&s, &mains);
     plw_mains kept = mains;
     for (size_t i = 0; i < kept.high.ratings_count; i++) {
         kept.high.ratings[i].ok = kept.low.ratings[i].ok = true;
@@ -191,6 +196,10 @@ static void the_verdict_names_what_is_broken(void **state) {
     assert_verdict(&s.answer, "OVER A RATING with the mains 10 % up, at full drive:\n");
     break_one(kept.high.ratings, kept.high.ratings_count, PLW_AT_IDLE);
     assert_verdict(&s.answer, "OVER A RATING with the mains 10 % up, at rest:\n");
+    json_t *root = parsed(&s.answer);
+    assert_near(number_at(root, "verdict.broken"), 4.0, 0.0, "three at the mains, one of the supply");
+    assert_non_null(strstr(json_string_value(at(root, "verdict.text")), ", and 3 more"));
+    json_decref(root);
     kept.counted = false; /* a design-center tube: the maker answers for the mains */
     assert_verdict(&s.answer, "OVER A RATING of the supply:\n");
     s.answer.supply = NULL;
@@ -205,11 +214,7 @@ static void one_verdict_in_every_format(void **state) {
     (void)state;
     static solved_stage s;
     static plw_mains mains;
-    stage_begin(&s, PLW_LAW_PENTODE);
-    s.ratings.system = PLW_SYSTEM_DESIGN_MAXIMUM;
-    s.ratings.screen_watts = 4.3;
-    stage_solve(&s);
-    assert_int_equal(plw_mains_solve(&s.stage, &mains, NULL), PLW_OK);
+    solve_design_maximum(&s, &mains);
     assert_false(mains.within_ratings); /* at 90 % of 12 W, with the mains high */
     s.answer.mains = &mains;
     plw_mains_judge(&s.stage, &s.choice);
